@@ -1,0 +1,7 @@
+"""Run `python -m melodycoach`."""
+
+import sys
+
+from melodycoach.cli import main
+
+sys.exit(main())

@@ -1,0 +1,1 @@
+"""Edge out, on paper: results become text and JSON."""

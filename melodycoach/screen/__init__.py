@@ -1,0 +1,1 @@
+"""Edge out, live: core values become characters on a terminal."""

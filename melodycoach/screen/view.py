@@ -1,0 +1,137 @@
+"""What the screen shows, as plain words and numbers.
+
+Conventions
+-----------
+A `ViewState` is frozen and made of str, int, float, bool and tuple only: no arrays, no core
+objects. All rounding, sorting and labelling is done when it is built; drawing only lays it out.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+
+@dataclass(frozen=True, slots=True)
+class LeaningRow:
+    """One mode in the list of leanings.
+
+    ``change`` is the probability minus that before the last note. ``final`` is where the mode
+    stands, as a perde name. ``target`` marks the mode that the player aims at.
+    """
+
+    mode_id: str
+    name: str
+    final: str
+    probability: float
+    change: float
+    target: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class OwedRow:
+    """One characteristic step of the mode in view.
+
+    ``perdes``, ``written`` and ``keys`` are the same notes thrice: names, written notes, and keys
+    of a plain keyboard. ``heard_at`` is the number (from 1) of the note that completed it, None
+    while it is owed. ``gain_nats`` says how far it would move the mode away from its rival if it
+    were played next.
+    """
+
+    kind: str
+    need: str
+    perdes: tuple[str, ...]
+    written: tuple[str, ...]
+    keys: tuple[str, ...]
+    heard_at: int | None = None
+    gain_nats: float = 0.0
+
+
+@dataclass(frozen=True, slots=True)
+class LineNote:
+    """One note of the line.
+
+    ``height`` is in units from A4, for the contour. ``off_mode`` is empty, or says in a few words
+    what is wrong; ``mend`` is the perde that would mend it. ``mark`` is the breath, phrase end or
+    bar line that follows, or empty.
+    """
+
+    number: int
+    height: float
+    name: str
+    written: str
+    length_s: float
+    rests: bool
+    off_mode: str = ""
+    mend: str = ""
+    mark: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Rung:
+    """One step of the ladder beside the contour.
+
+    ``function`` is empty, ``final``, ``dominant``, ``leading tone`` or ``suspended cadence``, for
+    the mode in view.
+    """
+
+    height: int
+    name: str
+    function: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class WhyRow:
+    """One reason: a sentence, and the nats it adds for the leading mode (negative: against)."""
+
+    text: str
+    nats: float
+
+
+@dataclass(frozen=True, slots=True)
+class Status:
+    """The world around the session, in finished sentences.
+
+    ``input_line`` says which port is open or lost, or that notes are typed. ``tuning_line`` says
+    which tuning is believed and why. ``log_line`` says where the log goes. ``warning`` is the
+    newest thing that needs the player's attention, or empty.
+    """
+
+    input_line: str = ""
+    tuning_line: str = ""
+    log_line: str = ""
+    warning: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class ViewState:
+    """Everything that one screen shows.
+
+    ``verdict`` is the answer in one sentence ("leaning to Hüseynî", "undecided between A and B").
+    ``now`` is what the last stretch sounds like where that differs from the whole, or empty.
+    ``in_view`` names the mode that owed steps and ladder speak of (the target, else the leading
+    one) and ``rival`` the closest one behind it. ``keyboard_note`` says which rivals a plain
+    keyboard cannot separate, or is empty. ``tokens`` is the line as note text, one token an item,
+    which the entry shows. ``theory`` says whose theory it is, ``caution`` to whom it defers.
+    """
+
+    verdict: str
+    now: str
+    decided: bool
+    leanings: tuple[LeaningRow, ...]
+    in_view: str
+    rival: str
+    is_target: bool
+    owed: tuple[OwedRow, ...]
+    line: tuple[LineNote, ...]
+    ladder: tuple[Rung, ...]
+    why: tuple[WhyRow, ...]
+    keyboard_note: str
+    tokens: tuple[str, ...]
+    n_notes: int
+    reading: str
+    restricted: str
+    theory: str
+    caution: str
+    can_undo: bool
+    can_redo: bool
+    status: Status

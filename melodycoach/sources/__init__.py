@@ -1,0 +1,1 @@
+"""Edge in: files, ports and text become core values."""
