@@ -24,7 +24,18 @@ THIRD_PARTY_BY_LAYER = {
 ALLOWED_ANYWHERE_ELSE = {"numpy", "platformdirs"}
 EXTRA_BY_FILE = {"screen/terminal.py": {"prompt_toolkit"}}
 THIRD_PARTY = {"numpy", "mido", "rtmidi", "prompt_toolkit", "platformdirs"}
-IMPURE = {"threading", "time", "random", "os", "pathlib", "io", "socket", "subprocess", "datetime", "tempfile"}
+IMPURE = {
+    "threading",
+    "time",
+    "random",
+    "os",
+    "pathlib",
+    "io",
+    "socket",
+    "subprocess",
+    "datetime",
+    "tempfile",
+}
 
 FILES = sorted(PACKAGE.rglob("*.py"))
 

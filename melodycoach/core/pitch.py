@@ -23,6 +23,7 @@ from functools import cached_property
 
 A4_CENTS = 6900.0
 OCTAVE_CENTS = 1200.0
+LOWEST_CENTS, HIGHEST_CENTS = 0.0, 12700.0  # keys 0 and 127 of MIDI
 LETTERS = "CDEFGAB"
 
 _DOTLESS = str.maketrans({"ı": "i", "İ": "i", "ğ": "g", "Ğ": "g", "ş": "s", "Ş": "s"})
@@ -54,16 +55,32 @@ class Spelling:
     octave: int
 
     def __str__(self) -> str:
-        """Write it as note text does: ``B4-1``, ``F#5``, ``Bb4+1``.
+        """Write it as note text does: ``B4-1``, ``F#5``, ``Bb4+1``; octaves below 0 as ``C(-1)``.
 
         Examples
         --------
         >>> str(Spelling("B", -1, 1, 4)), str(Spelling("A", 0, 0, 4)), str(Spelling("E", 0, -0.25, 5))
         ('Bb4+1', 'A4', 'E5-0.25')
         """
-        mark = ("#" if self.accidentals > 0 else "b") * abs(self.accidentals)
-        rest = f"{self.units:+.2f}".rstrip("0").rstrip(".") if round(self.units, 2) else ""
-        return f"{self.letter}{mark}{self.octave}{rest}"
+        octave = str(self.octave) if self.octave >= 0 else f"({self.octave})"
+        return f"{self.letter}{self._mark}{octave}{self._rest}"
+
+    @property
+    def sign(self) -> str:
+        """Write it without its octave, as at the clef.
+
+        >>> Spelling("B", 0, -1, 4).sign, Spelling("F", 1, 0, 5).sign
+        ('B-1', 'F#')
+        """
+        return f"{self.letter}{self._mark}{self._rest}"
+
+    @property
+    def _mark(self) -> str:
+        return ("#" if self.accidentals > 0 else "b") * abs(self.accidentals)
+
+    @property
+    def _rest(self) -> str:
+        return f"{self.units:+.2f}".rstrip("0").rstrip(".") if round(self.units, 2) else ""
 
 
 @dataclass(frozen=True)
@@ -191,6 +208,10 @@ class PitchNames:
     def find(self, text: str) -> NamedPitch | None:
         """Look a name up in any spelling, with or without diacritics; None if unknown."""
         return self._by_folded.get(fold_name(text))
+
+    def at(self, units: int) -> NamedPitch | None:
+        """Look up the named pitch that lies so many units above A4; None if there is none."""
+        return self._by_units.get(units)
 
     def spell(self, cents: float) -> Spelling:
         """Write a pitch, to a hundredth of a unit, the way the named pitches are written."""

@@ -96,8 +96,7 @@ def rewrite(model: ScoringModel, line: Line, items: Sequence[Item]) -> Line:
     states = list(line.states[: kept + 1])
     for note in heard[kept:]:
         states.append(advance(model, states[-1], note))
-    last = max((i for i, item in enumerate(items) if isinstance(item, Note)), default=-1)
-    return Line(tuple(items), heard, tuple(states), last)
+    return Line(tuple(items), heard, tuple(states), _last_note_at(items))
 
 
 def extend(model: ScoringModel, line: Line, *items: Item) -> Line:
@@ -113,8 +112,12 @@ def _with_tail(model: ScoringModel, line: Line, items: tuple[Item, ...]) -> Line
     states = list(line.states[done : done + 1])
     for note in tail:
         states.append(advance(model, states[-1], note))
-    last = first + max((i for i, item in enumerate(items[first:]) if isinstance(item, Note)), default=-1 - first)
+    last = first + _last_note_at(items[first:]) if tail else -1
     return Line(items, line.heard[:done] + tail, line.states[:done] + tuple(states), last)
+
+
+def _last_note_at(items: Sequence[Item]) -> int:
+    return max((i for i, item in enumerate(items) if isinstance(item, Note)), default=-1)
 
 
 @dataclass(frozen=True, eq=False, slots=True)

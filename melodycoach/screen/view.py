@@ -52,7 +52,8 @@ class LineNote:
 
     ``height`` is in units from A4, for the contour. ``off_mode`` is empty, or says in a few words
     what is wrong; ``mend`` is the perde that would mend it. ``mark`` is the breath, phrase end or
-    bar line that follows, or empty.
+    bar line that follows, or empty. ``item`` is the place of the note in `ViewState.tokens`, -1
+    where that is not known.
     """
 
     number: int
@@ -64,6 +65,7 @@ class LineNote:
     off_mode: str = ""
     mend: str = ""
     mark: str = ""
+    item: int = -1
 
 
 @dataclass(frozen=True, slots=True)
@@ -103,6 +105,19 @@ class Status:
 
 
 @dataclass(frozen=True, slots=True)
+class Refusal:
+    """A command that could not be carried out.
+
+    ``number`` is that of the command, ``sentence`` says what was wrong and what to do. ``words``
+    are the words of a `ReplaceText` that cannot be read; empty: any of them.
+    """
+
+    number: int
+    sentence: str
+    words: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
 class ViewState:
     """Everything that one screen shows.
 
@@ -112,6 +127,8 @@ class ViewState:
     one) and ``rival`` the closest one behind it. ``keyboard_note`` says which rivals a plain
     keyboard cannot separate, or is empty. ``tokens`` is the line as note text, one token an item,
     which the entry shows. ``theory`` says whose theory it is, ``caution`` to whom it defers.
+    ``handled`` is the number of the newest command carried out or refused, and ``refusals`` are
+    the newest few refusals, oldest first: with them the entry knows what became of its edits.
     """
 
     verdict: str
@@ -135,3 +152,5 @@ class ViewState:
     can_undo: bool
     can_redo: bool
     status: Status
+    handled: int = 0
+    refusals: tuple[Refusal, ...] = ()

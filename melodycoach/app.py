@@ -1,0 +1,376 @@
+"""Wiring: from settings to a running coach, in full screen or line by line.
+
+The full screen draws in the main thread and the coach runs in one of its own; line by line, one
+thread does both. Either way the terminal is restored and the log complete, however it ends.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import signal
+import sys
+import threading
+import time
+from dataclasses import dataclass
+from datetime import datetime
+from pathlib import Path
+from queue import Empty, SimpleQueue
+from typing import TYPE_CHECKING, Any
+
+from platformdirs import user_config_path, user_data_path
+
+from melodycoach import __version__
+from melodycoach.coach import TURN_S, Clock, Coach, Player, read_final
+from melodycoach.core.event import PitchReading
+from melodycoach.core.session import begin
+from melodycoach.demo import PACK as DEMO_PACK
+from melodycoach.errors import MelodycoachError
+from melodycoach.players import DemoKeyboard, Keyboard, Replay
+from melodycoach.screen.plain import plain_line
+from melodycoach.sources.event_json import LogHeader
+from melodycoach.sources.event_log import EventLog, log_path, read_event_log
+from melodycoach.sources.midi_port import PortState, find_port
+from melodycoach.sources.midi_system import list_ports, quiet_stderr
+from melodycoach.sources.pack_file import load_pack
+
+if TYPE_CHECKING:
+    from collections.abc import Callable, Iterator
+
+    from melodycoach.core.session import SessionState
+    from melodycoach.screen.view import ViewState
+
+HURRIED = 400.0
+"""How much faster than real time a hurried demo or replay runs."""
+
+SWITCH_INTERVAL_S = 0.001
+"""How soon Python hands the processor from the drawing thread to the coach."""
+
+
+@dataclass(frozen=True, slots=True)
+class Settings:
+    """What the command line asks of a live session, as it was typed."""
+
+    pack: str = DEMO_PACK
+    only: tuple[str, ...] = ()
+    target: str | None = None
+    final: str | None = None
+    any_pitch: bool = False
+    port: str | None = None
+    log: bool = True
+    open_file: Path | None = None
+    replay: Path | None = None
+    demo: bool = False
+    fast: bool = False
+
+
+def user_pack_dir() -> Path:
+    """Where the player's own mode packs are looked for."""
+    return Path(user_config_path("melodycoach")) / "packs"
+
+
+def session_log_dir() -> Path:
+    """Where event logs are kept."""
+    return Path(user_data_path("melodycoach")) / "sessions"
+
+
+def driver_log_path() -> Path:
+    """Where the messages of MIDI drivers go while the full screen is up."""
+    return Path(user_data_path("melodycoach")) / "drivers.log"
+
+
+def listen(settings: Settings, full_screen: bool, say: Callable[[str], None]) -> int:
+    """Run a live session to its end.
+
+    Parameters
+    ----------
+    settings
+        What the command line asks for.
+    full_screen
+        Draw a screen; else one line of text for each note goes to ``say``.
+    say
+        Prints a line.
+
+    Returns
+    -------
+    int
+        The exit code.
+    """
+    clock = Clock(HURRIED if settings.fast else 1.0)
+    session, player, log = _prepare(settings, clock)
+    if full_screen:
+        coach = Coach(session, player, clock, log)
+        _open_first_file(coach, settings)
+        return _run_full_screen(coach, clock)
+    printer = _Printer(say)
+    coach = Coach(session, player, clock, log, on_note=printer.note)
+    printer.begin(coach)
+    _open_first_file(coach, settings)
+    return _run_plain(coach, player, clock, printer)
+
+
+def _prepare(settings: Settings, clock: Clock) -> tuple[SessionState, Player, EventLog | None]:
+    """Read everything that a session needs, and refuse early what cannot be."""
+    recorded = read_event_log(settings.replay) if settings.replay else None
+    pack = load_pack(recorded.header.pack_id if recorded else settings.pack, user_pack_dir())
+    reading, final_cents = PitchReading.WRITTEN, None
+    if settings.any_pitch:
+        reading = PitchReading.ANY
+    elif settings.final is not None:
+        reading, final_cents = read_final(settings.final, pack.names)
+    only = tuple(mode.id for mode in pack.restrict(settings.only)) if settings.only else ()
+    target = settings.target
+    if recorded is not None:
+        kept = recorded.header.settings
+        only = tuple(kept.get("only", ()))
+        reading = PitchReading(kept.get("reading", PitchReading.WRITTEN))
+        final_cents, target = kept.get("final_cents"), kept.get("target")
+    session = begin(pack, only, reading, final_cents, target)
+    if recorded is not None and settings.replay is not None:
+        return session, Replay(recorded, settings.replay), None
+    if settings.port is not None:
+        find_port(list_ports().inputs, settings.port)
+    player: Player = Keyboard(clock, settings.port or "")
+    if settings.demo:
+        assert isinstance(player, Keyboard)
+        player = DemoKeyboard(pack.names, player)
+    return session, player, _open_log(session) if settings.log else None
+
+
+def _open_log(session: SessionState) -> EventLog:
+    started = datetime.now().astimezone()
+    kept: dict[str, Any] = {
+        "only": list(session.only),
+        "reading": session.reading.value,
+        "final_cents": session.final_cents,
+        "target": session.target.id if session.target else None,
+    }
+    header = LogHeader(__version__, started, session.pack.id, kept)
+    return EventLog(log_path(session_log_dir(), started), header)
+
+
+def _open_first_file(coach: Coach, settings: Settings) -> None:
+    if settings.open_file is not None:
+        try:
+            coach.open_text(settings.open_file)
+        except MelodycoachError:
+            coach.close()
+            raise
+
+
+# --- full screen -------------------------------------------------------------------------------
+
+
+def _run_full_screen(coach: Coach, clock: Clock) -> int:
+    from melodycoach.screen.terminal import Screen
+
+    screen = Screen(lambda: coach.view, coach.send, _choices(coach))
+    runner = _Runner(coach, clock, screen.refresh, screen.leave)
+    sys.setswitchinterval(SWITCH_INTERVAL_S)
+    with quiet_stderr(driver_log_path()), _signals(lambda: screen.leave(None)):
+        runner.start()
+        try:
+            screen.run()
+        finally:
+            runner.stop()
+    if runner.fault is not None:
+        raise runner.fault
+    return 0
+
+
+class _Runner(threading.Thread):
+    """The thread that owns the coach; what stops it by force is kept in `fault`."""
+
+    def __init__(
+        self,
+        coach: Coach,
+        clock: Clock,
+        refresh: Callable[[], None],
+        leave: Callable[[BaseException | None], None],
+    ) -> None:
+        super().__init__(name="coach", daemon=True)
+        self.fault: Exception | None = None
+        self._coach, self._clock = coach, clock
+        self._refresh, self._leave = refresh, leave
+        self._stopping = threading.Event()
+
+    def run(self) -> None:
+        try:
+            while not self._stopping.is_set():
+                if self._coach.turn():
+                    self._refresh()
+                if self._coach.wants_to_quit:
+                    self._leave(None)
+                self._stopping.wait(TURN_S)
+        except Exception as fault:  # noqa: BLE001  (shown by the main thread, once the screen is restored)
+            self.fault = fault
+            self._leave(None)
+        finally:
+            self._coach.close()
+
+    def stop(self) -> None:
+        """Ask the thread to end, and wait until the log is complete."""
+        self._stopping.set()
+        self.join(timeout=5.0)
+
+
+@contextlib.contextmanager
+def _signals(leave: Callable[[], None]) -> Iterator[None]:
+    """Leave in good order when the system asks the program to end."""
+    asked = [getattr(signal, name) for name in ("SIGTERM", "SIGHUP") if hasattr(signal, name)]
+    if threading.current_thread() is not threading.main_thread():
+        asked = []  # signals belong to the main thread; a test may run the screen elsewhere
+    before = {number: signal.signal(number, lambda *_: leave()) for number in asked}
+    try:
+        yield
+    finally:
+        for number, handler in before.items():
+            signal.signal(number, handler)
+
+
+def _choices(coach: Coach) -> Callable[[str], tuple[str, ...]]:
+    """Give the names that a question of the screen can be answered with, by its kind."""
+
+    def choices(kind: str) -> tuple[str, ...]:
+        session = coach.session
+        match kind:
+            case "target" | "only":
+                return tuple(mode.slug for mode in session.pack.modes)
+            case "final":
+                return ("written", "any", *(pitch.name for pitch in session.pack.names.named))
+            case "port":
+                return tuple(port.name for port in list_ports().inputs)
+            case _:
+                return ()
+
+    return choices
+
+
+# --- line by line ------------------------------------------------------------------------------
+
+
+class _Printer:
+    """Prints a line for each note, and the sentences about the world when they change."""
+
+    def __init__(self, say: Callable[[str], None]) -> None:
+        self._say = say
+        self._previous: ViewState | None = None
+        self._status: tuple[str, ...] = ()
+
+    def begin(self, coach: Coach) -> None:
+        self._say(f"{coach.view.theory}. {coach.view.caution}")
+        self.world(coach.view)
+
+    def note(self, view: ViewState) -> None:
+        self.world(view)
+        self._say(plain_line(view, self._previous))
+        self._previous = view
+
+    def world(self, view: ViewState) -> None:
+        """Say what is new about input, tuning, log and warnings."""
+        status = (view.status.input_line, view.status.log_line, view.status.warning)
+        for new in status:
+            if new and new not in self._status:
+                self._say(f"({new})")
+        self._status = status
+
+
+def _run_plain(coach: Coach, player: Player, clock: Clock, printer: _Printer) -> int:
+    """Read what is typed and played until there is no more of either."""
+    typed: SimpleQueue[str | None] = SimpleQueue()
+    threading.Thread(target=_read_lines, args=(typed,), name="typed lines", daemon=True).start()
+    typing = True
+    try:
+        with _ending_by_signal():
+            while True:
+                if coach.turn():
+                    printer.world(coach.view)
+                hurried_out = player.is_over(clock())
+                if hurried_out:
+                    clock.slow_down()
+                if typing and (hurried_out or not _plays_by_itself(player)):
+                    typing = _take_typed(coach, typed)
+                if not typing and (hurried_out or not _may_still_play(player)):
+                    break
+                time.sleep(TURN_S)
+    finally:
+        coach.close()
+    return 0
+
+
+def _plays_by_itself(player: Player) -> bool:
+    return not isinstance(player, Keyboard)
+
+
+def _may_still_play(player: Player) -> bool:
+    """Whether there is someone to wait for when nobody types any more."""
+    return _plays_by_itself(player) or (
+        isinstance(player, Keyboard) and player.status.state in (PortState.OPEN, PortState.LOST)
+    )
+
+
+def _read_lines(typed: SimpleQueue[str | None]) -> None:
+    with contextlib.suppress(OSError, ValueError, AttributeError):  # closed, or never there
+        for line in sys.stdin:
+            typed.put(line)
+    typed.put(None)
+
+
+def _take_typed(coach: Coach, typed: SimpleQueue[str | None]) -> bool:
+    """Put what has been typed behind the line, note by note; False at the end of input."""
+    try:
+        line = typed.get_nowait()
+    except Empty:
+        return True
+    if line is None:
+        return False
+    coach.append_text(line)
+    return True
+
+
+class _Ended(BaseException):
+    """The system asked the program to end."""
+
+
+@contextlib.contextmanager
+def _ending_by_signal() -> Iterator[None]:
+    def end() -> None:
+        raise _Ended
+
+    with contextlib.suppress(_Ended), _signals(end):
+        yield
+
+
+# --- ports -------------------------------------------------------------------------------------
+
+
+def ports_json() -> dict[str, Any]:
+    """List the ports as plain values."""
+    ports = list_ports()
+    return {
+        "inputs": [{"name": port.name, "system": port.system} for port in ports.inputs],
+        "outputs": [{"name": port.name, "system": port.system} for port in ports.outputs],
+        "problem": ports.problem,
+    }
+
+
+def ports_text() -> str:
+    """List the ports for people, and say what to do when there are none."""
+    ports = list_ports()
+    lines = []
+    for title, found in (("MIDI inputs", ports.inputs), ("MIDI outputs", ports.outputs)):
+        lines.append(f"{title}:")
+        lines += [f"  {port.name}  ({port.system})" for port in found] or ["  none"]
+    if ports.problem:
+        lines.append(ports.problem)
+    elif not ports.inputs:
+        lines += [
+            "",
+            "No keyboard was found. Plug one in and switch it on: it is taken as soon as it appears.",
+            "On Linux the MIDI sequencer of ALSA or a JACK server has to run. You can always type notes.",
+        ]
+    else:
+        lines += [
+            "",
+            "melodycoach listen --port NAME listens to one of them; a part of its name will do.",
+        ]
+    return "\n".join(lines)

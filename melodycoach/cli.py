@@ -1,0 +1,288 @@
+"""The command line: arguments in, exit code out. The only file that prints.
+
+Nothing heavy is imported before the arguments are understood, so that ``--help`` is quick.
+"""
+
+from __future__ import annotations
+
+import argparse
+import json
+import os
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING, Any, NoReturn
+
+from melodycoach import __version__
+from melodycoach.errors import MelodycoachError, UsageError
+
+if TYPE_CHECKING:
+    from collections.abc import Callable, Sequence
+
+    from melodycoach.app import Settings
+    from melodycoach.core.mode import ModePack
+
+DONE, ANSWER_IS_NO, BAD_INPUT, INTERRUPTED = 0, 1, 2, 130
+DEFAULT_PACK = "makam"
+DEFAULT_COMMAND = "listen"
+
+_EPILOG = """\
+examples:
+  melodycoach                       play or type a line, full screen
+  melodycoach demo                  see it at work, with no keyboard
+  melodycoach listen --plain        one line of text for each note
+  melodycoach modes huseyni         what one makam is made of
+  melodycoach COMMAND --help        the options of one command
+"""
+
+
+def main(argv: Sequence[str] | None = None) -> int:
+    """Run the program and give its exit code: 0 done, 1 the answer is no, 2 bad usage or input."""
+    words = list(sys.argv[1:] if argv is None else argv)
+    parser, commands = _parser()
+    if not words or words[0] not in (*commands, "-h", "--help", "--version"):
+        words.insert(0, DEFAULT_COMMAND)
+    options = parser.parse_args(words)
+    run: Callable[[argparse.Namespace], int] = options.run
+    try:
+        return run(options)
+    except MelodycoachError as error:
+        if options.debug:
+            raise
+        print(f"melodycoach: {error}", file=sys.stderr)
+        for fault in error.faults:
+            print(f"  {fault}", file=sys.stderr)
+        return error.exit_code
+    except KeyboardInterrupt:
+        return INTERRUPTED
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())  # nobody reads on: say no more
+        return DONE
+
+
+def _parser() -> tuple[argparse.ArgumentParser, Sequence[str]]:
+    parser = _Parser(
+        prog="melodycoach",
+        description="Hears a phrase, played or typed, and says note by note which mode it implies, "
+        "which characteristic steps it still owes that mode, and why.",
+        epilog=_EPILOG,
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+    )
+    parser.add_argument("--version", action="version", version=f"melodycoach {__version__}")
+    commands = parser.add_subparsers(title="commands", metavar="COMMAND")
+    _add_listen(commands)
+    _add_demo(commands)
+    _add_modes(commands)
+    _add_ports(commands)
+    _add_evaluate(commands)
+    return parser, tuple(commands.choices)
+
+
+class _Parser(argparse.ArgumentParser):
+    def error(self, message: str) -> NoReturn:
+        self.exit(BAD_INPUT, f"melodycoach: {message}; see {self.prog} --help\n")
+
+
+def _command(
+    commands: Any, name: str, run: Callable[[argparse.Namespace], int], says: str, example: str
+) -> Any:
+    command = commands.add_parser(
+        name,
+        help=says,
+        description=says[0].upper() + says[1:] + ".",
+        epilog=f"example:\n  melodycoach {example}",
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+    )
+    command.set_defaults(run=run)
+    command.add_argument("--debug", action="store_true", help="show where in the program an error arose")
+    return command
+
+
+def _add_pack(command: Any) -> None:
+    command.add_argument(
+        "--pack", default=DEFAULT_PACK, metavar="NAME|FILE", help=f"mode pack (default: {DEFAULT_PACK})"
+    )
+
+
+def _add_only(command: Any) -> None:
+    command.add_argument("--only", default="", metavar="A,B,…", help="let only these modes compete")
+
+
+def _add_live(command: Any) -> None:
+    command.add_argument("--port", metavar="NAME", help="MIDI input; a part of its name will do")
+    command.add_argument("--plain", action="store_true", help="one line of text a note, no full screen")
+    command.add_argument("--no-log", action="store_true", help="keep no event log of the session")
+
+
+# --- listen and demo ---------------------------------------------------------------------------
+
+
+def _add_listen(commands: Any) -> None:
+    says = "play or type a line and see which mode it implies (the default command)"
+    command = _command(commands, "listen", _listen, says, "listen --target huseyni --port Keystation")
+    command.add_argument("file", nargs="?", metavar="FILE", help="a line in note text to begin with")
+    _add_pack(command)
+    _add_only(command)
+    command.add_argument("--target", metavar="MODE", help="the mode that you aim at")
+    final = command.add_mutually_exclusive_group()
+    final.add_argument("--final", metavar="PITCH", help="the final, as a note or perde: A4, dügâh")
+    final.add_argument("--any-pitch", action="store_true", help="every mode may stand on every pitch")
+    _add_live(command)
+    command.add_argument("--replay", metavar="LOG", help="play back the event log of an earlier session")
+    command.add_argument("--fast", action="store_true", help="with --replay: do not wait between the notes")
+
+
+def _listen(options: argparse.Namespace) -> int:
+    from melodycoach.app import Settings, listen
+
+    if options.fast and not options.replay:
+        raise UsageError("--fast goes with --replay")
+    if options.replay and options.file:
+        raise UsageError("--replay and FILE: one line to begin with at a time; leave one of them out")
+    settings = Settings(
+        pack=options.pack,
+        only=_names(options.only),
+        target=options.target,
+        final=options.final,
+        any_pitch=options.any_pitch,
+        port=options.port,
+        log=not options.no_log,
+        open_file=Path(options.file) if options.file else None,
+        replay=Path(options.replay) if options.replay else None,
+        fast=options.fast,
+    )
+    return _run_live(settings, options.plain, listen)
+
+
+def _add_demo(commands: Any) -> None:
+    says = "hear a line of ours through the whole live path, with no keyboard; then it is your turn"
+    command = _command(commands, "demo", _demo, says, "demo")
+    _add_live(command)
+    command.add_argument("--fast", action="store_true", help="as fast as the machine can")
+
+
+def _demo(options: argparse.Namespace) -> int:
+    from melodycoach.app import Settings, listen
+
+    settings = Settings(port=options.port, log=not options.no_log, demo=True, fast=options.fast)
+    return _run_live(settings, options.plain, listen)
+
+
+def _run_live(settings: Settings, plain: bool, listen: Callable[..., int]) -> int:
+    """Choose the screen: full, or plain when asked for or when nobody looks at a terminal."""
+    full_screen = not plain and sys.stdout.isatty() and sys.stdin.isatty()
+    return listen(settings, full_screen=full_screen, say=_say)
+
+
+def _say(text: str) -> None:
+    print(text, flush=True)
+
+
+# --- modes, ports, evaluate --------------------------------------------------------------------
+
+
+def _add_modes(commands: Any) -> None:
+    says = "list the modes, or say what one of them is made of"
+    command = _command(commands, "modes", _modes, says, "modes huseyni")
+    command.add_argument("mode", nargs="?", metavar="MODE", help="one mode, in any spelling")
+    _add_pack(command)
+    command.add_argument("--check", metavar="FILE", help="say whether a mode pack of yours can be used")
+    command.add_argument("--json", action="store_true", help="print JSON")
+
+
+def _modes(options: argparse.Namespace) -> int:
+    from melodycoach.report.modes import mode_json, mode_text, modes_json, modes_text
+    from melodycoach.sources.pack_file import read_pack
+
+    if options.check:
+        checked = read_pack(Path(options.check))
+        print(f"{options.check}: pack {checked.id!r} with {len(checked.modes)} modes can be used")
+        return DONE
+    pack = _pack(options.pack)
+    if options.mode:
+        mode = pack.find(options.mode)
+        _print_result(options.json, mode_json(pack, mode), lambda: mode_text(pack, mode, _columns()))
+    else:
+        _print_result(options.json, modes_json(pack), lambda: modes_text(pack, _columns()))
+    return DONE
+
+
+def _add_ports(commands: Any) -> None:
+    command = _command(
+        commands,
+        "ports",
+        _ports,
+        "list the MIDI inputs and outputs, and what to do when there are none",
+        "ports",
+    )
+    command.add_argument("--json", action="store_true", help="print JSON")
+
+
+def _ports(options: argparse.Namespace) -> int:
+    from melodycoach.app import ports_json, ports_text
+
+    _print_result(options.json, ports_json(), ports_text)
+    return DONE
+
+
+def _add_evaluate(commands: Any) -> None:
+    says = "measure how well the modes of a labelled collection are named"
+    example = "evaluate collection.jsonl.gz --only rast,mahur,ussak --json"
+    command = _command(commands, "evaluate", _evaluate, says, example)
+    command.add_argument("collection", metavar="COLLECTION", help="JSON lines, gzipped or not")
+    _add_pack(command)
+    _add_only(command)
+    command.add_argument(
+        "--as",
+        dest="reading",
+        choices=("written", "final", "any"),
+        default="written",
+        help="what is known of the final (default: written)",
+    )
+    command.add_argument(
+        "--input",
+        choices=("typed", "keys", "tuned", "recorded"),
+        default="recorded",
+        help="how the notes came about: sets noise and blur (default: recorded)",
+    )
+    command.add_argument(
+        "--seams", type=_count, default=0, metavar="N", help="also splice N pairs"
+    )
+    command.add_argument(
+        "--owed", type=_count, default=0, metavar="N", help="also try owed steps on N melodies"
+    )
+    command.add_argument(
+        "--seed", type=int, default=1, metavar="N", help="of random choices (default: 1)"
+    )
+    command.add_argument("--strict", action="store_true", help="stop at the first bad record")
+    command.add_argument("--json", action="store_true", help="print JSON")
+
+
+def _count(text: str) -> int:
+    value = int(text)
+    if not 0 <= value <= 100_000:
+        raise argparse.ArgumentTypeError(f"{text!r} is not a number from 0 to 100000")
+    return value
+
+
+# --- shared ------------------------------------------------------------------------------------
+
+
+def _names(text: str) -> tuple[str, ...]:
+    return tuple(name.strip() for name in text.split(",") if name.strip())
+
+
+def _pack(name: str) -> ModePack:
+    from melodycoach.app import user_pack_dir
+    from melodycoach.sources.pack_file import load_pack
+
+    return load_pack(name, user_pack_dir())
+
+
+def _columns() -> int:
+    from shutil import get_terminal_size
+
+    return max(40, min(get_terminal_size((80, 24)).columns, 120))
+
+
+def _print_result(as_json: bool, data: object, text: Callable[[], str]) -> None:
+    print(json.dumps(data, ensure_ascii=False, indent=2) if as_json else text())

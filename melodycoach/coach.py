@@ -1,0 +1,403 @@
+"""The coach: the one owner of the keyboard, the session and its log.
+
+One thread calls `turn` again and again. Each turn takes what has been played, what the screen has
+asked for and what time has passed, makes events of it, applies and logs them, and publishes one
+new `ViewState` by swapping a reference. Other threads only `send` commands and read `view`.
+"""
+
+from __future__ import annotations
+
+import time
+from collections import deque
+from dataclasses import replace
+from pathlib import Path
+from queue import Empty, SimpleQueue
+from typing import TYPE_CHECKING, Protocol
+
+from melodycoach.core.event import (
+    Event,
+    FreshStart,
+    LineEdited,
+    ModesRestricted,
+    NoteOff,
+    NoteOn,
+    PitchReading,
+    ReadingChosen,
+    Redone,
+    TargetChosen,
+    TimePassed,
+    Undone,
+)
+from melodycoach.core.note import Item, Note
+from melodycoach.core.session import PHRASE_GAP_S, SessionState, apply
+from melodycoach.errors import MelodycoachError, NoteTextError, StorageError, UnknownNameError
+from melodycoach.screen.command import (
+    Command,
+    Fresh,
+    Open,
+    Quit,
+    Redo,
+    ReplaceText,
+    Save,
+    SetFinal,
+    SetOnly,
+    SetPort,
+    SetTarget,
+    Undo,
+)
+from melodycoach.screen.view import Refusal, Status, ViewState
+from melodycoach.screen.view_of import ViewMaker
+from melodycoach.sources.note_text import (
+    DEFAULT_TEMPO,
+    Headers,
+    find_faults,
+    item_token,
+    read_note_text,
+    read_tokens,
+    write_note_text,
+)
+
+if TYPE_CHECKING:
+    from collections.abc import Callable, Sequence
+
+    from melodycoach.core.pitch import PitchNames
+    from melodycoach.sources.event_log import EventLog
+
+TICK_S = 0.1
+"""How often a sounding note or a silence is looked at again."""
+
+TURN_S = 0.001
+"""How long the owner sleeps between two turns."""
+
+REFUSALS_KEPT = 8
+
+
+class Clock:
+    """Seconds from the start of the session, real or hurried."""
+
+    def __init__(self, speed: float = 1.0) -> None:
+        self._began_s = time.monotonic()
+        self._speed = speed
+        self._offset_s = 0.0
+
+    def __call__(self) -> float:
+        """Read the clock."""
+        return self._offset_s + (time.monotonic() - self._began_s) * self._speed
+
+    def slow_down(self) -> None:
+        """Go on in real time from now."""
+        self._offset_s = self()
+        self._began_s, self._speed = time.monotonic(), 1.0
+
+
+class Player(Protocol):
+    """Something that plays into the session: a keyboard, the demo, a recorded log."""
+
+    def poll(self, now_s: float) -> Sequence[Event]:
+        """Give the events since the last call, in order."""
+
+    def input_line(self, now_s: float) -> str:
+        """Say in a sentence what is being listened to."""
+
+    def tuning_line(self) -> str:
+        """Say in a sentence which tuning is believed, and why."""
+
+    def choose(self, name: str) -> None:
+        """Listen to the input of this name, or to a part of it."""
+
+    def is_over(self, now_s: float) -> bool:
+        """Whether nothing more will come by itself."""
+
+    def close(self) -> None:
+        """Let go of everything."""
+
+
+class Coach:
+    """Owns a session and everything that changes it.
+
+    Parameters
+    ----------
+    session
+        Where to begin.
+    player
+        What plays into it.
+    clock
+        Seconds from the start of the session.
+    log
+        Where events are written, or None.
+    on_note
+        Called with a view after each note that has ended; for output line by line.
+    """
+
+    def __init__(
+        self,
+        session: SessionState,
+        player: Player,
+        clock: Callable[[], float],
+        log: EventLog | None = None,
+        on_note: Callable[[ViewState], None] | None = None,
+    ) -> None:
+        self.session = session
+        self._player = player
+        self._clock = clock
+        self._log = log
+        self._on_note = on_note
+        self._commands: SimpleQueue[Command] = SimpleQueue()
+        self._view_maker = ViewMaker()
+        self._tempo = float(DEFAULT_TEMPO)
+        self._headers = Headers()
+        self._warning = log.fault or "" if log else ""
+        self._handled = 0
+        self._refusals: deque[Refusal] = deque(maxlen=REFUSALS_KEPT)
+        self._ticked_s = 0.0
+        self._written: tuple[tuple[Item, ...], tuple[str, ...]] = ((), ())
+        self._shown: tuple[object, ...] = ()
+        self.wants_to_quit = False
+        self.view = self._make_view()
+
+    @property
+    def names(self) -> PitchNames:
+        """The pitch names of the pack in use."""
+        return self.session.pack.names
+
+    def send(self, command: Command) -> None:
+        """Ask for something; any thread may. It is done at the next turn."""
+        self._commands.put(command)
+
+    def turn(self) -> bool:
+        """Take everything that has happened since the last turn; tell whether the view changed."""
+        for event in self._player.poll(self._clock()):
+            self.take(event)
+        while True:
+            try:
+                command = self._commands.get_nowait()
+            except Empty:
+                break
+            self._carry_out(command)
+        self._tick()
+        return self._publish()
+
+    def take(self, event: Event) -> None:
+        """Apply one event and log it."""
+        if self._ends_a_note(event):
+            self.session = apply(self.session, TimePassed(event.at_s))
+            if isinstance(event, NoteOff):
+                self.session = apply(self.session, event)
+            if self._on_note is not None:
+                self._on_note(self._make_view())
+            if isinstance(event, NoteOn):
+                self.session = apply(self.session, event)
+        else:
+            self.session = apply(self.session, event)
+        if self._log is not None and (fault := self._log.append(event)):
+            self._warning = fault
+
+    def close(self) -> None:
+        """Close the keyboard and the log."""
+        self._player.close()
+        if self._log is not None:
+            self._log.append(TimePassed(self._clock()))
+            self._log.close()
+
+    def _ends_a_note(self, event: Event) -> bool:
+        sounding = self.session.sounding
+        if isinstance(event, NoteOff):
+            return event.voice == sounding
+        return isinstance(event, NoteOn) and sounding is not None
+
+    def _tick(self) -> None:
+        """Let the clock be seen while a note sounds or a silence may still become something."""
+        now_s = self._clock()
+        line = self.session.line.last_note
+        if now_s - self._ticked_s < TICK_S or line is None or line.beats is not None:
+            return
+        silent_s = now_s - line.onset_s - line.duration_s
+        if self.session.sounding is not None or silent_s <= PHRASE_GAP_S + 2 * TICK_S:
+            self._ticked_s = now_s
+            self.session = apply(self.session, TimePassed(now_s))
+
+    # --- commands ---------------------------------------------------------------------------
+
+    def _carry_out(self, command: Command) -> None:
+        self._handled = max(self._handled, command.number)
+        self._warning = ""
+        try:
+            self._obey(command)
+        except MelodycoachError as error:
+            words = ()
+            if isinstance(command, ReplaceText) and isinstance(error, NoteTextError):
+                faults = find_faults(command.text, self.names, with_headers=False)
+                words = tuple(fault.token for fault in faults)
+            self._warning = str(error)
+            self._refusals.append(Refusal(command.number, str(error), words))
+
+    def _obey(self, command: Command) -> None:
+        now_s = self._clock()
+        match command:
+            case ReplaceText():
+                self._replace_text(command, now_s)
+            case Undo():
+                self.take(Undone(now_s))
+            case Redo():
+                self.take(Redone(now_s))
+            case Fresh():
+                self.take(FreshStart(now_s))
+            case SetTarget():
+                mode = self.session.pack.find(command.text) if command.text else None
+                self.take(TargetChosen(now_s, mode.id if mode else None))
+            case SetFinal():
+                reading, final_cents = read_final(command.text, self.names)
+                self.take(ReadingChosen(now_s, reading, final_cents))
+            case SetOnly():
+                wanted = tuple(name.strip() for name in command.text.split(",") if name.strip())
+                ids = tuple(mode.id for mode in self.session.pack.restrict(wanted)) if wanted else ()
+                self.take(ModesRestricted(now_s, ids))
+            case SetPort():
+                self._player.choose(command.text)
+            case Save():
+                self._save(Path(command.path).expanduser())
+            case Open():
+                self.open_text(Path(command.path).expanduser())
+            case Quit():
+                self.wants_to_quit = True
+
+    def _replace_text(self, command: ReplaceText, now_s: float) -> None:
+        n_items = len(self.session.line.items)
+        start, stop = min(command.start, n_items), min(command.stop, n_items)
+        items = read_tokens(command.text, self.names, now_s, self._tempo)
+        self.take(LineEdited(now_s, start, max(start, stop), items))
+
+    def append_text(self, text: str) -> None:
+        """Put typed text behind the line, note by note; each note goes to ``on_note``.
+
+        A word that cannot be read is warned of, and nothing of the text is taken.
+        """
+        self._warning = ""
+        try:
+            items = read_tokens(text, self.names, self._clock(), self._tempo)
+        except NoteTextError as error:
+            self._warning = str(error)
+            return
+        for group in _notes_with_marks(items):
+            n_items = len(self.session.line.items)
+            self.take(LineEdited(self._clock(), n_items, n_items, group))
+            if self._on_note is not None and any(isinstance(item, Note) for item in group):
+                self._on_note(self._make_view())
+
+    def _save(self, path: Path) -> None:
+        session = self.session
+        headers = replace(self._headers, mode=session.target.slug if session.target else self._headers.mode)
+        text = write_note_text(headers, session.line.items, self.names)
+        try:
+            path.parent.mkdir(parents=True, exist_ok=True)
+            path.write_text(text, encoding="utf-8")
+        except OSError as error:
+            raise StorageError(
+                f"{path}: {error.strerror}; the line is still here, save it elsewhere"
+            ) from error
+        self._warning = f"saved as {path}"
+
+    def open_text(self, path: Path) -> None:
+        """Put the line of a note-text file in place of this one.
+
+        Raises
+        ------
+        StorageError
+            The file cannot be read.
+        NoteTextError
+            It holds something that is no note text.
+        """
+        try:
+            text = path.read_text(encoding="utf-8-sig")
+        except OSError as error:
+            raise StorageError(f"{path}: {error.strerror}; name a file of note text") from error
+        except UnicodeDecodeError as error:
+            raise StorageError(
+                f"{path}: byte {error.start} is not UTF-8 text; save the file as UTF-8"
+            ) from error
+        read = read_note_text(text, self.names, path.name)
+        now_s = self._clock()
+        if read.headers.mode:
+            self.take(TargetChosen(now_s, self.session.pack.find(read.headers.mode).id))
+        self._headers = read.headers
+        self._tempo = float(read.headers.tempo or DEFAULT_TEMPO)
+        self.take(LineEdited(now_s, 0, len(self.session.line.items), read.items))
+
+    # --- the view ---------------------------------------------------------------------------
+
+    def _publish(self) -> bool:
+        now_s = self._clock()
+        shown = (
+            self.session.line,
+            self.session.model,
+            self.session.target,
+            self._warning,
+            self._handled,
+            len(self._refusals),
+            self._player.input_line(now_s),
+            self._player.tuning_line(),
+        )
+        if shown == self._shown:
+            return False
+        self._shown = shown
+        self.view = self._make_view()
+        return True
+
+    def _make_view(self) -> ViewState:
+        log_line = ""
+        if self._log is not None:
+            log_line = "no log: see the warning" if self._log.fault else f"log: {self._log.path}"
+        status = Status(
+            input_line=self._player.input_line(self._clock()),
+            tuning_line=self._player.tuning_line(),
+            log_line=log_line,
+            warning=self._warning,
+        )
+        view = self._view_maker.view_of(self.session, status, self._tokens())
+        return replace(view, handled=self._handled, refusals=tuple(self._refusals))
+
+    def _tokens(self) -> tuple[str, ...]:
+        """Write the line as note text; what was written for the last view is kept."""
+        items, (known, tokens) = self.session.line.items, self._written
+        kept = 0
+        for old, new in zip(known, items, strict=False):
+            if old is not new:
+                break
+            kept += 1
+        fresh = (item_token(item, self.names, self._tempo) for item in items[kept:])
+        self._written = (items, (*tokens[:kept], *fresh))
+        return self._written[1]
+
+
+def _notes_with_marks(items: Sequence[Item]) -> list[tuple[Item, ...]]:
+    """Cut a run of items before each note, so that every note has what follows it beside it."""
+    groups: list[tuple[Item, ...]] = []
+    for item in items:
+        if isinstance(item, Note) or not groups:
+            groups.append((item,))
+        else:
+            groups[-1] = (*groups[-1], item)
+    return groups
+
+
+def read_final(text: str, names: PitchNames) -> tuple[PitchReading, float | None]:
+    """Read what the player says of the final: a pitch or a perde, ``written`` or ``any``.
+
+    Raises
+    ------
+    UnknownNameError
+        It is none of these.
+    """
+    word = text.strip()
+    if word.lower() in (PitchReading.WRITTEN, PitchReading.ANY):
+        return PitchReading(word.lower()), None
+    try:
+        items = read_tokens(word, names, 0.0, DEFAULT_TEMPO)
+    except NoteTextError:
+        items = ()
+    pitches = [getattr(item, "pitch_cents", None) for item in items]
+    if len(pitches) != 1 or pitches[0] is None:
+        raise UnknownNameError(
+            f"final: found {text!r}, expected one pitch such as A4 or dügâh, or 'written' or 'any'"
+        )
+    return PitchReading.FINAL, pitches[0]

@@ -1,0 +1,197 @@
+"""What a pitch does in a mode: the degree that it stands for, and the function of that degree.
+
+Conventions
+-----------
+A degree is *placed*: it stands in its own octave. Inside the octave over the final a mode has
+exactly the degrees that it names there. Under the final and over the octave it has those that it
+names and, beside them, the copies of the degrees of the octave.
+
+A pitch stands for a degree when it lies within a tolerance of it, as written or as usually played
+(`TOLERANCE_COMMAS`, by the kind of input). A key of a plain keyboard stands for every degree that
+this key plays.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import StrEnum
+from math import floor
+from typing import TYPE_CHECKING
+
+from melodycoach.core.note import InputKind
+from melodycoach.core.pitch import A4_CENTS
+
+if TYPE_CHECKING:
+    from collections.abc import Iterator
+
+    from melodycoach.core.mode import Mode
+    from melodycoach.core.pitch import ToneSystem
+
+COMMA_CENTS = 1200 / 53
+
+TOLERANCE_COMMAS = {InputKind.TYPED: 1.5, InputKind.TUNED: 1.5, InputKind.RECORDED: 2.0}
+"""How far a pitch may lie from the degree that it stands for; plain keys are compared as keys."""
+
+KEY_CENTS = 100
+
+
+class Function(StrEnum):
+    """What a degree does in its mode, the most telling thing first."""
+
+    FINAL = "final"
+    DOMINANT = "dominant"
+    LEADING = "leading tone"
+    SUSPENDED = "suspended cadence"
+    FALLING = "falling form"
+    PASSING = "passing colour"
+    OPENING = "opening region"
+    DEGREE = "degree"
+    OUTSIDE = "not in the mode"
+
+
+@dataclass(frozen=True, slots=True)
+class TradeWords:
+    """The trade's own words for the functions, shown beside the English ones; empty: none."""
+
+    final: str = ""
+    dominant: str = ""
+    suspended: str = ""
+    leading: str = ""
+    course: str = ""
+
+    def of(self, function: Function) -> str:
+        """Give the word for a function, in the trade's tongue if it has one.
+
+        >>> trade_words(53).of(Function.DOMINANT), trade_words(12).of(Function.DOMINANT)
+        ('güçlü', 'dominant')
+        """
+        own = {
+            Function.FINAL: self.final,
+            Function.DOMINANT: self.dominant,
+            Function.SUSPENDED: self.suspended,
+            Function.LEADING: self.leading,
+        }
+        return own.get(function) or function.value
+
+    def beside(self, word: str) -> str:
+        """Give a word in brackets, to stand behind an English one, or nothing."""
+        return f" ({word})" if word else ""
+
+
+_WORDS_BY_DIVISIONS = {53: TradeWords("karar", "güçlü", "asma karar", "yeden", "seyir")}
+
+
+def trade_words(divisions: int) -> TradeWords:
+    """Give the words of the trade that counts in so many divisions of the octave."""
+    return _WORDS_BY_DIVISIONS.get(divisions, TradeWords())
+
+
+def key_of(cents: float) -> int:
+    """Give the number of the key of a plain keyboard that is nearest to a pitch.
+
+    >>> key_of(6900), key_of(6949.9), key_of(6950)
+    (69, 69, 70)
+    """
+    return floor(cents / KEY_CENTS + 0.5)
+
+
+def tolerance_units(kind: InputKind, system: ToneSystem) -> float:
+    """Give the tolerance of a kind of input in units; half a key for plain keys."""
+    commas = TOLERANCE_COMMAS.get(kind)
+    cents = KEY_CENTS / 2 if commas is None else commas * COMMA_CENTS
+    return cents / system.unit_cents
+
+
+def nearest_degree(mode: Mode, units: float, divisions: int) -> int:
+    """Give the placed degree nearest to a pitch, so many units above the final.
+
+    The distance is that from the degree as written or as usually played, whichever is smaller.
+    """
+    return min(_placed(mode, units, divisions), key=lambda place: _distance(place, units))[0]
+
+
+def find_degree(
+    mode: Mode, final_units: int, pitch_cents: float, kind: InputKind, system: ToneSystem
+) -> int | None:
+    """Give the placed degree that a pitch stands for, or None if it is none of the mode's.
+
+    Parameters
+    ----------
+    mode, final_units
+        The mode and where it stands, in units from A4.
+    pitch_cents
+        Cents on the MIDI scale.
+    kind
+        Where the pitch came from; it decides the tolerance.
+    system
+        The tone system of the pack.
+
+    Returns
+    -------
+    int or None
+        Units above the final. Of several degrees within the tolerance, the nearest; of several on
+        one key of a plain keyboard, one that is no mere passing colour before one that is.
+    """
+    units = system.cents_to_units(pitch_cents) - final_units
+    if kind is InputKind.KEYS:
+        key = key_of(pitch_cents)
+        on_key = [
+            place
+            for place in _placed(mode, units, system.divisions)
+            if any(key_of(A4_CENTS + (final_units + at) * system.unit_cents) == key for at in place)
+        ]
+        best = min(
+            on_key, key=lambda place: (place[0] in mode.passing, _distance(place, units)), default=None
+        )
+        return None if best is None else best[0]
+    nearest = min(_placed(mode, units, system.divisions), key=lambda place: _distance(place, units))
+    return nearest[0] if _distance(nearest, units) <= tolerance_units(kind, system) else None
+
+
+def function_of(mode: Mode, degree: int | None, divisions: int) -> Function:
+    """Say what a placed degree does in its mode; None stands for a pitch outside the mode.
+
+    Dominants and suspended cadences keep their function in other octaves; the leading tone is one
+    only under the final; the octave of the final counts as the final unless it is a dominant.
+    """
+    if degree is None:
+        return Function.OUTSIDE
+    folded = degree % divisions
+    if degree in mode.dominants:
+        return Function.DOMINANT
+    if folded == 0:
+        return Function.FINAL
+    if degree in mode.leading:
+        return Function.LEADING
+    if folded in {d % divisions for d in mode.dominants}:
+        return Function.DOMINANT
+    if folded in {d % divisions for d in mode.suspended}:
+        return Function.SUSPENDED
+    if degree in mode.falling and degree not in mode.rising:
+        return Function.FALLING
+    if degree in mode.passing:
+        return Function.PASSING
+    low, high = mode.opening
+    return Function.OPENING if low <= degree <= high else Function.DEGREE
+
+
+def _placed(mode: Mode, units: float, divisions: int) -> Iterator[tuple[int, float]]:
+    """Give (degree, degree as played) for every degree that could stand near a pitch."""
+    played = mode.played
+    for degree in mode.degrees:
+        yield degree, played.get(degree, degree)
+    octave = floor(units / divisions)
+    if octave == 0:
+        return
+    shift = octave * divisions
+    for degree in (*mode.rising, *mode.falling, *mode.passing):
+        if 0 <= degree <= divisions:
+            yield degree + shift, played.get(degree, degree) + shift
+    outer = mode.above if octave > 0 else mode.below
+    shift -= divisions if octave > 0 else -divisions
+    for degree in outer:
+        yield degree + shift, played.get(degree, degree) + shift
+
+
+def _distance(place: tuple[float, float], units: float) -> float:
+    return min(abs(units - place[0]), abs(units - place[1]))

@@ -1,0 +1,248 @@
+"""A scoring model: which hypotheses compete, and the tables that score a note under each.
+
+Conventions
+-----------
+A *hypothesis* is a mode on a final. Hypotheses are numbered so that all modes come in the same
+order for each final: hypothesis ``h`` is of mode ``h % n_modes``. With `PitchReading.WRITTEN` and
+`PitchReading.FINAL` there is one for each mode; with `PitchReading.ANY` each mode stands on every
+folded unit, and there is no register. ``final_units`` counts from A4; what is heard is compared
+with ``final_units + final_shift``, the shift being the part of a given final that is no whole unit.
+
+A *share* says how much of a heard pitch belongs to a unit. A pitch of known intonation is one
+unit; a key of a twelve-key keyboard is all the units that round to it, and one on the border of
+two keys belongs to both in proportion.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from melodycoach.core.event import PitchReading
+from melodycoach.core.ngram import Counts, NgramTable, build_table, snap_to_scale
+from melodycoach.core.note import InputKind
+from melodycoach.core.parameters import ScoringParameters
+from melodycoach.core.theory import (
+    FoldedScale,
+    circular_blur,
+    compass,
+    fold_scale,
+    folded_distributions,
+    register_distribution,
+)
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from melodycoach.core.mode import Mode, ModePack
+    from melodycoach.core.ngram import IntArray
+    from melodycoach.core.theory import FloatArray
+
+HALF_KEY_CENTS = 50.0
+"""A key of a twelve-key keyboard stands for pitches this far around its own."""
+
+
+@dataclass(frozen=True, eq=False, slots=True)
+class HearingTables:
+    """What one kind of input is scored with.
+
+    Parameters
+    ----------
+    theory : float64, shape (n_modes, 2, divisions)
+        From the definitions: moving and resting.
+    grams
+        Theory interpolated with counts, or None when there are no counts.
+    register : float64, shape (n_modes, units of the compass)
+        None with `PitchReading.ANY`.
+    register_power
+        Power of the register factor.
+    closing : float64, shape (n_modes, divisions)
+        How likely the last notes of a phrase that ends the melody are.
+    blur : float64, shape (divisions,)
+        How a heard unit is spread over its neighbours; sums to 1, its own place first.
+    """
+
+    theory: FloatArray
+    grams: NgramTable | None
+    closing: FloatArray
+    register: FloatArray | None
+    register_power: float
+    blur: FloatArray
+
+
+@dataclass(frozen=True, eq=False)
+class ScoringModel:
+    """Hypotheses and tables; nothing in it changes but the memory of tables already built.
+
+    Parameters
+    ----------
+    pack, modes, reading, parameters
+        As given to `build_model`.
+    order
+        Longest n-gram used; 1 without counts.
+    mode_index : int64, shape (n_hypotheses,)
+    final_units : int64, shape (n_hypotheses,)
+        From A4.
+    final_shift
+        In units; see the module's conventions.
+    log_prior : float64, shape (n_hypotheses,), nats
+        Even.
+    """
+
+    pack: ModePack
+    modes: tuple[Mode, ...]
+    reading: PitchReading
+    parameters: ScoringParameters
+    order: int
+    mode_index: IntArray
+    final_units: IntArray
+    final_shift: float
+    log_prior: FloatArray
+    _scales: tuple[FoldedScale, ...]
+    _counts: Counts
+    _tables: dict[InputKind, HearingTables] = field(default_factory=dict)
+
+    @property
+    def n_modes(self) -> int:
+        """How many modes compete."""
+        return len(self.modes)
+
+    def tables(self, kind: InputKind) -> HearingTables:
+        """Give the tables for a kind of input; they are built the first time."""
+        known = self._tables.get(kind)
+        if known is None:
+            known = self._tables[kind] = _build_tables(self, kind)
+        return known
+
+    def shares(self, pitch_cents: float, kind: InputKind) -> tuple[IntArray, FloatArray]:
+        """Give the units (from A4, the shift taken out) that a heard pitch stands for, and how far.
+
+        Returns
+        -------
+        int64 and float64, shape (n_units,)
+            Each share is in (0, 1].
+        """
+        system = self.pack.system
+        units = system.cents_to_units(pitch_cents) - self.final_shift
+        if kind is not InputKind.KEYS:
+            return np.array([round(units)], dtype=np.int64), np.ones(1)
+        half = HALF_KEY_CENTS / system.unit_cents
+        near = np.arange(int(np.floor(units - half)), int(np.ceil(units + half)) + 1)
+        share = np.clip(half + 0.5 - abs(near - units), 0.0, 1.0)
+        return near[share > 0], share[share > 0]
+
+
+def build_model(
+    pack: ModePack,
+    modes: Sequence[Mode],
+    reading: PitchReading = PitchReading.WRITTEN,
+    final_cents: float | None = None,
+    parameters: ScoringParameters | None = None,
+    counts: Counts | None = None,
+    order: int | None = None,
+) -> ScoringModel:
+    """Build the model that scores a line against some modes of a pack.
+
+    Parameters
+    ----------
+    pack, modes
+        The modes that compete, and the pack that they are from.
+    reading, final_cents
+        What is known of the final; ``final_cents`` goes with `PitchReading.FINAL` alone.
+    parameters
+        The constants; None: the defaults.
+    counts
+        What was counted in melodies; None: theory alone.
+    order
+        Longest n-gram to use; None: as long as the counts have.
+
+    Raises
+    ------
+    ValueError
+        No modes, a final that does not go with the reading, an order below 1.
+    """
+    parameters = parameters or ScoringParameters()
+    counts = counts or Counts()
+    if not modes:
+        raise ValueError("no modes, expected at least one")
+    if (reading is PitchReading.FINAL) != (final_cents is not None):
+        raise ValueError(f"final_cents {final_cents!r} does not go with the reading {str(reading)!r}")
+    if order is not None and order < 1:
+        raise ValueError(f"order {order!r}, expected 1 or more")
+    system = pack.system
+    shift = 0.0
+    if final_cents is not None:
+        exact = system.cents_to_units(final_cents)
+        finals = np.full((1, len(modes)), round(exact), dtype=np.int64)
+        shift = exact - round(exact)
+    elif reading is PitchReading.ANY:
+        finals = np.repeat(np.arange(system.divisions, dtype=np.int64)[:, None], len(modes), axis=1)
+    else:
+        finals = np.array([[mode.final_units for mode in modes]], dtype=np.int64)
+    mode_index = np.broadcast_to(np.arange(len(modes)), finals.shape).reshape(-1).copy()
+    log_prior = np.full(finals.size, -np.log(finals.size))
+    final_units = finals.reshape(-1)
+    for array in (mode_index, final_units, log_prior):
+        array.setflags(write=False)
+    return ScoringModel(
+        pack,
+        tuple(modes),
+        reading,
+        parameters,
+        min(order or counts.order, counts.order),
+        mode_index,
+        final_units,
+        shift,
+        log_prior,
+        tuple(fold_scale(mode, parameters, system) for mode in modes),
+        counts,
+    )
+
+
+def _build_tables(model: ScoringModel, kind: InputKind) -> HearingTables:
+    parameters, system = model.parameters, model.pack.system
+    hearing = parameters.hearing[kind]
+    theory = np.stack([folded_distributions(scale, hearing, system) for scale in model._scales])
+    counted = [model._counts.by_mode.get(mode.id) for mode in model.modes]
+    grams = None
+    if any(counts is not None for counts in counted):
+        near = parameters.same_degree_cents / system.unit_cents
+        grams = build_table(
+            list(theory),
+            counted,
+            [snap_to_scale(scale, near, system.divisions) for scale in model._scales],
+            parameters.prior_mass,
+            parameters.counts_blur_cents / system.unit_cents,
+            model.order,
+        )
+    register = None
+    if model.reading is not PitchReading.ANY:
+        rows = [register_distribution(mode, hearing, parameters, system) for mode in model.modes]
+        register = np.stack(rows)
+    bell = circular_blur(np.zeros(1), hearing.blur_cents / system.unit_cents, system.divisions)[0]
+    noise = parameters.closing_noise
+    near_final = (1 - noise) * bell + noise / system.divisions
+    closing = parameters.closing_final * near_final + (1 - parameters.closing_final) * theory[:, 1]
+    for array in (theory, register, closing, bell):
+        if array is not None:
+            array.setflags(write=False)
+    return HearingTables(theory, grams, closing, register, hearing.register_power, bell)
+
+
+def register_columns(model: ScoringModel, units: IntArray) -> IntArray:
+    """Give the register column of units above each hypothesis's final.
+
+    Parameters
+    ----------
+    units : int64, shape (n_units,)
+        From A4.
+
+    Returns
+    -------
+    int64, shape (n_units, n_hypotheses)
+    """
+    lowest, highest = compass(model.pack.system)
+    above = units[:, None] - model.final_units[None, :]
+    return np.asarray(np.clip(above, lowest, highest) - lowest, dtype=np.int64)

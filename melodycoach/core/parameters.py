@@ -1,0 +1,174 @@
+"""Every global constant of the scorer, in one place.
+
+Conventions
+-----------
+The constants belong to the method, never to a mode: a mode is what its definition says. Weights of
+functions are multipliers of a plain degree's weight 1. Sizes in pitch are in cents, so that they
+mean the same in every tone system.
+
+References
+----------
+The defaults were chosen on automatically transcribed recordings of ensemble performances, an open
+research collection that is not part of this package; docs/mathematics.md says what each is worth.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, field
+from types import MappingProxyType
+from typing import TYPE_CHECKING
+
+from melodycoach.core.note import InputKind
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping
+
+
+@dataclass(frozen=True, slots=True)
+class FunctionWeights:
+    """How much likelier a degree is for what it does in its mode.
+
+    Parameters
+    ----------
+    main, falling, passing, below
+        Base weight of a degree of the rising form, of one that only the falling form has, of an
+        occasional one, and of one that is used only under the final.
+    final, dominant, second_dominant, suspended
+        Multipliers for the functions.
+    opening
+        Multiplier for a degree inside the region where the mode opens and mostly lives.
+    upper_final
+        Multiplier for the final when its octave is the first dominant.
+    """
+
+    main: float
+    falling: float
+    passing: float
+    below: float
+    final: float
+    dominant: float
+    second_dominant: float
+    suspended: float
+    opening: float
+    upper_final: float
+
+
+@dataclass(frozen=True, slots=True)
+class Hearing:
+    """What is known of the precision and the noise of one kind of input.
+
+    Parameters
+    ----------
+    blur_cents
+        Standard deviation of a heard pitch around the degree that is meant.
+    noise
+        Share of notes that say nothing of the mode: ornaments, slips, errors.
+    book_share
+        How far the written degree is expected, and not the one usually played: 1 means the book.
+    register_power
+        Power of the register factor beside the octave-folded one.
+    """
+
+    blur_cents: float
+    noise: float
+    book_share: float
+    register_power: float
+
+
+_COMMA = 1200 / 53
+
+_HEARING = MappingProxyType(
+    {
+        InputKind.TYPED: Hearing(0.45 * _COMMA, 0.12, 0.8, 0.15),
+        InputKind.KEYS: Hearing(0.45 * _COMMA, 0.12, 0.5, 0.15),
+        InputKind.TUNED: Hearing(0.60 * _COMMA, 0.12, 0.5, 0.15),
+        InputKind.RECORDED: Hearing(1.10 * _COMMA, 0.25, 0.0, 0.06),
+    }
+)
+
+
+@dataclass(frozen=True)
+class ScoringParameters:
+    """The constants of the scorer; see docs/mathematics.md for the formulas they stand in.
+
+    Parameters
+    ----------
+    moving, resting
+        Function weights on notes that move on and on notes that the line rests on.
+    hearing
+        Blur and noise of each kind of input.
+    same_degree_cents
+        Degrees closer than this are one degree.
+    opening_margin_cents
+        How far outside the opening region a degree still counts as inside.
+    below_limit_cents
+        Degrees further under the final than this add nothing to the folded scale.
+    length_power, longest_s
+        A note weighs ``min(length_s, longest_s) ** length_power``.
+    memory_mass
+        A degree heard before in this line is expected again, whatever the mode: the line's own
+        notes count like this much weight of the mode's. Infinite: the line has no memory.
+    temper, temper_weight
+        The posterior uses the log-likelihood times ``temper / (1 + W / temper_weight)``, W being
+        the summed weight of the notes.
+    register_main, register_final, register_dominant, register_opening, register_decay,
+    register_noise
+        Register: multipliers for a degree of the rising form, for the final, the first dominant
+        and the opening region; factor for each degree beyond the octave or under the one below the
+        final; share spread over the whole compass.
+    closing_notes, closing_power, closing_final, closing_noise
+        A phrase end adds ``closing_power`` times the log-likelihood of the last ``closing_notes``
+        notes under a distribution with ``closing_final`` of its mass near the final (of which
+        ``closing_noise`` is spread evenly) and the rest as resting notes are.
+    change_rate, change_power
+        Change filter: probability of a change of mode at a note, power on each note's evidence.
+    announce_at, announce_notes
+        The filter announces a mode that held at least this probability for so many notes.
+    decided_at, decided_half, decided_ratio
+        A leaning is decided at a probability of ``decided_at``, or from ``decided_half`` on when
+        it is ``decided_ratio`` times the rival's.
+    among_share, among_most
+        Undecided: modes are named until their sum reaches this share, at most so many.
+    prior_mass
+        Pseudo-weight of theory for the single degrees, then of each order for the next, when
+        counts are there.
+    counts_power
+        Weight of the counts' log-likelihood beside theory's 1; the two are averaged.
+    counts_blur_cents
+        Standard deviation by which counted pitches are spread.
+    """
+
+    moving: FunctionWeights = FunctionWeights(1.0, 0.3, 0.25, 0.33, 1.5, 1.8, 1.5, 1.5, 1.4, 1.25)
+    resting: FunctionWeights = FunctionWeights(1.0, 0.3, 0.5, 0.33, 3.0, 3.0, 1.3, 1.5, 1.3, 1.25)
+    hearing: Mapping[InputKind, Hearing] = field(default_factory=lambda: _HEARING)
+    same_degree_cents: float = 1.6 * _COMMA
+    opening_margin_cents: float = 1.0 * _COMMA
+    below_limit_cents: float = 25.0 * _COMMA
+    length_power: float = 0.75
+    longest_s: float = 1.0
+    memory_mass: float = math.inf
+    temper: float = 2.6
+    temper_weight: float = 10.0
+    register_main: float = 2.7
+    register_final: float = 1.8
+    register_dominant: float = 3.0
+    register_opening: float = 3.0
+    register_decay: float = 0.9
+    register_noise: float = 0.01
+    closing_notes: int = 6
+    closing_power: float = 2.0
+    closing_final: float = 0.7
+    closing_noise: float = 0.1
+    change_rate: float = 0.003
+    change_power: float = 1.5
+    announce_at: float = 0.6
+    announce_notes: int = 3
+    decided_at: float = 0.6
+    decided_half: float = 0.5
+    decided_ratio: float = 2.0
+    among_share: float = 0.8
+    among_most: int = 4
+    prior_mass: tuple[float, ...] = (1000.0, 40.0, 40.0)
+    counts_power: float = 1.4
+    counts_blur_cents: float = 0.9 * _COMMA

@@ -1,0 +1,191 @@
+"""Which owed step would settle the mode best if it were played next: computed, not canned.
+
+Every owed step is played to the scorer at the end of the line, in the octave where it would be
+played now, and the change of the odds is its gain. A gain can be bought by playing odd things, so
+what a mode needs most comes first among steps of like gain.
+
+Conventions
+-----------
+Gains are in nats of tempered log-odds, as the posterior has them; a phrase that happens to end
+with the line's last note is not held against the step that goes on from there.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from melodycoach.core.mode import Need, StepKind
+from melodycoach.core.note import Heard, InputKind
+from melodycoach.core.owed import AS_WRITTEN
+from melodycoach.core.scorer import advance, temper
+
+if TYPE_CHECKING:
+    from melodycoach.core.mode import CharacteristicStep, Mode
+    from melodycoach.core.model import ScoringModel
+    from melodycoach.core.owed import StepTrack
+    from melodycoach.core.pitch import ToneSystem
+    from melodycoach.core.scorer import ScorerState
+    from melodycoach.core.theory import FloatArray
+
+MOVING_S = 0.3
+"""Length of the moving notes of a step that is tried out."""
+
+RESTING_S = 0.8
+"""Length of its last note, which rests."""
+
+NEED_NATS = {Need.CORE: 0.4, Need.USUAL: 0.2, Need.COLOUR: 0.0}
+"""What a step's need is worth beside its gain when steps are put in order: gains that differ by
+less are alike."""
+
+_STAYS_LOW = frozenset({StepKind.FINAL_CADENCE, StepKind.LEADING_TONE})
+
+
+@dataclass(frozen=True, slots=True)
+class OwedStep:
+    """A step that the line owes, where it would be played, and what that would do.
+
+    Parameters
+    ----------
+    step
+        The characteristic step.
+    pitches_cents
+        Its notes as they would be played now, in cents on the MIDI scale.
+    gain_nats
+        What playing it next adds to the log-odds of the mode against its rival, or against all
+        others; 0 when nothing competes.
+    rules_out
+        Index of the mode that loses the most probability by it, or None when there is no other.
+    """
+
+    step: CharacteristicStep
+    pitches_cents: tuple[float, ...]
+    gain_nats: float
+    rules_out: int | None
+
+
+def rank_owed(
+    model: ScoringModel,
+    state: ScorerState,
+    hypothesis: int,
+    track: StepTrack,
+    recent_pitch_cents: float,
+    rival: int | None = None,
+    kind: InputKind = InputKind.TYPED,
+) -> tuple[OwedStep, ...]:
+    """Put the steps that a line still owes a mode in the order of what they would do for it.
+
+    Parameters
+    ----------
+    model, state
+        The scoring model, and where the line stands in it.
+    hypothesis
+        The mode in view on its final: the target or the leading one.
+    track
+        Its steps, followed through the same line.
+    recent_pitch_cents
+        Where the line has been lately, such as the mean of its last notes.
+    rival
+        The hypothesis to gain on. None: all others together; the closest one, which is the leading
+        one when the mode in view does not lead, counts most in them.
+    kind
+        How the player will play: a plain keyboard cannot gain by tuning.
+
+    Returns
+    -------
+    tuple of OwedStep
+        The best next step first: by gain, with what the mode needs most first among steps of like
+        gain.
+    """
+    before = _nats(model, state)
+    odds = _log_odds(before, hypothesis, rival)
+    share = _by_mode(model, before)
+    tried: dict[tuple[float, ...], ScorerState] = {(): state}
+    ranked: list[OwedStep] = []
+    for step in track.owed:
+        pitches = placed(step, track.mode, track.final_units, model.pack.system, recent_pitch_cents)
+        after = _nats(model, _play(model, tried, pitches, kind))
+        lost = share - _by_mode(model, after)
+        lost[model.mode_index[hypothesis]] = -np.inf
+        rules_out = int(lost.argmax()) if len(lost) > 1 else None
+        ranked.append(OwedStep(step, pitches, _log_odds(after, hypothesis, rival) - odds, rules_out))
+    ranked.sort(key=lambda owed: -owed.gain_nats - NEED_NATS[owed.step.need])
+    return tuple(ranked)
+
+
+def _log_odds(nats: FloatArray, hypothesis: int, rival: int | None) -> float:
+    """Give the odds of a hypothesis against another one, or against all others together."""
+    if rival is not None:
+        return float(nats[hypothesis] - nats[rival])
+    others = np.delete(nats, hypothesis)
+    if not len(others):
+        return 0.0
+    top = others.max()
+    return float(nats[hypothesis] - top - np.log(np.exp(others - top).sum()))
+
+
+def placed(
+    step: CharacteristicStep, mode: Mode, final_units: int, system: ToneSystem, recent_pitch_cents: float
+) -> tuple[float, ...]:
+    """Give the pitches of a step in the octave where it would be played now.
+
+    An opening and a register step stand where they are written. A final cadence and the leading
+    tone do so too, unless the line lies outside the compass of the mode altogether: then they move
+    with it by octaves. Any other step takes the octave nearest to where the line has been, out of
+    those in which the mode has its degrees.
+    """
+    size = system.divisions
+    recent = system.cents_to_units(recent_pitch_cents) - final_units
+    low, high = mode.degrees[0], mode.degrees[-1]
+    base = 0
+    if not low - size // 4 <= recent <= high + size // 4:
+        base = round((recent - (low + high) / 2) / size)
+    if step.kind in AS_WRITTEN:
+        octave = 0
+    elif step.kind in _STAYS_LOW:
+        octave = base
+    else:
+        middle = sum(step.degrees) / len(step.degrees)
+        fits = [
+            k
+            for k in (-1, 0, 1)
+            if k == 0 or (low <= min(step.degrees) + k * size and max(step.degrees) + k * size <= high)
+        ]
+        octave = base + min(fits, key=lambda k: (abs(middle + (base + k) * size - recent), abs(k)))
+    return tuple(system.units_to_cents(final_units + degree + octave * size) for degree in step.degrees)
+
+
+def _nats(model: ScoringModel, state: ScorerState) -> FloatArray:
+    """Give the log-posterior, not normalised, without what a phrase end says."""
+    return model.log_prior + temper(model, state) * state.loglik
+
+
+def _by_mode(model: ScoringModel, nats: FloatArray) -> FloatArray:
+    likely = np.exp(nats - nats.max())
+    by_mode = likely.reshape(-1, model.n_modes).sum(axis=0)
+    return np.asarray(by_mode / by_mode.sum(), dtype=np.float64)
+
+
+def _play(
+    model: ScoringModel,
+    tried: dict[tuple[float, ...], ScorerState],
+    pitches: tuple[float, ...],
+    kind: InputKind,
+) -> ScorerState:
+    """Play a step at the end of the line; states of beginnings played before are taken again."""
+    state = tried[()]
+    for n, pitch in enumerate(pitches[:-1], start=1):
+        known = tried.get(pitches[:n])
+        if known is None:
+            known = advance(model, state, _heard(pitch, kind, MOVING_S, False))
+            tried[pitches[:n]] = known
+        state = known
+    return advance(model, state, _heard(pitches[-1], kind, RESTING_S, True))
+
+
+def _heard(pitch_cents: float, kind: InputKind, length_s: float, rests: bool) -> Heard:
+    if kind is InputKind.KEYS:
+        pitch_cents = 100.0 * round(pitch_cents / 100)
+    return Heard(pitch_cents, kind, length_s, rests, closes=False)

@@ -1,0 +1,386 @@
+"""Measure a pack on a labelled collection: read it, hear every melody, add the answers up.
+
+The work on single melodies goes to as many processes as there are cores once it is worth it. Their
+answers are taken in the order of the file, so the figures do not depend on how many there were.
+"""
+
+from __future__ import annotations
+
+import multiprocessing
+import os
+import random
+import signal
+from collections import Counter, deque
+from concurrent.futures import Future, ProcessPoolExecutor
+from concurrent.futures.process import BrokenProcessPool
+from dataclasses import dataclass, field
+from itertools import chain, islice
+from multiprocessing.reduction import ForkingPickler
+from types import MappingProxyType
+from typing import TYPE_CHECKING, Any, TypeVar
+
+from melodycoach.core.evaluation import CHECKPOINTS, Evaluation, judge
+from melodycoach.core.event import PitchReading
+from melodycoach.core.model import build_model
+from melodycoach.core.note import InputKind, Mark, hear
+from melodycoach.core.parameters import ScoringParameters
+from melodycoach.core.seams import SIDE_NOTES, Crossing, SeamFigures, count_changes, cross, seam_figures
+from melodycoach.core.tally import tally
+from melodycoach.errors import CollectionError, MelodycoachError, UnknownModeError, UsageError
+from melodycoach.sources.collection import Melody, read_collection
+
+if TYPE_CHECKING:
+    from collections.abc import Callable, Iterable, Iterator
+    from pathlib import Path
+
+    from melodycoach.core.mode import Mode, ModePack
+    from melodycoach.core.model import ScoringModel
+    from melodycoach.core.note import Heard
+    from melodycoach.core.tally import Verdict
+
+PARALLEL_FROM = 50
+"""More melodies than this are spread over processes; fewer are done before those have started."""
+
+BATCH = 8
+"""Melodies handed to a process at a time."""
+
+Task = TypeVar("Task")
+Answer = TypeVar("Answer")
+
+
+@dataclass(frozen=True)
+class Bench:
+    """What melodies are measured against; every process has its own copy.
+
+    Parameters
+    ----------
+    pack, modes
+        The pack, and the modes of it that compete.
+    reading, parameters
+        As for `build_model`.
+    closing
+        The end of a melody counts as the end of its last phrase.
+    """
+
+    pack: ModePack
+    modes: tuple[Mode, ...]
+    reading: PitchReading
+    parameters: ScoringParameters
+    closing: bool
+    _models: dict[float | None, ScoringModel] = field(default_factory=dict, repr=False, compare=False)
+
+    def model(self, final_cents: float | None = None) -> ScoringModel:
+        """Give the model; ``final_cents`` matters where the final is taken as known."""
+        known = final_cents if self.reading is PitchReading.FINAL else None
+        if known not in self._models:
+            if len(self._models) >= _MODELS_KEPT:
+                self._models.clear()
+            self._models[known] = build_model(self.pack, self.modes, self.reading, known, self.parameters)
+        return self._models[known]
+
+    def hear(self, melody: Melody) -> tuple[Heard, ...]:
+        """Give the notes of a melody as the scorer hears them."""
+        return hear((*melody.notes, Mark.PHRASE_END) if self.closing else melody.notes)
+
+
+_LEAST_POOL = 100  # melodies to splice from, so that a few lines still come from more than one mode
+_MODELS_KEPT = 64  # finals that differ by cents would otherwise fill the memory
+
+
+def evaluate_collection(
+    path: Path,
+    pack: ModePack,
+    only: tuple[str, ...] = (),
+    reading: PitchReading = PitchReading.WRITTEN,
+    kind: InputKind = InputKind.RECORDED,
+    *,
+    parameters: ScoringParameters | None = None,
+    closing: bool = True,
+    strict: bool = False,
+    on_fault: Callable[[str], None] | None = None,
+    workers: int | None = None,
+    progress: Callable[[int], None] | None = None,
+    seams: int = 0,
+    seed: int = 0,
+) -> Evaluation:
+    """Measure how well a pack names the modes of a collection.
+
+    Parameters
+    ----------
+    path
+        A collection in JSON lines.
+    pack, only
+        The pack, and names of the modes that compete; empty: all of the pack.
+    reading
+        What is taken as known of the final; with ``FINAL`` each melody's own labelled one.
+    kind
+        Where the pitches came from.
+    closing
+        Count the end of each melody as the end of a phrase.
+    strict
+        Stop at the first bad record or unknown label.
+    on_fault
+        Called with a sentence for every bad record that is skipped, and once for every label that
+        the pack does not know.
+    workers
+        Processes; None: as many as there are cores. One: all is done in this process.
+    progress
+        Called with the number of melodies done so far.
+    seams
+        Number of spliced lines, and of unspliced excerpts, to be heard as well.
+    seed
+        Of the choice of those.
+
+    Raises
+    ------
+    CollectionError
+        The collection cannot be read, or nothing in it can be measured.
+    UnknownModeError
+        ``only`` names a mode that the pack does not have.
+    UsageError
+        Spliced lines are asked for with the final given: each half has its own.
+    """
+    if seams and reading is PitchReading.FINAL:
+        raise UsageError("spliced lines have two finals: measure them as written or at any pitch")
+    bench = Bench(pack, pack.restrict(only), reading, parameters or ScoringParameters(), closing)
+    workers = workers or _cores()
+    intake = _Intake(path, bench, kind, strict, on_fault)
+    shorter = [0] * len(CHECKPOINTS)
+    n = n_notes = 0
+
+    def counted() -> Iterator[Verdict]:
+        nonlocal n, n_notes
+        for verdict in spread(bench, _judge, intake.melodies(), workers):
+            n += 1
+            n_notes += verdict.n_notes
+            for place, checkpoint in enumerate(CHECKPOINTS):
+                shorter[place] += verdict.n_notes < checkpoint
+            if progress is not None:
+                progress(n)
+            yield verdict
+
+    tallies = tally(counted(), len(bench.modes), len(CHECKPOINTS) + 1)
+    if not n:
+        raise CollectionError(intake.nothing())
+    return Evaluation(
+        pack_id=pack.id,
+        mode_ids=tuple(mode.id for mode in bench.modes),
+        reading=reading,
+        kind=kind,
+        closing=closing,
+        n=n,
+        n_notes=n_notes,
+        n_shorter=tuple(shorter),
+        tallies=tallies,
+        n_skipped=intake.n_skipped,
+        left_out=dict(sorted(intake.left_out.items())),
+        n_without_final=intake.n_without_final,
+        seams=_measure_seams(path, bench, kind, workers, seams, seed) if seams else None,
+    )
+
+
+class _Intake:
+    """The melodies of a file that can be measured, with their labels, and what became of the others."""
+
+    def __init__(
+        self,
+        path: Path,
+        bench: Bench,
+        kind: InputKind,
+        strict: bool,
+        on_fault: Callable[[str], None] | None,
+    ) -> None:
+        self.path, self.bench, self.kind, self.strict = path, bench, kind, strict
+        self.on_fault = on_fault
+        self.n_skipped = 0
+        self.n_without_final = 0
+        self.left_out: Counter[str] = Counter()
+        self._place_by_id = {mode.id: place for place, mode in enumerate(bench.modes)}
+        self._place_by_label: dict[str, int | None] = {}
+
+    def melodies(self) -> Iterator[tuple[int, Melody]]:
+        """Give each melody that can be measured with the place of its mode."""
+        reading = read_collection(self.path, kind=self.kind, strict=self.strict, on_fault=self._skipped)
+        for melody in reading:
+            place = self._place(melody)
+            if place is None:
+                self.left_out[melody.mode_id] += 1
+            elif self.bench.reading is PitchReading.FINAL and melody.final_cents is None:
+                self.n_without_final += 1
+            else:
+                yield place, melody
+
+    def nothing(self) -> str:
+        """Say why nothing could be measured."""
+        found = ", ".join(repr(label) for label in sorted(self.left_out)[:8])
+        if found:
+            return (
+                f"{self.path}: no melody has the label of a mode that competes; found {found}; "
+                "choose another pack or other modes"
+            )
+        if self.n_without_final:
+            return f"{self.path}: no melody has a 'final', which this reading needs"
+        return f"{self.path}: no melodies in it, expected JSON lines"
+
+    def _skipped(self, fault: str) -> None:
+        self.n_skipped += 1
+        self._say(fault)
+
+    def _say(self, fault: str) -> None:
+        if self.on_fault is not None:
+            self.on_fault(fault)
+
+    def _place(self, melody: Melody) -> int | None:
+        label = melody.mode_id
+        if label not in self._place_by_label:
+            try:
+                self._place_by_label[label] = self._place_by_id.get(self.bench.pack.find(label).id)
+            except UnknownModeError as error:
+                fault = f"{self.path}: melody {melody.id!r}: {error}"
+                if self.strict:
+                    raise CollectionError(fault) from None
+                self._say(f"{fault}; every melody with this label is left out")
+                self._place_by_label[label] = None
+        return self._place_by_label[label]
+
+
+def _judge(bench: Bench, task: tuple[int, Melody]) -> Verdict:
+    label, melody = task
+    return judge(bench.model(melody.final_cents), bench.hear(melody), label, melody.final_cents)
+
+
+def _measure_seams(
+    path: Path, bench: Bench, kind: InputKind, workers: int, count: int, seed: int
+) -> SeamFigures:
+    """Splice ``count`` lines and cut ``count`` excerpts, at random but the same for one seed."""
+    chooser = random.Random(seed)
+    intake = _Intake(path, bench, kind, False, None)
+    long = ((label, melody) for label, melody in intake.melodies() if len(melody.notes) >= 2 * SIDE_NOTES)
+    pool = _sample(long, max(count, _LEAST_POOL), chooser)
+    if len({label for label, _ in pool}) < 2:
+        raise CollectionError(
+            f"{path}: spliced lines need melodies of {2 * SIDE_NOTES} notes or more in two modes, "
+            f"found {len(pool)} in {len({label for label, _ in pool})}"
+        )
+
+    def part(melody: Melody, length: int) -> tuple[Heard, ...]:
+        heard = hear(melody.notes)  # a part does not close
+        start = chooser.randrange(len(heard) - length + 1)
+        return heard[start : start + length]
+
+    def splices() -> Iterator[tuple[int, tuple[Heard, ...], int, tuple[Heard, ...]]]:
+        for _ in range(count):
+            first, before = chooser.choice(pool)
+            second, after = chooser.choice([entry for entry in pool if entry[0] != first])
+            yield first, part(before, SIDE_NOTES), second, part(after, SIDE_NOTES)
+
+    lines = tuple(splices())
+    excerpts = tuple(part(chooser.choice(pool)[1], 2 * SIDE_NOTES) for _ in range(count))
+    return seam_figures(
+        spread(bench, _cross, lines, workers), spread(bench, _excerpt, excerpts, workers), seed
+    )
+
+
+def _cross(
+    bench: Bench, task: tuple[int, tuple[Heard, ...], int, tuple[Heard, ...]]
+) -> tuple[int, Crossing]:
+    first, before, second, after = task
+    return first, cross(bench.model(), before, after, second)
+
+
+def _excerpt(bench: Bench, task: tuple[Heard, ...]) -> tuple[int, int]:
+    return len(task), count_changes(bench.model(), task)
+
+
+def _sample(items: Iterable[Task], count: int, chooser: random.Random) -> list[Task]:
+    """Choose at most ``count`` of a stream, each with the same chance, holding no more than those."""
+    kept: list[Task] = []
+    for seen, item in enumerate(items):
+        if len(kept) < count:
+            kept.append(item)
+        elif (place := chooser.randrange(seen + 1)) < count:
+            kept[place] = item
+    return kept
+
+
+def _cores() -> int:
+    if hasattr(os, "sched_getaffinity"):
+        return len(os.sched_getaffinity(0))
+    return os.cpu_count() or 1
+
+
+def spread(
+    bench: Bench, work: Callable[[Bench, Task], Answer], tasks: Iterable[Task], workers: int
+) -> Iterator[Answer]:
+    """Do the tasks, in this process or in several, and give the answers in the order of the tasks.
+
+    Parameters
+    ----------
+    bench
+        Handed to ``work`` with each task.
+    work
+        A function at the top of its module; its tasks and answers travel between processes.
+    tasks
+        Taken as they are needed: memory does not grow with their number.
+    workers
+        Processes at most.
+
+    Raises
+    ------
+    MelodycoachError
+        A process ended before its time.
+    """
+    coming = iter(tasks)
+    first = list(islice(coming, PARALLEL_FROM + 1))
+    if workers == 1 or len(first) <= PARALLEL_FROM:
+        for task in chain(first, coming):
+            yield work(bench, task)
+        return
+    coming = chain(first, coming)
+    pool = ProcessPoolExecutor(
+        workers,
+        mp_context=multiprocessing.get_context("spawn"),
+        initializer=_settle_in,
+        initargs=(bench,),
+    )
+    waiting: deque[Future[list[Any]]] = deque()
+    try:
+        while True:
+            while len(waiting) < 2 * workers and (batch := list(islice(coming, BATCH))):
+                waiting.append(pool.submit(_do, work, batch))
+            if not waiting:
+                return
+            yield from waiting.popleft().result()
+    except BrokenProcessPool:
+        raise MelodycoachError(
+            "a helper process ended before its time, perhaps for want of memory; "
+            "close other programs and measure again"
+        ) from None
+    finally:
+        pool.shutdown(wait=True, cancel_futures=True)
+
+
+_bench: Bench | None = None
+
+
+def _settle_in(bench: Bench) -> None:
+    """Prepare a helper process; Ctrl-C is the business of the one that started it."""
+    global _bench
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
+    _bench = bench
+
+
+def _do(work: Callable[[Bench, Any], Any], batch: list[Any]) -> list[Any]:
+    assert _bench is not None
+    return [work(_bench, task) for task in batch]
+
+
+def _plain(proxy: MappingProxyType[Any, Any]) -> tuple[Any, ...]:
+    return _read_only, (dict(proxy),)
+
+
+def _read_only(mapping: dict[Any, Any]) -> MappingProxyType[Any, Any]:
+    return MappingProxyType(mapping)
+
+
+ForkingPickler.register(MappingProxyType, _plain)  # read-only mappings do not travel by themselves

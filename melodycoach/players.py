@@ -1,0 +1,195 @@
+"""What can play into a session: a keyboard, the guided demo, a recorded log.
+
+Each is a `melodycoach.coach.Player`: asked for the events since the last time, it gives them in
+order, and it says in a sentence what is being listened to.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from melodycoach.demo import DemoPlayer
+from melodycoach.errors import PortError
+from melodycoach.sources.midi_pitch import PitchTracker
+from melodycoach.sources.midi_port import LivePort, PortState, PortStatus, port_sentence
+
+if TYPE_CHECKING:
+    from collections.abc import Callable, Sequence
+    from pathlib import Path
+
+    from melodycoach.core.event import Event
+    from melodycoach.core.pitch import PitchNames
+    from melodycoach.sources.event_log import RecordedLog
+
+
+class Keyboard:
+    """A live port and the tracker that reads its bytes.
+
+    Parameters
+    ----------
+    clock
+        Seconds from the start of the session.
+    wanted
+        Name of the input, or a part of it; empty: the only one there is.
+    """
+
+    def __init__(self, clock: Callable[[], float], wanted: str = "") -> None:
+        self.port = LivePort(clock, wanted)
+        self._tracker = PitchTracker()
+        self._clock = clock
+        self._was_open = False
+
+    def poll(self, now_s: float) -> Sequence[Event]:
+        """Give what has been played since the last call."""
+        events = [
+            event for message, at_s in self.port.poll() for event in self._tracker.decode(message, at_s)
+        ]
+        is_open = self.port.status.state is PortState.OPEN
+        if self._was_open and not is_open:
+            events += self._tracker.start_over(max(now_s, self._clock()))
+        self._was_open = is_open
+        return events
+
+    @property
+    def status(self) -> PortStatus:
+        """What the port is doing now."""
+        return self.port.status
+
+    def input_line(self, now_s: float) -> str:
+        """Say what is being listened to."""
+        return port_sentence(self.port.status)
+
+    def tuning_line(self) -> str:
+        """Say which tuning is believed, and why."""
+        return tuning_sentence(self._tracker)
+
+    def choose(self, name: str) -> None:
+        """Listen to another input from now on."""
+        self.port.choose(name)
+
+    def is_over(self, now_s: float) -> bool:
+        """Never by itself: the player may play on at any time."""
+        return False
+
+    def close(self) -> None:
+        """Close the port."""
+        self.port.close()
+
+
+def tuning_sentence(tracker: PitchTracker) -> str:
+    """Say which tuning a keyboard is believed to have, and why.
+
+    >>> tuning_sentence(PitchTracker())
+    'plain twelve keys (no bend or tuning has been received): a key stands for every perde near it'
+    """
+    tunings = tracker.tunings()
+    if not tunings:
+        return "plain twelve keys (no bend or tuning has been received): a key stands for every perde near it"
+    newest = max(tunings, key=lambda tuning: abs(tuning.bend_cents) + abs(tuning.tuning_cents))
+    reason = "sent by the keyboard" if newest.range_sent else "MIDI's default, none was sent"
+    return (
+        f"bends are read on channel {newest.channel}: "
+        f"now {newest.bend_cents + newest.tuning_cents:+.0f} cents, "
+        f"range ±{newest.range_cents / 100:g} semitones ({reason})"
+    )
+
+
+class DemoKeyboard:
+    """The demo's own keyboard first, then the player's.
+
+    Parameters
+    ----------
+    names
+        Pitch names of the pack, to read the demo's line with.
+    keyboard
+        Takes over when the demo is done.
+    """
+
+    def __init__(self, names: PitchNames, keyboard: Keyboard) -> None:
+        self._demo = DemoPlayer(names)
+        self._tracker = PitchTracker(port_number=1)
+        self._keyboard = keyboard
+
+    def poll(self, now_s: float) -> Sequence[Event]:
+        """Give what the demo, and after it the player, has played since the last call."""
+        played = self._demo.poll(now_s)
+        events = [event for message, at_s in played for event in self._tracker.decode(message, at_s)]
+        if self._demo.is_over(now_s):
+            events += self._keyboard.poll(now_s)
+        return events
+
+    def input_line(self, now_s: float) -> str:
+        """Say what to look at, and after the demo what is being listened to."""
+        says = self._demo.says(now_s)
+        if not self._demo.is_over(now_s):
+            return f"demo: {says}"
+        return f"{says}; {self._keyboard.input_line(now_s)}"
+
+    def tuning_line(self) -> str:
+        """Say which tuning is believed, and why."""
+        return tuning_sentence(self._tracker)
+
+    def choose(self, name: str) -> None:
+        """Choose the player's keyboard."""
+        self._keyboard.choose(name)
+
+    def is_over(self, now_s: float) -> bool:
+        """Whether the demo is done."""
+        return self._demo.is_over(now_s)
+
+    def close(self) -> None:
+        """Close the player's keyboard."""
+        self._keyboard.close()
+
+
+class Replay:
+    """A recorded log, played back.
+
+    Parameters
+    ----------
+    log
+        What was recorded.
+    path
+        Where it was read from, for people.
+    """
+
+    def __init__(self, log: RecordedLog, path: Path) -> None:
+        self._events = log.events
+        self._path = path
+        self._notice = log.notice
+        self._next = 0
+
+    def poll(self, now_s: float) -> Sequence[Event]:
+        """Give the events whose time has come."""
+        first = self._next
+        while self._next < len(self._events) and self._events[self._next].at_s <= now_s:
+            self._next += 1
+        return self._events[first : self._next]
+
+    def input_line(self, now_s: float) -> str:
+        """Say how far the replay has come."""
+        notice = f"; {self._notice}" if self._notice else ""
+        if self.is_over(now_s):
+            return f"replay of {self._path.name} is done{notice}"
+        return f"replaying {self._path.name}: event {self._next} of {len(self._events)}{notice}"
+
+    def tuning_line(self) -> str:
+        """Say that pitches are as recorded."""
+        return "pitches as they were recorded"
+
+    def choose(self, name: str) -> None:
+        """Refuse: a replay listens to nothing.
+
+        Raises
+        ------
+        PortError
+            Always.
+        """
+        raise PortError(f"port {name!r}: a replay listens to no keyboard; run melodycoach listen")
+
+    def is_over(self, now_s: float) -> bool:
+        """Whether every event has been given."""
+        return self._next >= len(self._events)
+
+    def close(self) -> None:
+        """Do nothing: there is nothing open."""

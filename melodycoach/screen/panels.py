@@ -1,0 +1,370 @@
+"""The areas of the screen beside the contour: verdict, leanings, owed steps, reasons, status.
+
+Conventions
+-----------
+Each function takes the view and its room in columns and rows, and gives at most so many lines;
+what has no room is left out, the least needed first. Lines may be short: whoever puts them on the
+screen fills them up.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from melodycoach.screen.text import Line, cut, line_width, pad, pad_left, width, wrap
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from melodycoach.screen.signs import Signs
+    from melodycoach.screen.view import LeaningRow, OwedRow, ViewState
+
+_STEADY = 0.005
+"""A change of probability smaller than this is shown as none."""
+
+NEEDS = ("core", "usual", "colour")
+
+
+def percent(probability: float) -> str:
+    """Write a probability for people, in four cells; neither certainty is ever claimed.
+
+    >>> percent(0.724), percent(0.9991), percent(0.002), percent(0)
+    (' 72%', '>99%', ' <1%', ' <1%')
+    """
+    if probability > 0.995:
+        return ">99%"
+    if probability < 0.005:
+        return " <1%"
+    return f"{probability * 100:3.0f}%"
+
+
+def title_line(text: str, columns: int, signs: Signs, right: str = "") -> Line:
+    """Write the heading of an area, with a rule to its right edge."""
+    shown = cut(text, columns, signs.more)
+    room = columns - width(shown) - 1
+    tail = f" {right}" if right and width(right) + 3 <= room else ""
+    rule = signs.rule * max(room - width(tail), 0)
+    return [("class:title", shown), ("class:rule", f" {rule}" if room > 0 else ""), ("class:faint", tail)]
+
+
+def draw_verdict(view: ViewState, columns: int, signs: Signs) -> Line:
+    """Write the answer in one line, with what is taken as known at its right end."""
+    sign = signs.decided if view.decided else signs.undecided
+    style = "class:verdict" if view.decided else "class:verdict class:verdict.open"
+    verdict = view.verdict
+    if view.decided and view.leanings and not view.verdict.endswith("%"):
+        verdict += f"  {percent(view.leanings[0].probability).strip()}"
+    verdict = cut(f"{sign} {verdict}", columns, signs.more)
+    count = f"{view.n_notes} note" + ("s" if view.n_notes != 1 else "")
+    left = columns - width(verdict) - 2
+    for context in ([view.reading, view.restricted, count], [view.restricted, count], [count]):
+        right = f" {signs.dot} ".join(part for part in context if part)
+        if width(right) <= left:
+            return [(style, verdict), ("", " " * (left + 2 - width(right))), ("class:faint", right)]
+    return [(style, verdict)]
+
+
+def draw_now(view: ViewState, columns: int, signs: Signs) -> Line:
+    """Write what the last stretch sounds like; else what the keyboard hides; else whose theory it is."""
+    if view.now:
+        return [("class:now", cut(f"{signs.next} now: {view.now}", columns, signs.more))]
+    if view.keyboard_note:
+        return [("class:faint", cut(f"  {view.keyboard_note}", columns, signs.more))]
+    return [("class:faint", cut(f"  {theory_words(view)}", columns, signs.more))]
+
+
+def theory_words(view: ViewState) -> str:
+    """Join whose theory is shown and the caution that goes with it."""
+    return " ".join(part for part in (view.theory, view.caution) if part)
+
+
+def draw_leanings(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line]:
+    """Draw the modes with their probabilities; the target is there even when it comes last."""
+    shown = list(view.leanings[:rows])
+    target = next((row for row in view.leanings if row.target), None)
+    if shown and target is not None and target not in shown:
+        shown[-1] = target
+    names = max((width(row.name) for row in shown), default=0)
+    finals = max((width(row.final) for row in shown), default=0)
+    names = min(names, max(columns - 14, 4), 22)
+    with_final = columns - names - 2 - 4 - 4 - 6 >= finals + 2
+    with_size = columns - names - 2 - 4 - 6 - (finals + 2 if with_final else 0) >= 12
+    tail = 4 + 2 + (4 if with_size else 0) + (finals + 2 if with_final else 0)
+    bar = max(columns - 2 - names - 1 - 1 - tail, 0)
+    bar = min(bar, 44)
+    return [_leaning(row, place, names, bar, with_size, with_final, signs) for place, row in enumerate(shown)]
+
+
+def _leaning(
+    row: LeaningRow, place: int, names: int, bar: int, with_size: bool, with_final: bool, signs: Signs
+) -> Line:
+    mark = f"{signs.target} " if row.target else "  "
+    name_style = "class:target" if row.target else "class:name.first" if place == 0 else "class:name"
+    full = draw_bar(row.probability, bar, signs)
+    line = [
+        ("class:target", mark),
+        (name_style, pad(row.name, names, signs.more) + " "),
+        ("class:bar.target" if row.target else "class:bar", pad(full, bar)),
+        ("", f" {percent(row.probability)} "),
+    ]
+    if abs(row.change) < _STEADY:
+        line.append(("class:faint", signs.steady))
+    else:
+        rising = row.change > 0
+        line.append(
+            ("class:rising", signs.rising) if rising else ("class:falling", signs.falling)
+        )
+    if with_size:
+        points = round(abs(row.change) * 100)
+        line.append(("class:faint", f"{points:3d} " if points else "    "))
+    if with_final:
+        line.append(("class:faint", f" {row.final}"))
+    return line
+
+
+def draw_bar(share: float, cells: int, signs: Signs) -> str:
+    """Draw a share of 0 to 1 as a bar of so many cells at most, to an eighth of a cell.
+
+    >>> from melodycoach.screen.signs import ASCII, UNICODE
+    >>> draw_bar(0.5, 9, UNICODE), draw_bar(0.5, 8, ASCII)
+    ('████▌', '####')
+    """
+    parts = len(signs.bar)
+    filled = round(min(max(share, 0.0), 1.0) * cells * parts)
+    if filled == 0:
+        return ""
+    whole, rest = divmod(filled, parts)
+    return signs.bar[-1] * whole + (signs.bar[rest - 1] if rest else "")
+
+
+def split_owed(view: ViewState) -> tuple[list[OwedRow], list[OwedRow]]:
+    """Part the characteristic steps into owed ones, the most telling first, and heard ones."""
+    owed = sorted((row for row in view.owed if row.heard_at is None), key=lambda row: -row.gain_nats)
+    heard = [row for row in view.owed if row.heard_at is not None]
+    return owed, heard
+
+
+def owed_title(view: ViewState, signs: Signs) -> tuple[str, str]:
+    """Give heading and right end of the area of owed steps."""
+    heard = sum(1 for row in view.owed if row.heard_at is not None)
+    aim = " (your aim)" if view.is_target else ""
+    name = f" {signs.dot} {view.in_view}{aim}" if view.in_view else ""
+    return f"owed{name}", f"{heard} of {len(view.owed)} heard" if view.owed else ""
+
+
+def draw_owed(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line]:
+    """Draw the best step to play next, then all steps by need: owed, then heard.
+
+    With little room the headings go first, then written notes and keys of all but the best, then
+    the heard steps, of which a count stays in the title.
+    """
+    if rows <= 0:
+        return []
+    owed, heard = split_owed(view)
+    if not view.owed:
+        return [[("class:faint", "nothing to show yet")]]
+    if not owed:
+        lines = [[("class:heard", f"{signs.heard} every step of {view.in_view} is heard")]]
+        return (lines + [_heard(row, columns, signs) for row in heard])[:rows]
+    best = owed[0]
+    lines = _best(best, columns, signs)
+    grouped = _grouped(owed[1:], heard, columns, signs, 2)
+    for choice in (
+        grouped,
+        _grouped(owed[1:], heard, columns, signs, 1),
+        _listed(owed[1:], heard, columns, signs),
+    ):
+        if len(lines) + len(choice) <= rows:
+            return lines + choice
+    left = _listed(owed[1:], heard, columns, signs)
+    room = rows - len(lines)
+    if room <= 0:
+        return [_one_line(best, columns, signs)] if rows == 1 else lines[:rows]
+    if len(left) > room:
+        missing = len(left) - room + 1
+        left = [*left[: room - 1], [("class:faint", f"  {signs.more} {missing} more steps")]]
+    return lines + left
+
+
+def _best(row: OwedRow, columns: int, signs: Signs) -> list[Line]:
+    """Draw the best owed step: what it is, its perdes, its written notes, the keys to press."""
+    gain = gain_words(row.gain_nats, signs)
+    head = f"{signs.next} play next: {row.kind} ({row.need})"
+    lines: list[Line] = [_spread([("class:next", head)], [("class:next", gain)], columns, signs)]
+    for text in wrap(" ".join(row.perdes), columns - 4)[:2]:
+        lines.append([("class:next", f"    {text}")])
+    written = "written " + " ".join(row.written)
+    keys = "keys " + " ".join(row.keys)
+    if not row.keys:
+        lines.append([("", cut(f"    {written}", columns, signs.more))])
+    elif width(written) + width(keys) + 7 <= columns:
+        lines.append([("", f"    {written}   {keys}")])
+    else:
+        lines.append([("", cut(f"    {written}", columns, signs.more))])
+        lines.append([("", cut(f"    {keys}", columns, signs.more))])
+    return lines
+
+
+def _one_line(row: OwedRow, columns: int, signs: Signs) -> Line:
+    """Draw the best owed step where there is a single line for it."""
+    text = f"{signs.next} {row.kind}: {' '.join(row.perdes)}  {' '.join(row.keys or row.written)}"
+    if width(text) > columns:
+        text = f"{signs.next} {' '.join(row.perdes)}  {' '.join(row.keys or row.written)}"
+    return [("class:next", cut(text, columns, signs.more))]
+
+
+def _grouped(
+    owed: Sequence[OwedRow], heard: Sequence[OwedRow], columns: int, signs: Signs, depth: int
+) -> list[Line]:
+    """Draw steps under a heading for each need, with ``depth`` lines for an owed one."""
+    lines: list[Line] = []
+    others = sorted({row.need for row in (*owed, *heard)} - set(NEEDS))
+    for need in (*NEEDS, *others):
+        group = [row for row in owed if row.need == need]
+        done = [row for row in heard if row.need == need]
+        if not group and not done:
+            continue
+        lines.append([("class:title", need)])
+        for row in group:
+            lines.append(_owed(row, columns, signs))
+            if depth > 1:
+                lines.append(_notes(row, columns, signs))
+        lines += [_heard(row, columns, signs) for row in done]
+    return lines
+
+
+def _listed(owed: Sequence[OwedRow], heard: Sequence[OwedRow], columns: int, signs: Signs) -> list[Line]:
+    """Draw steps one line each, owed before heard."""
+    return [_owed(row, columns, signs) for row in owed] + [_heard(row, columns, signs) for row in heard]
+
+
+def _owed(row: OwedRow, columns: int, signs: Signs) -> Line:
+    left: Line = [("class:owed", f"{signs.owed} {row.kind}  "), ("class:owed", " ".join(row.perdes))]
+    return _spread(left, [("class:faint", gain_words(row.gain_nats, signs))], columns, signs)
+
+
+def _notes(row: OwedRow, columns: int, signs: Signs) -> Line:
+    keys = f"   keys {' '.join(row.keys)}" if row.keys else ""
+    return [("class:faint", cut(f"    {' '.join(row.written)}{keys}", columns, signs.more))]
+
+
+def _heard(row: OwedRow, columns: int, signs: Signs) -> Line:
+    left: Line = [("class:heard", f"{signs.heard} "), ("", f"{row.kind}  "), ("", " ".join(row.perdes))]
+    return _spread(left, [("class:faint", f"note {row.heard_at}")], columns, signs)
+
+
+def _spread(left: Line, right: Line, columns: int, signs: Signs) -> Line:
+    """Put one part at the left edge and one at the right; the left one is cut."""
+    room = columns - line_width(right) - 1
+    if room < 12:
+        right, room = [], columns
+    line: Line = []
+    for style, text in left:
+        piece = cut(text, room, signs.more)
+        line.append((style, piece))
+        room -= width(piece)
+        if piece != text:
+            break
+    return [*line, ("", " " * (room + (1 if right else 0))), *right]
+
+
+def gain_words(nats: float, signs: Signs) -> str:
+    """Write what a step or reason adds, in nats, with its sign.
+
+    >>> from melodycoach.screen.signs import UNICODE
+    >>> gain_words(1.84, UNICODE), gain_words(-0.3, UNICODE), gain_words(0.01, UNICODE)
+    ('+1.8', '−0.3', ' 0.0')
+    """
+    size = f"{abs(nats):.1f}"
+    if size == "0.0":
+        return " 0.0"
+    return f"+{size}" if nats > 0 else f"{signs.minus}{size}"
+
+
+def why_title(view: ViewState) -> str:
+    """Give the heading of the reasons: which mode, rather than which."""
+    name = view.leanings[0].name if view.leanings else ""
+    if name and view.rival:
+        return f"why {name}, not {view.rival}"
+    return "why"
+
+
+def draw_why(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line]:
+    """Draw the reasons, the weightiest first, each with the nats it adds or takes."""
+    if not view.why:
+        return [[("class:faint", cut("no reasons yet", columns, signs.more))]][:rows]
+    lines: list[Line] = []
+    for row in view.why:
+        style = "class:for" if row.nats >= 0 else "class:against"
+        texts = wrap(row.text, columns - 6)
+        left = rows - len(lines)
+        if left <= 0:
+            break
+        if len(texts) > left:
+            texts = [*texts[: left - 1], cut(" ".join(texts[left - 1 :]), columns - 6, signs.more)]
+        for place, text in enumerate(texts):
+            gain = pad_left(gain_words(row.nats, signs), 5) if place == 0 else "     "
+            lines.append([(style, f"{gain} "), ("", text)])
+    return lines
+
+
+def draw_status(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line]:
+    """Write the newest warning, then input and tuning, then theory, then where the log goes."""
+    if rows <= 0:
+        return []
+    lines: list[Line] = []
+    status = view.status
+    if status.warning:
+        texts = wrap(status.warning, columns - 2)
+        if len(texts) > rows:
+            texts = [*texts[: rows - 1], cut(" ".join(texts[rows - 1 :]), columns - 2, signs.more)]
+        lines += [
+            [("class:warning", f"{signs.warning} " if place == 0 else "  "), ("class:warning", text)]
+            for place, text in enumerate(texts)
+        ]
+    gap = f" {signs.dot} "
+    world = gap.join(part for part in (status.input_line, status.tuning_line) if part)
+    whole = gap.join(part for part in (world, status.log_line) if part)
+    if width(whole) <= columns:
+        world, log = whole, ""
+    else:
+        log = status.log_line
+    for text in (world, theory_words(view) if view.now or view.keyboard_note else "", log):
+        if text and len(lines) < rows:
+            lines.append([("class:status", cut(text, columns, signs.more))])
+    return lines[:rows]
+
+
+HINTS = (
+    ("F1", "help"),
+    ("F2", "aim"),
+    ("^Z", "undo"),
+    ("F5", "fresh"),
+    ("^C", "quit"),
+    ("F3", "final"),
+    ("F4", "modes"),
+    ("F8", "save"),
+    ("F7", "open"),
+    ("F6", "port"),
+    ("^Y", "redo"),
+)
+"""Keys and what they do, the most needed first."""
+
+_HINT_ORDER = ("F1", "F2", "F3", "F4", "F5", "F6", "F7", "F8", "^Z", "^Y", "^C")
+
+
+def draw_hints(view: ViewState, columns: int) -> Line:
+    """Write the keys that fit into one line; undo and redo are there when there is what to undo."""
+    shown: list[tuple[str, str]] = []
+    room = columns
+    for key, what in HINTS:
+        if (key == "^Z" and not view.can_undo) or (key == "^Y" and not view.can_redo):
+            continue
+        need = len(key) + 1 + len(what) + (2 if shown else 0)
+        if need <= room:
+            shown.append((key, what))
+            room -= need
+    line: Line = []
+    for key, what in sorted(shown, key=lambda hint: _HINT_ORDER.index(hint[0])):
+        line += [("", "  " if line else ""), ("class:key", key), ("class:hint", f" {what}")]
+    return line

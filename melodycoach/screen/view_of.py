@@ -1,0 +1,319 @@
+"""From a session to what the screen shows: all sorting, rounding and wording happens here.
+
+`ViewMaker` remembers how far it has followed a mode through the line; that memory only saves work
+and never changes an answer.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from melodycoach.core.event import PitchReading
+from melodycoach.core.function import Function, function_of, trade_words
+from melodycoach.core.note import InputKind, Mark, Note
+from melodycoach.core.offmode import off_mode, off_mode_words
+from melodycoach.core.owed import StepTrack, follow, start_track
+from melodycoach.core.ranking import rank_owed
+from melodycoach.core.scorer import announced, leading, mode_posterior, posterior
+from melodycoach.core.step_words import step_label
+from melodycoach.core.why import keyboard_note, reasons
+from melodycoach.screen.view import LeaningRow, LineNote, OwedRow, Rung, Status, ViewState, WhyRow
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from melodycoach.core.mode import Mode
+    from melodycoach.core.model import ScoringModel
+    from melodycoach.core.pitch import PitchNames
+    from melodycoach.core.scorer import Leaning, ScorerState
+    from melodycoach.core.session import Line, SessionState
+
+LEANINGS_SHOWN = 12
+REASONS_SHOWN = 8
+NOTES_SHOWN = 300
+"""So many of the newest notes are handed to the screen."""
+
+_KEY_NAMES = ("C", "C#", "D", "Eb", "E", "F", "F#", "G", "G#", "A", "Bb", "B")
+_FUNCTIONS_ON_LADDER = {Function.FINAL, Function.DOMINANT, Function.LEADING, Function.SUSPENDED}
+
+
+class ViewMaker:
+    """Makes views of one session, one after the other."""
+
+    def __init__(self) -> None:
+        self._tracks: list[StepTrack] = []
+        self._followed: tuple[object, ...] = ()
+
+    def view_of(self, session: SessionState, status: Status, tokens: tuple[str, ...] = ()) -> ViewState:
+        """Give what the screen shows of a session.
+
+        Parameters
+        ----------
+        session
+            The session as it is now.
+        status
+            The world around it.
+        tokens
+            The line as note text, one token for each of its items.
+        """
+        model, line, names = session.model, session.line, session.pack.names
+        state = line.states[-1]
+        lean = leading(model, state)
+        shown = _hypothesis_in_view(session, lean)
+        mode, final_units, hypothesis, rival = shown
+        track = self._track(session, mode, final_units)
+        heard_anything = bool(line.heard)
+        return ViewState(
+            verdict=_verdict(model, state, lean),
+            now=_now(model, line, lean),
+            decided=heard_anything and lean.decided,
+            leanings=_leaning_rows(session, state),
+            in_view=mode.name,
+            rival=model.modes[model.mode_index[rival]].name if rival is not None else "",
+            is_target=session.target is not None,
+            owed=_owed_rows(session, hypothesis, rival, track),
+            line=_line_notes(session, mode, final_units),
+            ladder=_ladder(mode, final_units, names),
+            why=_why_rows(session, hypothesis, rival) if heard_anything else (),
+            keyboard_note=_keyboard_note(session, hypothesis, rival),
+            tokens=tokens,
+            n_notes=len(line.heard),
+            reading=_reading(session),
+            restricted=_restricted(session),
+            theory=session.pack.theory,
+            caution=session.pack.caution,
+            can_undo=bool(session.past),
+            can_redo=bool(session.future),
+            status=status,
+        )
+
+    def _track(self, session: SessionState, mode: Mode, final_units: int) -> StepTrack:
+        """Follow the mode to the end of the line, going on from where the last view stopped."""
+        heard = session.line.heard
+        same = self._followed[:3] == (mode.id, final_units, session.pack.id)
+        if not same:
+            self._tracks = [start_track(mode, final_units, session.pack.system)]
+        else:
+            before = self._followed[3:]
+            kept = 0
+            for old, new in zip(before, heard, strict=False):
+                if old is not new and old != new:
+                    break
+                kept += 1
+            del self._tracks[kept + 1 :]
+        for note in heard[len(self._tracks) - 1 :]:
+            self._tracks.append(follow(self._tracks[-1], note))
+        self._followed = (mode.id, final_units, session.pack.id, *heard)
+        return self._tracks[-1]
+
+
+def _hypothesis_in_view(session: SessionState, lean: Leaning) -> tuple[Mode, int, int | None, int | None]:
+    """Give the mode that owed steps and ladder speak of, its final, its hypothesis and its rival.
+
+    That is the target, where it competes, and else the leading mode. A target that does not
+    compete has no hypothesis.
+    """
+    model = session.model
+    if session.target is None:
+        mode = model.modes[model.mode_index[lean.best]]
+        return mode, int(model.final_units[lean.best]), lean.best, lean.rival
+    candidates = [i for i, index in enumerate(model.mode_index) if model.modes[index].id == session.target.id]
+    if not candidates:
+        return session.target, session.target.final_units, None, None
+    nats = posterior(model, session.line.states[-1])
+    best = max(candidates, key=lambda i: nats[i])
+    rival = lean.rival if model.mode_index[lean.best] == model.mode_index[best] else lean.best
+    return session.target, int(model.final_units[best]), best, rival
+
+
+def _verdict(model: ScoringModel, state: ScorerState, lean: Leaning) -> str:
+    if state.n_notes == 0:
+        return "nothing heard yet: play or type a note"
+    names = [model.modes[index].name for index in lean.among]
+    if lean.decided:
+        return f"leaning to {names[0]}, {percent(lean.p_best)}"
+    family = f" (all of the {lean.family} family)" if lean.family and len(names) > 1 else ""
+    if len(names) == 1:
+        return f"undecided; {names[0]} is nearest"
+    return f"undecided between {', '.join(names[:-1])} and {names[-1]}{family}"
+
+
+def percent(probability: float) -> str:
+    """Write a probability without promising certainty.
+
+    >>> percent(0.732), percent(0.9999), percent(0.001)
+    ('73 %', 'over 99 %', 'under 1 %')
+    """
+    if probability > 0.99:
+        return "over 99 %"
+    return "under 1 %" if 0 < probability < 0.01 else f"{100 * probability:.0f} %"
+
+
+def _now(model: ScoringModel, line: Line, lean: Leaning) -> str:
+    """Say what the last stretch sounds like where that differs from the whole line."""
+    state = line.states[-1]
+    index = announced(model, state)
+    if index is None or index == model.mode_index[lean.best]:
+        return ""
+    since = f", since note {state.changed_at}" if state.changed_at is not None else ""
+    return f"right now it sounds like {model.modes[index].name}{since}"
+
+
+def _leaning_rows(session: SessionState, state: ScorerState) -> tuple[LeaningRow, ...]:
+    model = session.model
+    by_mode = mode_posterior(model, state)
+    states = session.line.states
+    before = mode_posterior(model, states[-2]) if len(states) > 1 else by_mode
+    by_hypothesis = posterior(model, state).reshape(-1, model.n_modes)
+    ranked = [int(i) for i in np.argsort(-by_mode, kind="stable")]
+    shown = ranked[:LEANINGS_SHOWN]
+    target = session.target
+    shown += [i for i in ranked[LEANINGS_SHOWN:] if target is not None and model.modes[i].id == target.id]
+    rows = []
+    for index in shown:
+        mode = model.modes[index]
+        final = model.final_units.reshape(-1, model.n_modes)[by_hypothesis[:, index].argmax(), index]
+        rows.append(
+            LeaningRow(
+                mode_id=mode.id,
+                name=mode.name,
+                final=session.pack.names.name(session.pack.system.units_to_cents(int(final))),
+                probability=float(by_mode[index]),
+                change=float(by_mode[index] - before[index]),
+                target=target is not None and mode.id == target.id,
+            )
+        )
+    return tuple(rows)
+
+
+def _owed_rows(
+    session: SessionState, hypothesis: int | None, rival: int | None, track: StepTrack
+) -> tuple[OwedRow, ...]:
+    """List the steps: owed ones first, the best one on top; then those heard, the newest first."""
+    system, names = session.pack.system, session.pack.names
+    mode = track.mode
+    line = session.line
+
+    def row(step_pitches: Sequence[float], at: int | None, gain: float, index: int) -> OwedRow:
+        step = mode.steps[index]
+        return OwedRow(
+            kind=step_label(step, mode, names, track.final_units),
+            need=step.need.value,
+            perdes=tuple(names.name(cents) for cents in step_pitches),
+            written=tuple(str(names.spell(cents)) for cents in step_pitches),
+            keys=tuple(key_name(cents) for cents in step_pitches),
+            heard_at=at,
+            gain_nats=gain,
+        )
+
+    index_by_id = {step.id: index for index, step in enumerate(mode.steps)}
+    rows: list[OwedRow] = []
+    if hypothesis is not None:
+        recent = line.heard[-1].pitch_cents if line.heard else system.units_to_cents(track.final_units)
+        kind = line.heard[-1].kind if line.heard else InputKind.TYPED
+        for owed in rank_owed(session.model, line.states[-1], hypothesis, track, recent, rival, kind):
+            rows.append(row(owed.pitches_cents, None, owed.gain_nats, index_by_id[owed.step.id]))
+    as_written = {
+        index: [system.units_to_cents(track.final_units + degree) for degree in step.degrees]
+        for index, step in enumerate(mode.steps)
+    }
+    if hypothesis is None:
+        rows += [row(as_written[i], None, 0.0, i) for i, at in enumerate(track.heard_at) if at is None]
+    heard = sorted(((at, i) for i, at in enumerate(track.heard_at) if at is not None), reverse=True)
+    return (*rows, *(row(as_written[i], at, 0.0, i) for at, i in heard))
+
+
+def key_name(cents: float) -> str:
+    """Name the key of a plain keyboard nearest to a pitch.
+
+    >>> key_name(7104.0), key_name(7400.0)
+    ('B4', 'D5')
+    """
+    key = int(cents / 100 + 0.5)
+    return f"{_KEY_NAMES[key % 12]}{key // 12 - 1}"
+
+
+def _line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[LineNote, ...]:
+    """Give the newest notes, each with the mark after it and with what is wrong with it."""
+    system, names = session.pack.system, session.pack.names
+    items, heard = session.line.items, session.line.heard
+    places = [i for i, item in enumerate(items) if isinstance(item, Note)]
+    first = max(len(places) - NOTES_SHOWN, 0)
+    rows = []
+    for number in range(first, len(places)):
+        at, note = places[number], heard[number]
+        until = places[number + 1] if number + 1 < len(places) else len(items)
+        marks = [item for item in items[at + 1 : until] if isinstance(item, Mark)]
+        off = off_mode(mode, final_units, note, system)
+        wrong, mend = off_mode_words(off, mode, names) if off is not None else ("", "")
+        rows.append(
+            LineNote(
+                number=number + 1,
+                height=round(system.cents_to_units(note.pitch_cents), 2),
+                name=names.name(note.pitch_cents),
+                written=str(names.spell(note.pitch_cents)),
+                length_s=note.length_s,
+                rests=note.rests,
+                off_mode=wrong,
+                mend=mend,
+                mark=marks[-1].value if marks else "",
+                item=at,
+            )
+        )
+    return tuple(rows)
+
+
+def _ladder(mode: Mode, final_units: int, names: PitchNames) -> tuple[Rung, ...]:
+    """Give the degrees of the mode in view as rungs, lowest first."""
+    words = trade_words(names.system.divisions)
+    rungs = []
+    for degree in mode.degrees:
+        if degree in mode.passing:
+            continue
+        function = function_of(mode, degree, names.system.divisions)
+        height = final_units + degree
+        rungs.append(
+            Rung(
+                height=height,
+                name=names.name(names.system.units_to_cents(height)),
+                function=words.of(function) if function in _FUNCTIONS_ON_LADDER else "",
+            )
+        )
+    return tuple(rungs)
+
+
+def _why_rows(session: SessionState, hypothesis: int | None, rival: int | None) -> tuple[WhyRow, ...]:
+    if hypothesis is None or rival is None:
+        return ()
+    line = session.line
+    found = reasons(session.model, line.states, line.heard, hypothesis, rival, REASONS_SHOWN)
+    return tuple(WhyRow(text=reason.text, nats=reason.nats) for reason in found)
+
+
+def _keyboard_note(session: SessionState, hypothesis: int | None, rival: int | None) -> str:
+    """Say what plain keys cannot tell apart; nothing when the line was not played on them."""
+    plain = any(note.kind is InputKind.KEYS for note in session.line.heard[-20:])
+    if not plain or hypothesis is None or rival is None:
+        return ""
+    return keyboard_note(session.model, hypothesis, rival)
+
+
+def _reading(session: SessionState) -> str:
+    names = session.pack.names
+    match session.reading:
+        case PitchReading.WRITTEN:
+            return "written pitch: each mode on its own final"
+        case PitchReading.FINAL:
+            assert session.final_cents is not None
+            return f"final given: {names.name(session.final_cents)}"
+        case PitchReading.ANY:
+            return "any pitch: each mode on every final"
+
+
+def _restricted(session: SessionState) -> str:
+    n_modes = len(session.model.modes)
+    if not session.only:
+        return f"all {n_modes} modes of {session.pack.name}"
+    return "only " + ", ".join(mode.name for mode in session.model.modes)
