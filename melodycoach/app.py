@@ -100,7 +100,7 @@ def listen(settings: Settings, full_screen: bool, say: Callable[[str], None]) ->
     if full_screen:
         coach = Coach(session, player, clock, log)
         _open_first_file(coach, settings)
-        return _run_full_screen(coach, clock)
+        return _run_full_screen(coach)
     printer = _Printer(say)
     coach = Coach(session, player, clock, log, on_note=printer.note)
     printer.begin(coach)
@@ -160,50 +160,50 @@ def _open_first_file(coach: Coach, settings: Settings) -> None:
 # --- full screen -------------------------------------------------------------------------------
 
 
-def _run_full_screen(coach: Coach, clock: Clock) -> int:
-    from melodycoach.screen.terminal import Screen
+def _run_full_screen(coach: Coach) -> int:
+    from melodycoach.screen.terminal import run_screen
 
-    screen = Screen(lambda: coach.view, coach.send, _choices(coach))
-    runner = _Runner(coach, clock, screen.refresh, screen.leave)
+    runner = _Runner(coach)
     sys.setswitchinterval(SWITCH_INTERVAL_S)
-    with quiet_stderr(driver_log_path()), _signals(lambda: screen.leave(None)):
+    with quiet_stderr(driver_log_path()):
         runner.start()
         try:
-            screen.run()
+            run_screen(runner.latest_view, coach.send, runner.subscribe, _choices(coach))
         finally:
             runner.stop()
-    if runner.fault is not None:
-        raise runner.fault
     return 0
 
 
 class _Runner(threading.Thread):
-    """The thread that owns the coach; what stops it by force is kept in `fault`."""
+    """The thread that owns the coach."""
 
-    def __init__(
-        self,
-        coach: Coach,
-        clock: Clock,
-        refresh: Callable[[], None],
-        leave: Callable[[BaseException | None], None],
-    ) -> None:
+    def __init__(self, coach: Coach) -> None:
         super().__init__(name="coach", daemon=True)
-        self.fault: Exception | None = None
-        self._coach, self._clock = coach, clock
-        self._refresh, self._leave = refresh, leave
+        self._coach = coach
+        self._fault: Exception | None = None
+        self._refresh: Callable[[], None] = lambda: None
         self._stopping = threading.Event()
 
+    def subscribe(self, refresh: Callable[[], None]) -> None:
+        """Say whom to tell of a new view."""
+        self._refresh = refresh
+
+    def latest_view(self) -> ViewState:
+        """Give the newest view, or raise what has stopped the coach: the screen then leaves."""
+        if self._fault is not None:
+            raise self._fault
+        return self._coach.view
+
     def run(self) -> None:
+        """Turn until asked to stop; close the log whatever happens."""
         try:
             while not self._stopping.is_set():
                 if self._coach.turn():
                     self._refresh()
-                if self._coach.wants_to_quit:
-                    self._leave(None)
                 self._stopping.wait(TURN_S)
-        except Exception as fault:  # noqa: BLE001  (shown by the main thread, once the screen is restored)
-            self.fault = fault
-            self._leave(None)
+        except Exception as fault:  # noqa: BLE001  (raised again in the thread of the screen)
+            self._fault = fault
+            self._refresh()
         finally:
             self._coach.close()
 
@@ -284,12 +284,12 @@ def _run_plain(coach: Coach, player: Player, clock: Clock, printer: _Printer) ->
             while True:
                 if coach.turn():
                     printer.world(coach.view)
-                hurried_out = player.is_over(clock())
-                if hurried_out:
+                played_out = player.is_over(clock())
+                if played_out:
                     clock.slow_down()
-                if typing and (hurried_out or not _plays_by_itself(player)):
+                if typing and (played_out or not _plays_by_itself(player)):
                     typing = _take_typed(coach, typed)
-                if not typing and (hurried_out or not _may_still_play(player)):
+                if not typing and (played_out or not _may_still_play(player)):
                     break
                 time.sleep(TURN_S)
     finally:

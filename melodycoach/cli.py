@@ -244,15 +244,11 @@ def _add_evaluate(commands: Any) -> None:
         default="recorded",
         help="how the notes came about: sets noise and blur (default: recorded)",
     )
-    command.add_argument(
-        "--seams", type=_count, default=0, metavar="N", help="also splice N pairs"
-    )
+    command.add_argument("--seams", type=_count, default=0, metavar="N", help="also splice N pairs")
     command.add_argument(
         "--owed", type=_count, default=0, metavar="N", help="also try owed steps on N melodies"
     )
-    command.add_argument(
-        "--seed", type=int, default=1, metavar="N", help="of random choices (default: 1)"
-    )
+    command.add_argument("--seed", type=int, default=1, metavar="N", help="of random choices (default: 1)")
     command.add_argument("--strict", action="store_true", help="stop at the first bad record")
     command.add_argument("--json", action="store_true", help="print JSON")
 
@@ -286,3 +282,7 @@ def _columns() -> int:
 
 def _print_result(as_json: bool, data: object, text: Callable[[], str]) -> None:
     print(json.dumps(data, ensure_ascii=False, indent=2) if as_json else text())
+
+
+def _evaluate(options: argparse.Namespace) -> int:
+    raise NotImplementedError

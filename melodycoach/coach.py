@@ -166,7 +166,8 @@ class Coach:
 
     def turn(self) -> bool:
         """Take everything that has happened since the last turn; tell whether the view changed."""
-        for event in self._player.poll(self._clock()):
+        now_s = self._clock()  # read once: what is due after it waits for the next turn
+        for event in self._player.poll(now_s):
             self.take(event)
         while True:
             try:
@@ -174,7 +175,7 @@ class Coach:
             except Empty:
                 break
             self._carry_out(command)
-        self._tick()
+        self._tick(now_s)
         return self._publish()
 
     def take(self, event: Event) -> None:
@@ -184,7 +185,7 @@ class Coach:
             if isinstance(event, NoteOff):
                 self.session = apply(self.session, event)
             if self._on_note is not None:
-                self._on_note(self._make_view())
+                self._on_note(self._make_view(event.at_s))
             if isinstance(event, NoteOn):
                 self.session = apply(self.session, event)
         else:
@@ -205,9 +206,8 @@ class Coach:
             return event.voice == sounding
         return isinstance(event, NoteOn) and sounding is not None
 
-    def _tick(self) -> None:
+    def _tick(self, now_s: float) -> None:
         """Let the clock be seen while a note sounds or a silence may still become something."""
-        now_s = self._clock()
         line = self.session.line.last_note
         if now_s - self._ticked_s < TICK_S or line is None or line.beats is not None:
             return
@@ -224,7 +224,7 @@ class Coach:
         try:
             self._obey(command)
         except MelodycoachError as error:
-            words = ()
+            words: tuple[str, ...] = ()
             if isinstance(command, ReplaceText) and isinstance(error, NoteTextError):
                 faults = find_faults(command.text, self.names, with_headers=False)
                 words = tuple(fault.token for fault in faults)
@@ -343,12 +343,14 @@ class Coach:
         self.view = self._make_view()
         return True
 
-    def _make_view(self) -> ViewState:
+    def _make_view(self, at_s: float | None = None) -> ViewState:
+        """Make the view of now, or of the moment of an event that is being taken."""
+        at_s = self._clock() if at_s is None else at_s
         log_line = ""
         if self._log is not None:
             log_line = "no log: see the warning" if self._log.fault else f"log: {self._log.path}"
         status = Status(
-            input_line=self._player.input_line(self._clock()),
+            input_line=self._player.input_line(at_s),
             tuning_line=self._player.tuning_line(),
             log_line=log_line,
             warning=self._warning,

@@ -82,6 +82,7 @@ class DemoPlayer:
             self._says.append((at_s, stage.says))
             at_s = self._write(stage, names, at_s)
         self.ends_s = at_s
+        self._says.append((at_s, HAND_OVER))
         self._next = 0
 
     def _write(self, stage: Stage, names: PitchNames, at_s: float) -> float:
@@ -111,11 +112,11 @@ class DemoPlayer:
         for at_s, text in self._says:
             if at_s <= now_s:
                 current = text
-        return current if now_s < self.ends_s else HAND_OVER
+        return current
 
     def is_over(self, now_s: float) -> bool:
         """Whether everything has been played and the last silence has passed."""
-        return now_s >= self.ends_s
+        return now_s >= self.ends_s and self._next == len(self._messages)
 
 
 def note_messages(pitch_cents: float, at_s: float, length_s: float) -> list[tuple[bytes, float]]:

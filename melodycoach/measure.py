@@ -23,6 +23,7 @@ from melodycoach.core.evaluation import CHECKPOINTS, Evaluation, judge
 from melodycoach.core.event import PitchReading
 from melodycoach.core.model import build_model
 from melodycoach.core.note import InputKind, Mark, hear
+from melodycoach.core.owed_trial import TRIAL_NOTES, OwedFigures, OwedTrial, owed_figures, try_owed
 from melodycoach.core.parameters import ScoringParameters
 from melodycoach.core.seams import SIDE_NOTES, Crossing, SeamFigures, count_changes, cross, seam_figures
 from melodycoach.core.tally import tally
@@ -101,6 +102,7 @@ def evaluate_collection(
     workers: int | None = None,
     progress: Callable[[int], None] | None = None,
     seams: int = 0,
+    owed: int = 0,
     seed: int = 0,
 ) -> Evaluation:
     """Measure how well a pack names the modes of a collection.
@@ -121,13 +123,15 @@ def evaluate_collection(
         Stop at the first bad record or unknown label.
     on_fault
         Called with a sentence for every bad record that is skipped, and once for every label that
-        the pack does not know.
+        the pack does not know. Either way they are counted in the outcome.
     workers
         Processes; None: as many as there are cores. One: all is done in this process.
     progress
         Called with the number of melodies done so far.
     seams
         Number of spliced lines, and of unspliced excerpts, to be heard as well.
+    owed
+        Number of melodies on which the top owed step is tried.
     seed
         Of the choice of those.
 
@@ -138,13 +142,18 @@ def evaluate_collection(
     UnknownModeError
         ``only`` names a mode that the pack does not have.
     UsageError
-        Spliced lines are asked for with the final given: each half has its own.
+        Spliced lines are asked for with the final given: each half has its own. Owed steps are
+        asked for at any pitch, or with one mode alone.
     """
     if seams and reading is PitchReading.FINAL:
         raise UsageError("spliced lines have two finals: measure them as written or at any pitch")
+    if owed and reading is PitchReading.ANY:
+        raise UsageError("owed steps stand on a known final: measure them as written or with the final given")
     bench = Bench(pack, pack.restrict(only), reading, parameters or ScoringParameters(), closing)
+    if owed and len(bench.modes) < 2:
+        raise UsageError("owed steps are measured against other modes: let at least two compete")
     workers = workers or _cores()
-    intake = _Intake(path, bench, kind, strict, on_fault)
+    intake = _Intake(path, bench, kind, strict, on_fault or _unheard)
     shorter = [0] * len(CHECKPOINTS)
     n = n_notes = 0
 
@@ -176,6 +185,7 @@ def evaluate_collection(
         left_out=dict(sorted(intake.left_out.items())),
         n_without_final=intake.n_without_final,
         seams=_measure_seams(path, bench, kind, workers, seams, seed) if seams else None,
+        owed=_measure_owed(path, bench, kind, workers, owed, seed) if owed else None,
     )
 
 
@@ -188,7 +198,7 @@ class _Intake:
         bench: Bench,
         kind: InputKind,
         strict: bool,
-        on_fault: Callable[[str], None] | None,
+        on_fault: Callable[[str], None],
     ) -> None:
         self.path, self.bench, self.kind, self.strict = path, bench, kind, strict
         self.on_fault = on_fault
@@ -224,11 +234,7 @@ class _Intake:
 
     def _skipped(self, fault: str) -> None:
         self.n_skipped += 1
-        self._say(fault)
-
-    def _say(self, fault: str) -> None:
-        if self.on_fault is not None:
-            self.on_fault(fault)
+        self.on_fault(fault)
 
     def _place(self, melody: Melody) -> int | None:
         label = melody.mode_id
@@ -239,7 +245,7 @@ class _Intake:
                 fault = f"{self.path}: melody {melody.id!r}: {error}"
                 if self.strict:
                     raise CollectionError(fault) from None
-                self._say(f"{fault}; every melody with this label is left out")
+                self.on_fault(f"{fault}; every melody with this label is left out")
                 self._place_by_label[label] = None
         return self._place_by_label[label]
 
@@ -254,7 +260,7 @@ def _measure_seams(
 ) -> SeamFigures:
     """Splice ``count`` lines and cut ``count`` excerpts, at random but the same for one seed."""
     chooser = random.Random(seed)
-    intake = _Intake(path, bench, kind, False, None)
+    intake = _Intake(path, bench, kind, False, _unheard)
     long = ((label, melody) for label, melody in intake.melodies() if len(melody.notes) >= 2 * SIDE_NOTES)
     pool = _sample(long, max(count, _LEAST_POOL), chooser)
     if len({label for label, _ in pool}) < 2:
@@ -281,15 +287,35 @@ def _measure_seams(
     )
 
 
-def _cross(
-    bench: Bench, task: tuple[int, tuple[Heard, ...], int, tuple[Heard, ...]]
-) -> tuple[int, Crossing]:
+def _cross(bench: Bench, task: tuple[int, tuple[Heard, ...], int, tuple[Heard, ...]]) -> tuple[int, Crossing]:
     first, before, second, after = task
     return first, cross(bench.model(), before, after, second)
 
 
 def _excerpt(bench: Bench, task: tuple[Heard, ...]) -> tuple[int, int]:
     return len(task), count_changes(bench.model(), task)
+
+
+def _measure_owed(
+    path: Path, bench: Bench, kind: InputKind, workers: int, count: int, seed: int
+) -> OwedFigures:
+    """Try the top owed step on ``count`` melodies, chosen at random but the same for one seed."""
+    intake = _Intake(path, bench, kind, False, _unheard)
+    long = ((label, melody) for label, melody in intake.melodies() if len(melody.notes) >= TRIAL_NOTES)
+    pool = _sample(long, count, random.Random(seed))
+    if not pool:
+        raise CollectionError(f"{path}: owed steps need melodies of {TRIAL_NOTES} notes or more, found none")
+    return owed_figures(spread(bench, _try_owed, pool, workers), seed)
+
+
+def _try_owed(bench: Bench, task: tuple[int, Melody]) -> OwedTrial | None:
+    label, melody = task
+    # with a known final there is one hypothesis for each mode, at the mode's place
+    return try_owed(bench.model(melody.final_cents), hear(melody.notes)[:TRIAL_NOTES], label)
+
+
+def _unheard(fault: str) -> None:
+    """Pass over a fault that the first reading of the file has told."""
 
 
 def _sample(items: Iterable[Task], count: int, chooser: random.Random) -> list[Task]:

@@ -27,6 +27,7 @@ if TYPE_CHECKING:
 
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.note import Heard, InputKind
+    from melodycoach.core.owed_trial import OwedFigures
     from melodycoach.core.scorer import ScorerState
     from melodycoach.core.seams import SeamFigures
 
@@ -73,9 +74,7 @@ def judge(
     return Verdict(label, len(notes), tuple(guesses))
 
 
-def guess(
-    model: ScoringModel, state: ScorerState, label: int, final_cents: float | None = None
-) -> Guess:
+def guess(model: ScoringModel, state: ScorerState, label: int, final_cents: float | None = None) -> Guess:
     """Take down what the model says in one state; the parameters are those of `judge`."""
     leaning = leading(model, state)
     found: bool | None = None
@@ -119,8 +118,8 @@ class Evaluation:
         Label to number of melodies that were not heard because no candidate has that label.
     n_without_final
         Melodies that were not heard because the reading needs a final and they have none.
-    seams
-        Figures of the spliced lines, where they were asked for.
+    seams, owed
+        Figures of the spliced lines and of the owed steps, where they were asked for.
     """
 
     pack_id: str
@@ -136,6 +135,7 @@ class Evaluation:
     left_out: Mapping[str, int] = field(default_factory=dict)
     n_without_final: int = 0
     seams: SeamFigures | None = None
+    owed: OwedFigures | None = None
 
     @property
     def tally_by_checkpoint(self) -> dict[str, Tally]:

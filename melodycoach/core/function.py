@@ -15,17 +15,20 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from enum import StrEnum
-from math import floor
+from functools import lru_cache
+from math import floor, inf
 from typing import TYPE_CHECKING
 
 from melodycoach.core.note import InputKind
 from melodycoach.core.pitch import A4_CENTS
 
 if TYPE_CHECKING:
-    from collections.abc import Iterator
+    from typing import TypeAlias
 
     from melodycoach.core.mode import Mode
     from melodycoach.core.pitch import ToneSystem
+
+    _Places: TypeAlias = tuple[tuple[int, float], ...]
 
 COMMA_CENTS = 1200 / 53
 
@@ -107,7 +110,7 @@ def nearest_degree(mode: Mode, units: float, divisions: int) -> int:
 
     The distance is that from the degree as written or as usually played, whichever is smaller.
     """
-    return min(_placed(mode, units, divisions), key=lambda place: _distance(place, units))[0]
+    return _nearest(_placed(mode, units, divisions), units)[0]
 
 
 def find_degree(
@@ -133,19 +136,21 @@ def find_degree(
         one key of a plain keyboard, one that is no mere passing colour before one that is.
     """
     units = system.cents_to_units(pitch_cents) - final_units
+    places = _placed(mode, units, system.divisions)
     if kind is InputKind.KEYS:
         key = key_of(pitch_cents)
-        on_key = [
+        places = tuple(
             place
-            for place in _placed(mode, units, system.divisions)
+            for place in places
             if any(key_of(A4_CENTS + (final_units + at) * system.unit_cents) == key for at in place)
-        ]
-        best = min(
-            on_key, key=lambda place: (place[0] in mode.passing, _distance(place, units)), default=None
         )
-        return None if best is None else best[0]
-    nearest = min(_placed(mode, units, system.divisions), key=lambda place: _distance(place, units))
-    return nearest[0] if _distance(nearest, units) <= tolerance_units(kind, system) else None
+        return (
+            min(places, key=lambda place: (place[0] in mode.passing, _distance(place, units)))[0]
+            if places
+            else None
+        )
+    degree, away = _nearest(places, units)
+    return degree if away <= tolerance_units(kind, system) else None
 
 
 def function_of(mode: Mode, degree: int | None, divisions: int) -> Function:
@@ -175,23 +180,53 @@ def function_of(mode: Mode, degree: int | None, divisions: int) -> Function:
     return Function.OPENING if low <= degree <= high else Function.DEGREE
 
 
-def _placed(mode: Mode, units: float, divisions: int) -> Iterator[tuple[int, float]]:
-    """Give (degree, degree as played) for every degree that could stand near a pitch."""
-    played = mode.played
-    for degree in mode.degrees:
-        yield degree, played.get(degree, degree)
-    octave = floor(units / divisions)
-    if octave == 0:
-        return
-    shift = octave * divisions
-    for degree in (*mode.rising, *mode.falling, *mode.passing):
-        if 0 <= degree <= divisions:
-            yield degree + shift, played.get(degree, degree) + shift
-    outer = mode.above if octave > 0 else mode.below
-    shift -= divisions if octave > 0 else -divisions
-    for degree in outer:
-        yield degree + shift, played.get(degree, degree) + shift
+def _placed(mode: Mode, units: float, divisions: int) -> _Places:
+    """Give every degree that could stand near a pitch, so many units above the final."""
+    return _places_in_octave(
+        mode.degrees,
+        tuple(degree for degree in (*mode.rising, *mode.falling, *mode.passing) if 0 <= degree <= divisions),
+        mode.below,
+        mode.above,
+        tuple(mode.played.items()),
+        floor(units / divisions),
+        divisions,
+    )
 
 
-def _distance(place: tuple[float, float], units: float) -> float:
+@lru_cache(maxsize=1024)
+def _places_in_octave(
+    named: tuple[int, ...],
+    inner: tuple[int, ...],
+    below: tuple[int, ...],
+    above: tuple[int, ...],
+    played: tuple[tuple[int, float], ...],
+    octave: int,
+    divisions: int,
+) -> _Places:
+    """Give (degree, degree as played): those named, and their copies in an octave beside the first."""
+    deviation = {degree: at - degree for degree, at in played}
+    shifted = [(degree, 0) for degree in named]
+    if octave:
+        shifted += [(degree, octave * divisions) for degree in inner]
+        outer, beyond = (above, octave - 1) if octave > 0 else (below, octave + 1)
+        shifted += [(degree, beyond * divisions) for degree in outer]
+    places = {
+        degree + shift: degree + shift + deviation.get(degree, 0.0) for degree, shift in reversed(shifted)
+    }
+    return tuple(sorted(places.items()))
+
+
+def _nearest(places: _Places, units: float) -> tuple[int, float]:
+    """Give the nearest degree, as written or as played, and how far it is."""
+    nearest, least = 0, inf
+    for degree, played in places:
+        away = abs(units - degree)
+        if played != degree:
+            away = min(away, abs(units - played))
+        if away < least:
+            nearest, least = degree, away
+    return nearest, least
+
+
+def _distance(place: tuple[int, float], units: float) -> float:
     return min(abs(units - place[0]), abs(units - place[1]))

@@ -60,8 +60,8 @@ class HearingTables:
         Power of the register factor.
     closing : float64, shape (n_modes, divisions)
         How likely the last notes of a phrase that ends the melody are.
-    blur : float64, shape (divisions,)
-        How a heard unit is spread over its neighbours; sums to 1, its own place first.
+    bell : float64, shape (odd,)
+        How a heard unit is spread over its neighbours, itself in the middle; sums to 1.
     """
 
     theory: FloatArray
@@ -69,7 +69,7 @@ class HearingTables:
     closing: FloatArray
     register: FloatArray | None
     register_power: float
-    blur: FloatArray
+    bell: FloatArray
 
 
 @dataclass(frozen=True, eq=False)
@@ -221,9 +221,13 @@ def _build_tables(model: ScoringModel, kind: InputKind) -> HearingTables:
     if model.reading is not PitchReading.ANY:
         rows = [register_distribution(mode, hearing, parameters, system) for mode in model.modes]
         register = np.stack(rows)
-    bell = circular_blur(np.zeros(1), hearing.blur_cents / system.unit_cents, system.divisions)[0]
+    sigma = hearing.blur_cents / system.unit_cents
+    reach = int(np.ceil(3 * sigma))
+    bell = np.exp(-0.5 * (np.arange(-reach, reach + 1) / sigma) ** 2)
+    bell /= bell.sum()
     noise = parameters.closing_noise
-    near_final = (1 - noise) * bell + noise / system.divisions
+    near_final = circular_blur(np.zeros(1), sigma, system.divisions)[0]
+    near_final = (1 - noise) * near_final + noise / system.divisions
     closing = parameters.closing_final * near_final + (1 - parameters.closing_final) * theory[:, 1]
     for array in (theory, register, closing, bell):
         if array is not None:

@@ -67,7 +67,10 @@ class _Target:
 
 @dataclass(frozen=True, eq=False, slots=True)
 class _Plan:
-    """What the tracker needs to know of one mode on one final, worked out once."""
+    """What the tracker needs to know of one mode on one final, worked out once.
+
+    Nothing in it changes but ``known``, the memory of the places that a pitch stands for.
+    """
 
     final_units: int
     system: ToneSystem
@@ -77,6 +80,7 @@ class _Plan:
     opens_at: tuple[bool, ...]
     ends_at: tuple[bool, ...]
     folded: tuple[tuple[float, float], ...]
+    known: dict[tuple[float, InputKind], tuple[int, ...]]
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -167,6 +171,7 @@ def start_track(mode: Mode, final_units: int, system: ToneSystem) -> StepTrack:
         tuple(opens_at),
         tuple(ends_at),
         folded,
+        {},
     )
     return StepTrack(mode, final_units, (None,) * len(mode.steps), 0, plan)
 
@@ -177,7 +182,12 @@ def follow(track: StepTrack, heard: Heard) -> StepTrack:
     The cost depends on the number of steps, not on the length of the line.
     """
     plan = track._plan
-    sounding = _places(plan, heard)
+    pitch = heard.pitch_cents, heard.kind
+    sounding = plan.known.get(pitch)
+    if sounding is None:
+        sounding = _places(plan, heard)
+        if heard.kind is not InputKind.RECORDED:  # those seldom come twice
+            plan.known[pitch] = sounding
     before = dict(track._under_way)
     number = track.n_notes + 1
     heard_at = track.heard_at
@@ -201,7 +211,7 @@ def follow(track: StepTrack, heard: Heard) -> StepTrack:
     return StepTrack(track.mode, track.final_units, heard_at, number, plan, under_way)
 
 
-def _places(plan: _Plan, heard: Heard) -> list[int]:
+def _places(plan: _Plan, heard: Heard) -> tuple[int, ...]:
     """Give the places in steps that a note can stand for, each with its octave, as one number."""
     system, n_places = plan.system, plan.n_places
     divisions = system.divisions
@@ -213,7 +223,7 @@ def _places(plan: _Plan, heard: Heard) -> list[int]:
                 octave, left = divmod(note_key - key, 12)
                 if left == 0:
                     _add_codes(codes, target, octave, n_places)
-        return codes
+        return tuple(codes)
     units = system.cents_to_units(heard.pitch_cents) - plan.final_units
     tolerance = tolerance_units(heard.kind, system)
     if heard.kind in _EXACT:
@@ -223,7 +233,7 @@ def _places(plan: _Plan, heard: Heard) -> list[int]:
         at = units - octave * divisions
         if abs(at - target.written) <= tolerance or abs(at - target.played) <= tolerance:
             _add_codes(codes, target, octave, n_places)
-    return codes
+    return tuple(codes)
 
 
 def _add_codes(codes: list[int], target: _Target, octave: int, n_places: int) -> None:

@@ -14,7 +14,6 @@ research collection that is not part of this package; docs/mathematics.md says w
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass, field
 from types import MappingProxyType
 from typing import TYPE_CHECKING
@@ -83,7 +82,7 @@ _HEARING = MappingProxyType(
         InputKind.TYPED: Hearing(0.45 * _COMMA, 0.12, 0.8, 0.15),
         InputKind.KEYS: Hearing(0.45 * _COMMA, 0.12, 0.5, 0.15),
         InputKind.TUNED: Hearing(0.60 * _COMMA, 0.12, 0.5, 0.15),
-        InputKind.RECORDED: Hearing(1.10 * _COMMA, 0.25, 0.0, 0.06),
+        InputKind.RECORDED: Hearing(1.10 * _COMMA, 0.25, 0.0, 0.10),
     }
 )
 
@@ -107,11 +106,12 @@ class ScoringParameters:
     length_power, longest_s
         A note weighs ``min(length_s, longest_s) ** length_power``.
     memory_mass
-        A degree heard before in this line is expected again, whatever the mode: the line's own
-        notes count like this much weight of the mode's. Infinite: the line has no memory.
-    temper, temper_weight
-        The posterior uses the log-likelihood times ``temper / (1 + W / temper_weight)``, W being
-        the summed weight of the notes.
+        A pitch heard before in this line is expected again, whatever the mode: what the line has
+        heard counts beside a mode's own expectation, which has this much weight. Infinite: the
+        line has no memory.
+    temper, temper_weight, temper_fall
+        The posterior uses the log-likelihood times
+        ``temper * (1 + W / temper_weight) ** -temper_fall``, W being the summed weight of the notes.
     register_main, register_final, register_dominant, register_opening, register_decay,
     register_noise
         Register: multipliers for a degree of the rising form, for the final, the first dominant
@@ -147,18 +147,19 @@ class ScoringParameters:
     below_limit_cents: float = 25.0 * _COMMA
     length_power: float = 0.75
     longest_s: float = 1.0
-    memory_mass: float = math.inf
-    temper: float = 2.6
-    temper_weight: float = 10.0
+    memory_mass: float = 50.0
+    temper: float = 2.7
+    temper_weight: float = 3.0
+    temper_fall: float = 0.4
     register_main: float = 2.7
     register_final: float = 1.8
     register_dominant: float = 3.0
     register_opening: float = 3.0
     register_decay: float = 0.9
     register_noise: float = 0.01
-    closing_notes: int = 6
+    closing_notes: int = 3
     closing_power: float = 2.0
-    closing_final: float = 0.7
+    closing_final: float = 0.9
     closing_noise: float = 0.1
     change_rate: float = 0.003
     change_power: float = 1.5

@@ -134,7 +134,7 @@ def placed(
     An opening and a register step stand where they are written. A final cadence and the leading
     tone do so too, unless the line lies outside the compass of the mode altogether: then they move
     with it by octaves. Any other step takes the octave nearest to where the line has been, out of
-    those in which the mode has its degrees.
+    those in which the mode names all its degrees.
     """
     size = system.divisions
     recent = system.cents_to_units(recent_pitch_cents) - final_units
@@ -148,11 +148,8 @@ def placed(
         octave = base
     else:
         middle = sum(step.degrees) / len(step.degrees)
-        fits = [
-            k
-            for k in (-1, 0, 1)
-            if k == 0 or (low <= min(step.degrees) + k * size and max(step.degrees) + k * size <= high)
-        ]
+        named = set(mode.degrees)
+        fits = [k for k in (-1, 0, 1) if k == 0 or named.issuperset(d + k * size for d in step.degrees)]
         octave = base + min(fits, key=lambda k: (abs(middle + (base + k) * size - recent), abs(k)))
     return tuple(system.units_to_cents(final_units + degree + octave * size) for degree in step.degrees)
 

@@ -30,8 +30,12 @@ from melodycoach.errors import ImpossibleEvidenceError
 if TYPE_CHECKING:
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.ngram import IntArray
-    from melodycoach.core.note import Heard
+    from melodycoach.core.note import Heard, InputKind
     from melodycoach.core.theory import FloatArray
+
+
+MEMORY_OCTAVES, MEMORY_OCTAVES_BELOW = 12, 6
+"""Compass of a line's memory: more than MIDI has; pitches beyond it count as its ends."""
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -48,8 +52,8 @@ class ScorerState:
         How many notes there were.
     context : int64, shape (n_hypotheses,)
         Row of each hypothesis's context in the n-gram tables; empty when the order is 1.
-    memory : float64, shape (divisions,)
-        Weight heard so far near each folded unit, counted from A4.
+    memory : float64, shape (`MEMORY_OCTAVES` * divisions,)
+        Weight heard so far near each unit; A4 stands after `MEMORY_OCTAVES_BELOW` octaves.
     latest
         The last notes, as many as closing looks at.
     change
@@ -114,7 +118,8 @@ class Leaning:
 def start(model: ScoringModel) -> ScorerState:
     """Give the state before the first note."""
     n_hypotheses = len(model.mode_index)
-    loglik, memory = np.zeros(n_hypotheses), np.zeros(model.pack.system.divisions)
+    loglik = np.zeros(n_hypotheses)
+    memory = np.zeros(MEMORY_OCTAVES * model.pack.system.divisions)
     context = np.zeros(0, dtype=np.int64)
     if model.order > 1:
         grams = model.tables(next(iter(model.parameters.hearing))).grams
@@ -137,7 +142,7 @@ def advance(model: ScoringModel, state: ScorerState, heard: Heard) -> ScorerStat
     units, shares = model.shares(heard.pitch_cents, heard.kind)
     fresh, evidence, context = _score(model, state, heard, weight, units, shares)
     loglik = state.loglik + evidence.total
-    memory = state.memory + weight * _spread(model, heard, units, shares)
+    memory = _remember(model, state.memory, heard.kind, units, weight * shares / shares.sum())
     for array in (loglik, memory, context):
         array.setflags(write=False)
     n_notes = state.n_notes + 1
@@ -171,7 +176,11 @@ def _score(
     size = model.pack.system.divisions
     columns = (units[:, None] - model.final_units) % size
     by_theory = shares @ tables.theory[model.mode_index, role, columns]
-    known = float(shares @ state.memory[units % size]) / model.parameters.memory_mass
+    mass = model.parameters.memory_mass
+    places = _memory_places(state.memory, units, size)
+    known = (
+        sum(s * state.memory[at % size :: size].sum() for s, at in zip(shares, places, strict=True)) / mass
+    )
     scale = weight / (1.0 if tables.grams is None else 1.0 + model.parameters.counts_power)
     fresh = scale * np.log(by_theory)
     total = scale * np.log(by_theory + known)
@@ -183,12 +192,14 @@ def _score(
         total += scale * model.parameters.counts_power * np.log(by_counts + known)
         if len(context):
             context = tables.grams.next_row[rows, _meant(columns, tables.theory, model.mode_index, shares)]
-    total -= weight * np.log1p(state.weight / model.parameters.memory_mass)
+    total -= weight * np.log1p(state.weight / mass)
     register = np.zeros(len(fresh))
     if tables.register is not None:
-        at = register_columns(model, units)
-        register = weight * tables.register_power * np.log(shares @ tables.register[model.mode_index, at])
-        fresh += register
+        power = weight * tables.register_power
+        by_octave = shares @ tables.register[model.mode_index, register_columns(model, units)]
+        known = float(shares @ state.memory[places]) / mass
+        fresh += power * np.log(by_octave)
+        register = power * np.log((by_octave + known) / (1 + state.weight / mass))
     return fresh, NoteEvidence(total, register), context
 
 
@@ -200,17 +211,28 @@ def _meant(columns: IntArray, theory: FloatArray, mode_index: IntArray, shares: 
     return np.asarray(columns[likely.argmax(axis=0), np.arange(columns.shape[1])], dtype=np.int64)
 
 
-def _spread(model: ScoringModel, heard: Heard, units: IntArray, shares: FloatArray) -> FloatArray:
-    """Give where the memory of a heard pitch lies; sums to 1."""
-    blur = model.tables(heard.kind).blur
-    size = len(blur)
-    places = (np.arange(size)[:, None] - units[None, :]) % size
-    return np.asarray(blur[places] @ (shares / shares.sum()), dtype=np.float64)
+def _memory_places(memory: FloatArray, units: IntArray, size: int) -> IntArray:
+    """Give where units from A4 stand in a line's memory."""
+    return np.clip(units + MEMORY_OCTAVES_BELOW * size, 0, len(memory) - 1)
+
+
+def _remember(
+    model: ScoringModel, memory: FloatArray, kind: InputKind, units: IntArray, weights: FloatArray
+) -> FloatArray:
+    """Give the memory with a note added, spread as widely as the input is blurred."""
+    bell = model.tables(kind).bell
+    reach = len(bell) // 2
+    memory = memory.copy()
+    for at, weight in zip(_memory_places(memory, units, model.pack.system.divisions), weights, strict=True):
+        at = min(max(at, reach), len(memory) - 1 - reach)
+        memory[at - reach : at + reach + 1] += weight * bell
+    return memory
 
 
 def temper(model: ScoringModel, state: ScorerState) -> float:
     """Give the power on the likelihood that makes the posterior mean what it says."""
-    return model.parameters.temper / (1 + state.weight / model.parameters.temper_weight)
+    parameters = model.parameters
+    return float(parameters.temper * (1 + state.weight / parameters.temper_weight) ** -parameters.temper_fall)
 
 
 def closing(model: ScoringModel, state: ScorerState) -> FloatArray:

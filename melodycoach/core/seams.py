@@ -48,9 +48,7 @@ class Crossing:
     named_after: int | None
 
 
-def cross(
-    model: ScoringModel, before: Sequence[Heard], after: Sequence[Heard], label_after: int
-) -> Crossing:
+def cross(model: ScoringModel, before: Sequence[Heard], after: Sequence[Heard], label_after: int) -> Crossing:
     """Hear a line with a seam; ``label_after`` is the place of the mode that follows it."""
     state = start(model)
     for note in before:

@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 from melodycoach.core.evaluation import CHECKPOINTS
 from melodycoach.core.event import PitchReading
+from melodycoach.core.owed_trial import TRIAL_NOTES
 from melodycoach.core.seams import SIDE_NOTES
 from melodycoach.core.tally import LISTED, N_BINS, confused_pairs
 
@@ -15,6 +16,7 @@ if TYPE_CHECKING:
     from collections.abc import Callable, Sequence
 
     from melodycoach.core.evaluation import Evaluation
+    from melodycoach.core.owed_trial import OwedFigures
     from melodycoach.core.seams import SeamFigures
     from melodycoach.core.tally import IntArray, Tally
 
@@ -43,39 +45,37 @@ _N_PAIRS = 10
 
 def protocol(evaluation: Evaluation) -> tuple[str, ...]:
     """Say in sentences how the figures came about."""
-    short = ", ".join(
-        f"{n} before {checkpoint}" for n, checkpoint in zip(evaluation.n_shorter, CHECKPOINTS, strict=True) if n
+    ends_sooner = ", ".join(
+        f"{n} before note {checkpoint}"
+        for n, checkpoint in zip(evaluation.n_shorter, CHECKPOINTS, strict=True)
+        if n
     )
+    shorter = f"Melodies that end before a checkpoint ({ends_sooner}) count there with their last answer."
+    closing = "The answer after all notes counts the end of the melody as the end of a phrase."
+    compete = f"The {len(evaluation.mode_ids)} modes of pack {evaluation.pack_id!r} that compete"
+    finals = "A final is found when it is within a good comma of the label, in any octave."
     lines = [
-        "Every melody is heard note by note, by the same scorer as a live line; nothing is learned from it.",
+        "Each melody is heard note by note, by the same scorer as a live line; nothing is learned from it.",
         f"Input: {evaluation.kind}. Final: {_READING[evaluation.reading]}.",
-        f"{len(evaluation.mode_ids)} modes of pack '{evaluation.pack_id}' compete, all as likely at the start.",
-        "The answer is the likeliest mode, decided or not. "
-        + (
-            f"A melody that ends sooner counts with its answer at its end ({short})."
-            if short
-            else f"No melody is shorter than {CHECKPOINTS[-1]} notes."
-        ),
-        "'All notes' "
-        + (
-            "counts the end of the melody as the end of a phrase."
-            if evaluation.closing
-            else "does not count the end of the melody as the end of a phrase."
-        ),
-        "Macro-F1 is the mean over the modes that occur as labels. Calibration error: "
-        f"{N_BINS} bins of equal width, by the probability of the answer.",
+        f"{compete} are equally likely at first. The answer is the likeliest one, decided or not.",
+        shorter if ends_sooner else "",
+        closing if evaluation.closing else closing.replace("counts", "does not count"),
+        "Macro-F1 is the mean over the modes that occur as labels.",
+        f"Calibration error: the expected one, in {N_BINS} bins of equal width by the answer's probability.",
+        finals if evaluation.reading is PitchReading.ANY else "",
     ]
-    if evaluation.reading is PitchReading.ANY:
-        lines.append("A final is found when it is within a good comma of the label, in any octave.")
-    left_out = sum(evaluation.left_out.values())
+    labels = ", ".join(_slug(label) for label in evaluation.left_out)
     for n, why in (
         (evaluation.n_skipped, "could not be read"),
-        (left_out, "have labels that do not compete: " + ", ".join(_slug(m) for m in evaluation.left_out)),
+        (sum(evaluation.left_out.values()), f"have labels that do not compete ({labels})"),
         (evaluation.n_without_final, "have no final"),
     ):
-        if n:
-            lines.append(f"Left out: {n} melodies that {why}.")
-    return tuple(lines)
+        lines.append(f"Left out: {_counted(n)} that {why}." if n else "")
+    return tuple(line for line in lines if line)
+
+
+def _counted(n: int) -> str:
+    return f"{n} {'melody' if n == 1 else 'melodies'}"
 
 
 def evaluation_json(evaluation: Evaluation) -> dict[str, Any]:
@@ -121,6 +121,8 @@ def evaluation_json(evaluation: Evaluation) -> dict[str, Any]:
     found["without_final"] = evaluation.n_without_final
     if evaluation.seams is not None:
         found["seams"] = _seams_json(evaluation.seams)
+    if evaluation.owed is not None:
+        found["owed"] = _owed_json(evaluation.owed)
     found["protocol"] = list(protocol(evaluation))
     return found
 
@@ -138,6 +140,19 @@ def _seams_json(seams: SeamFigures) -> dict[str, Any]:
     }
 
 
+def _owed_json(owed: OwedFigures) -> dict[str, Any]:
+    return {
+        "n": owed.n,
+        "seed": owed.seed,
+        "nothing_owed": owed.n_nothing_owed,
+        "after_notes": TRIAL_NOTES,
+        "step_nats": _plain(owed.step_nats),
+        "walk_nats": _plain(owed.walk_nats),
+        "ratio": _plain(owed.ratio),
+        "walks_beaten": _plain(owed.walk_beaten),
+    }
+
+
 def _plain(figure: float) -> float | None:
     return None if math.isnan(figure) else round(figure, 6)
 
@@ -146,15 +161,17 @@ def evaluation_text(evaluation: Evaluation, columns: int = 80) -> str:
     """Lay an evaluation out for a reader; no line is longer than ``columns`` (at least 60)."""
     columns = max(columns, 60)
     parts = [
-        f"{evaluation.n} melodies, {evaluation.n_notes} notes",
+        f"{_counted(evaluation.n)}, {evaluation.n_notes} notes",
         _protocol_text(evaluation, columns),
         _figures_text(evaluation),
         _reliability_text(evaluation),
         _confusion_text(evaluation, columns),
-        _pairs_text(evaluation),
+        _pairs_text(evaluation, columns),
     ]
     if evaluation.seams is not None:
         parts.append(_seams_text(evaluation.seams, columns))
+    if evaluation.owed is not None:
+        parts.append(_owed_text(evaluation.owed, columns))
     return "\n\n".join(parts) + "\n"
 
 
@@ -177,7 +194,7 @@ def _figures_text(evaluation: Evaluation) -> str:
     for _, title, figure in rows:
         lines.append(f"{title:<{_LABEL}}" + "".join(_field(figure(tally)) for tally in tallies.values()))
     error = tallies["all"].accuracy_error
-    lines.append(f"One standard error of the last accuracy is {error:.3f}: smaller differences are chance.")
+    lines.append(f"(one standard error of the accuracy after all notes: {error:.3f})")
     return "\n".join(lines)
 
 
@@ -188,15 +205,15 @@ def _field(figure: float) -> str:
 def _reliability_text(evaluation: Evaluation) -> str:
     tallies = evaluation.tally_by_checkpoint
     lines = [
-        "Reliability: what was said of the answer, how often it was right, in how many melodies",
+        "Reliability: probability said, share right, number of melodies",
         f"{'probability':<11}" + "".join(f"{name + ' notes':>17}" for name in tallies),
-        " " * 11 + "    said right   n" * len(tallies),
+        " " * 11 + f"{'said':>6}{'right':>6}{'n':>5}" * len(tallies),
     ]
     for k in range(N_BINS):
         row = f"{k / N_BINS:.1f} to {(k + 1) / N_BINS:.1f} "
         for tally in tallies.values():
             one = tally.reliability[k]
-            row += f"    {one.probability:.2f}  {one.accuracy:.2f}{one.n:>4}" if one.n else f"{'–':>17}"
+            row += f"{one.probability:>6.2f}{one.accuracy:>6.2f}{one.n:>5}" if one.n else f"{'–':>17}"
         lines.append(row)
     return "\n".join(lines)
 
@@ -206,60 +223,65 @@ def _slug(mode_id: str) -> str:
 
 
 def _confusion_text(evaluation: Evaluation, columns: int) -> str:
-    """Draw the confusion after all notes: the modes that occur, named by number in the head."""
+    """Draw the answers after all notes: as a matrix if it fits, else as a list."""
     confusion = evaluation.tally_by_checkpoint["all"].confusion
     labelled = [place for place in range(len(confusion)) if confusion[place].any()]
-    answered = [place for place in range(len(confusion)) if confusion[:, place].any() or place in labelled]
-    number_by_place = {place: number for number, place in enumerate(answered, 1)}
+    occurs = [place for place in range(len(confusion)) if place in labelled or confusion[:, place].any()]
+    slugs = [_slug(mode_id) for mode_id in evaluation.mode_ids]
     width = max(3, len(str(int(confusion.max()))) + 1)
-    name_width = max(len(_slug(evaluation.mode_ids[place])) for place in answered)
-    room = (columns - name_width - 5) // width
-    shown, others = _columns_that_fit(confusion, labelled, answered, room)
-    head = [f"{number_by_place[place]:>{width}}" for place in shown] + ([f"{'…':>{width}}"] if others else [])
-    lines = ["Answers after all notes: rows are labels, columns answers", " " * (name_width + 4) + "".join(head)]
+    name_width = max(len(slugs[place]) for place in occurs)
+    if name_width + 4 + width * len(occurs) > columns:
+        return _confusion_list(confusion, labelled, slugs, name_width, columns)
+    number_by_place = {place: number for number, place in enumerate(occurs, 1)}
+    lines = [
+        "Answers after all notes: rows are labels, columns answers",
+        " " * (name_width + 4) + "".join(f"{number_by_place[place]:>{width}}" for place in occurs),
+    ]
     for place in labelled:
-        cells = [_cell(int(confusion[place, other]), width) for other in shown]
-        if others:
-            cells.append(_cell(int(confusion[place, others].sum()), width))
-        name = _slug(evaluation.mode_ids[place])
-        lines.append(f"{number_by_place[place]:>3} {name:<{name_width}}" + "".join(cells))
-    if others:
-        lines.append(f"  … {len(others)} more answers")
-    unlabelled = [place for place in shown if place not in labelled]
-    if unlabelled:
-        names = ", ".join(f"{number_by_place[p]} {_slug(evaluation.mode_ids[p])}" for p in unlabelled)
-        lines.append(_wrapped(f"Answers that no melody has as its label: {names}", columns))
+        cells = "".join(_cell(int(confusion[place, other]), width) for other in occurs)
+        lines.append(f"{number_by_place[place]:>3} {slugs[place]:<{name_width}}{cells}")
+    never = [f"{number_by_place[p]} {slugs[p]}" for p in occurs if p not in labelled]
+    if never:
+        lines.append(_wrapped(f"Answers that no melody has as its label: {', '.join(never)}", columns))
     return "\n".join(lines)
 
 
-def _columns_that_fit(
-    confusion: IntArray, labelled: Sequence[int], answered: Sequence[int], room: int
-) -> tuple[list[int], list[int]]:
-    """Choose the answers with a column of their own: labels first, then the most frequent ones."""
-    if len(answered) <= room:
-        return list(answered), []
-    ranked = sorted(answered, key=lambda p: (p not in labelled, -int(confusion[:, p].sum()), p))
-    kept = set(ranked[: room - 1])
-    return [p for p in answered if p in kept], [p for p in answered if p not in kept]
+def _confusion_list(
+    confusion: IntArray, labelled: Sequence[int], slugs: Sequence[str], name_width: int, columns: int
+) -> str:
+    lines = ["Answers after all notes: label, named rightly, named instead"]
+    for place in labelled:
+        row = confusion[place]
+        wrong = sorted((o for o in range(len(row)) if row[o] and o != place), key=lambda o: -int(row[o]))
+        head = f"  {slugs[place]:<{name_width}} {row[place]:>5} of {row.sum():<6}"
+        instead = ", ".join(f"{slugs[other]} {row[other]}" for other in wrong) or "–"
+        lines.append(textwrap.fill(instead, columns, initial_indent=head, subsequent_indent=" " * len(head)))
+    return "\n".join(lines)
 
 
 def _cell(count: int, width: int) -> str:
     return f"{count or '·':>{width}}"
 
 
-def _pairs_text(evaluation: Evaluation) -> str:
+def _pairs_text(evaluation: Evaluation, columns: int) -> str:
     confusion = evaluation.tally_by_checkpoint["all"].confusion
     pairs = confused_pairs(confusion, _N_PAIRS)
     if not pairs:
         return "No melody is named wrongly after all notes."
-    lines = ["Confused most after all notes: first named second, second named first, of how many"]
+    lines = ["Confused most after all notes"]
     for pair in pairs:
-        names = f"{_slug(evaluation.mode_ids[pair.first])} – {_slug(evaluation.mode_ids[pair.second])}"
-        n_first, n_second = int(confusion[pair.first].sum()), int(confusion[pair.second].sum())
-        lines.append(
-            f"  {names:<36}{pair.first_as_second:>6} of {n_first:<6}{pair.second_as_first:>6} of {n_second}"
-        )
+        ways = [
+            f"{_slug(evaluation.mode_ids[label])} named {_slug(evaluation.mode_ids[answer])} "
+            f"{confusion[label, answer]} of {confusion[label].sum()}"
+            for label, answer in ((pair.first, pair.second), (pair.second, pair.first))
+            if confusion[label, answer]
+        ]
+        lines.append(textwrap.fill("; ".join(ways), columns, initial_indent="  ", subsequent_indent="    "))
     return "\n".join(lines)
+
+
+def _rows_text(rows: Sequence[tuple[str, str]]) -> list[str]:
+    return [f"{title:<{_LABEL + 8}}{figure:>{_FIELD}}" for title, figure in rows]
 
 
 def _seams_text(seams: SeamFigures, columns: int) -> str:
@@ -268,15 +290,26 @@ def _seams_text(seams: SeamFigures, columns: int) -> str:
         f"mode; {seams.n_excerpts} excerpts of {2 * SIDE_NOTES} notes without a seam (seed {seams.seed}). "
         "Melodies may change mode themselves, so the false alarms are an upper bound."
     )
-    delay = "–" if math.isnan(seams.median_delay) else f"{seams.median_delay:g}"
-    return "\n".join(
-        [
-            "Change of mode",
-            _wrapped(how, columns),
-            f"{'seams noticed':<{_LABEL + 8}}{_field(seams.noticed)}",
-            f"{'median delay, notes':<{_LABEL + 8}}{delay:>{_FIELD}}",
-            f"{'first mode named at the seam':<{_LABEL + 8}}{_field(seams.right_before)}",
-            f"{'… and then the second one':<{_LABEL + 8}}{_field(seams.named)}",
-            f"{'false alarms in 100 notes':<{_LABEL + 8}}{_field(seams.false_alarms_per_100)}",
-        ]
+    rows = (
+        ("seams noticed", _field(seams.noticed)),
+        ("median delay, notes", "–" if math.isnan(seams.median_delay) else f"{seams.median_delay:g}"),
+        ("first mode named at the seam", _field(seams.right_before)),
+        ("… and then the second one", _field(seams.named)),
+        ("false alarms in 100 notes", _field(seams.false_alarms_per_100)),
     )
+    return "\n".join(["Change of mode", _wrapped(how, columns), *_rows_text(rows)])
+
+
+def _owed_text(owed: OwedFigures, columns: int) -> str:
+    how = (
+        f"After {TRIAL_NOTES} notes of {_counted(owed.n)} (seed {owed.seed}), with the labelled mode as "
+        "the target, the step that is put first is played, and every walk of its length along its degrees. "
+        "Gains are in log-odds of the labelled mode against all others, in nats."
+    )
+    rows = (
+        ("mean gain of the step", _field(owed.step_nats)),
+        ("mean gain of a walk", _field(owed.walk_nats)),
+        ("ratio", _field(owed.ratio)),
+        ("walks that add less", _field(owed.walk_beaten)),
+    )
+    return "\n".join(["Owed steps", _wrapped(how, columns), *_rows_text(rows)])

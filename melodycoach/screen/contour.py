@@ -24,7 +24,7 @@ if TYPE_CHECKING:
 WIDEST_SLOT = 3
 """More cells than this for a note would tear the line apart."""
 
-_FUNCTION_STYLES = {"final": "class:final", "dominant": "class:dominant"}
+_ROLE_STYLES = {"final": "class:final", "dominant": "class:dominant"}
 _ON_A_RUNG = 0.75
 """A note this near to a rung, in units, stands on it."""
 
@@ -34,6 +34,7 @@ class _Row:
     height: float
     name: str
     function: str
+    role: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -66,9 +67,7 @@ def draw_contour(
     notes, slot = _window(view.line, room, focus)
     ladder = _choose_rows(view.ladder, notes, rows - ruled)
     grid, ruler = _plot(notes, ladder, slot, room, signs, focus)
-    lines = [
-        [*_label(row, labels, signs), *_runs(cells)] for row, cells in zip(ladder, grid, strict=True)
-    ]
+    lines = [[*_label(row, labels, signs), *_runs(cells)] for row, cells in zip(ladder, grid, strict=True)]
     if ruled and lines:
         lines.append([("class:faint", " " * labels), *_runs(ruler)])
     return lines
@@ -86,7 +85,7 @@ def _label_columns(ladder: Sequence[Rung], columns: int) -> int:
 
 def _label(row: _Row, columns: int, signs: Signs) -> Line:
     """Write name, function and edge of a rung; the function gives way first."""
-    style = _FUNCTION_STYLES.get(row.function, "class:name")
+    style = _ROLE_STYLES.get(row.role, "class:name")
     room = columns - 2
     if room <= 0:
         return [("", " " * columns)]
@@ -133,7 +132,8 @@ def _choose_rows(ladder: Sequence[Rung], notes: Sequence[LineNote], rows: int) -
         return []
     heights = sorted({rung.height for rung in ladder})
     by_height: dict[float, _Row] = {
-        rung.height: _Row(rung.height, rung.name, rung.function) for rung in ladder
+        rung.height: _Row(rung.height, rung.name, rung.function, rung.role or rung.function)
+        for rung in ladder
     }
     n_notes: dict[float, int] = {}
     for note in notes:
@@ -141,14 +141,14 @@ def _choose_rows(ladder: Sequence[Rung], notes: Sequence[LineNote], rows: int) -
         own = near is None or abs(near - note.height) > _ON_A_RUNG
         height = round(note.height) if own or near is None else near
         if own and height not in by_height:
-            by_height[height] = _Row(height, note.name, "")
+            by_height[height] = _Row(height, note.name, "", "")
         n_notes[height] = n_notes.get(height, 0) + 1
     worth = {"final": 3, "dominant": 2}
     low, high = min(n_notes, default=-999), max(n_notes, default=999)
     ranked = sorted(
         by_height.values(),
         key=lambda row: (
-            -worth.get(row.function, 0),
+            -worth.get(row.role, 0),
             -(n_notes.get(row.height, 0) > 0),
             -(row.height in heights),
             -(low <= row.height <= high),
@@ -180,7 +180,7 @@ def _plot(
 ) -> tuple[list[list[_Cell]], list[_Cell]]:
     """Put the notes on the rungs; give the cells of each rung and of the ruler below."""
     guides = {"final": signs.final_guide, "dominant": signs.dominant_guide}
-    grid = [[_Cell(guides.get(row.function, " "), "class:faint")] * max(room, 0) for row in ladder]
+    grid = [[_Cell(guides.get(row.role, " "), "class:faint")] * max(room, 0) for row in ladder]
     ruler = [_Cell(" ", "class:faint")] * max(room, 0)
     heights = sorted(row.height for row in ladder)
     place_of = {row.height: place for place, row in enumerate(ladder)}

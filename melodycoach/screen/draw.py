@@ -35,7 +35,7 @@ from melodycoach.screen.panels import (
 )
 from melodycoach.screen.plain import plain_line
 from melodycoach.screen.signs import ASCII, UNICODE
-from melodycoach.screen.text import Line, cut, fit, line_width, width, wrap
+from melodycoach.screen.text import Line, cut, fit, wrap
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -98,36 +98,24 @@ def picture(
             above = _sentence(view, columns, rows - layout.question - layout.entry)
             below: list[Line] = []
         case Form.STACK:
-            above = _stack(view, columns, layout, signs, _focus(shown))
+            above = _stack(view, columns, layout, signs, item_at(shown))
             below = _foot(view, columns, layout, signs)
         case Form.PAIR:
-            above = _pair(view, columns, layout, signs, _focus(shown))
+            above = _pair(view, columns, layout, signs, item_at(shown))
             below = _foot(view, columns, layout, signs)
-    asked = Drawn([], 0, 0)
-    if question is not None:
-        asked = draw_question(question, columns, layout.question, signs)
     typed = draw_entry(shown, columns, layout.entry, signs)
-    row, column = len(above) + typed.row, typed.column
-    if question is not None:
+    asked = Drawn([], 0, 0) if question is None else draw_question(question, columns, layout.question, signs)
+    if asked.lines:
         row, column = len(above) + asked.row, asked.column
-        above = [*above, *asked.lines]
-    elif not typed.lines:
-        row, column = len(above) - 1, columns - 1
+    elif typed.lines:
+        row, column = len(above) + typed.row, typed.column
     else:
-        above = [*above, *asked.lines]
-    if question is not None:
-        pass
-    lines = [*above, *_filled(typed.lines, layout.entry), *below]
+        row, column = len(above) - 1, columns - 1
+    lines = [*above, *asked.lines, *_filled(typed.lines, layout.entry), *below]
     if ascii_only:
         lines = ascii_lines(lines)
-    sign = signs.more
-    fitted = [fit(line, columns, sign) for line in _filled(lines, rows)]
+    fitted = [fit(line, columns, signs.more) for line in _filled(lines, rows)]
     return Drawn(fitted, min(max(row, 0), rows - 1), min(column, columns - 1))
-
-
-def _focus(entry: Entry) -> int | None:
-    """Give the item on which the cursor stands, unless it stands behind the line."""
-    return item_at(entry)
 
 
 def _filled(lines: Sequence[Line], rows: int) -> list[Line]:
@@ -142,7 +130,7 @@ def _sentence(view: ViewState, columns: int, rows: int) -> list[Line]:
     texts = wrap(plain_line(view, None) or view.verdict, columns)
     if len(texts) > rows:
         texts = [*texts[: rows - 1], cut(" ".join(texts[rows - 1 :]), columns)]
-    return _filled([[("class:verdict" if place == 0 else "", text)] for place, text in enumerate(texts)], rows)
+    return _filled([[("class:verdict" if row == 0 else "", text)] for row, text in enumerate(texts)], rows)
 
 
 def _attention(view: ViewState, columns: int, signs: Signs) -> Line:
@@ -314,6 +302,3 @@ def help_lines(columns: int, signs: Signs, theory: str = "") -> list[Line]:
         lines.append([])
         lines += [[("class:faint", row)] for row in wrap(theory, columns)]
     return lines
-
-
-__all__ = ["draw", "draw_help", "help_lines", "line_width", "picture", "width"]

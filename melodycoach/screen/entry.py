@@ -205,6 +205,16 @@ def moved_to(entry: Entry, cursor: int) -> Entry:
     return replace(entry, cursor=min(max(cursor, 0), len(entry.text)))
 
 
+def moved_to_start(entry: Entry) -> Entry:
+    """Put the cursor at the start of the text."""
+    return moved_to(entry, 0)
+
+
+def moved_to_end(entry: Entry) -> Entry:
+    """Put the cursor at the end of the text."""
+    return moved_to(entry, len(entry.text))
+
+
 def moved_left(entry: Entry) -> Entry:
     """Move the cursor one character to the left."""
     return moved_to(entry, _cluster_before(entry.text, entry.cursor))
@@ -424,9 +434,7 @@ def _rebased(entry: Entry, goal: tuple[str, ...]) -> Entry:
         place = hit[0] if hit else _place_for(entry, start)
         for gone in reversed(hit):
             draft.remove(gone)
-        draft.items = [
-            item + shift if item is not None and item >= stop else item for item in draft.items
-        ]
+        draft.items = [item + shift if item is not None and item >= stop else item for item in draft.items]
         draft.insert(place, new, range(start, start + len(new)))
     return replace(entry, text=draft.text, cursor=draft.cursor, base=goal, items=tuple(draft.items))
 

@@ -22,6 +22,11 @@ if TYPE_CHECKING:
 
 _WORD_AND_SPACES = re.compile(r"\s+|\S+\s*")
 _MARGIN = 2
+_STYLES = {
+    "taken": "class:entry",
+    "pending": "class:entry.pending",
+    "unreadable": "class:entry.unreadable",
+}
 
 
 @dataclass(frozen=True, slots=True)
@@ -104,7 +109,6 @@ def draw_entry(entry: Entry, columns: int, rows: int, signs: Signs) -> Drawn:
     ranges = break_text(entry.text, columns - _MARGIN)
     here = row_of(ranges, entry.cursor)
     top = max(0, min(here - rows // 2, len(ranges) - rows))
-    styles = {"taken": "class:entry", "pending": "class:entry.pending", "unreadable": "class:entry.unreadable"}
     words = spans(entry)
     lines: list[Line] = []
     for place, (lo, hi) in enumerate(ranges[top : top + rows], start=top):
@@ -118,7 +122,7 @@ def draw_entry(entry: Entry, columns: int, rows: int, signs: Signs) -> Drawn:
             start, stop = max(span.lo, lo), min(span.hi, hi)
             if start > at:
                 line.append(("", entry.text[at:start]))
-            line.append((styles[span.state], entry.text[start:stop]))
+            line.append((_STYLES[span.state], entry.text[start:stop]))
             at = stop
         lines.append(line)
     lo = ranges[here][0]

@@ -52,7 +52,7 @@ def draw_verdict(view: ViewState, columns: int, signs: Signs) -> Line:
     sign = signs.decided if view.decided else signs.undecided
     style = "class:verdict" if view.decided else "class:verdict class:verdict.open"
     verdict = view.verdict
-    if view.decided and view.leanings and not view.verdict.endswith("%"):
+    if view.decided and view.leanings and "%" not in view.verdict:
         verdict += f"  {percent(view.leanings[0].probability).strip()}"
     verdict = cut(f"{sign} {verdict}", columns, signs.more)
     count = f"{view.n_notes} note" + ("s" if view.n_notes != 1 else "")
@@ -111,9 +111,7 @@ def _leaning(
         line.append(("class:faint", signs.steady))
     else:
         rising = row.change > 0
-        line.append(
-            ("class:rising", signs.rising) if rising else ("class:falling", signs.falling)
-        )
+        line.append(("class:rising", signs.rising) if rising else ("class:falling", signs.falling))
     if with_size:
         points = round(abs(row.change) * 100)
         line.append(("class:faint", f"{points:3d} " if points else "    "))
@@ -239,7 +237,7 @@ def _listed(owed: Sequence[OwedRow], heard: Sequence[OwedRow], columns: int, sig
 
 
 def _owed(row: OwedRow, columns: int, signs: Signs) -> Line:
-    left: Line = [("class:owed", f"{signs.owed} {row.kind}  "), ("class:owed", " ".join(row.perdes))]
+    left: Line = [("class:owed", f"{signs.owed} {' '.join(row.perdes)}"), ("class:faint", f"  {row.kind}")]
     return _spread(left, [("class:faint", gain_words(row.gain_nats, signs))], columns, signs)
 
 
@@ -249,7 +247,11 @@ def _notes(row: OwedRow, columns: int, signs: Signs) -> Line:
 
 
 def _heard(row: OwedRow, columns: int, signs: Signs) -> Line:
-    left: Line = [("class:heard", f"{signs.heard} "), ("", f"{row.kind}  "), ("", " ".join(row.perdes))]
+    left: Line = [
+        ("class:heard", f"{signs.heard} "),
+        ("", " ".join(row.perdes)),
+        ("class:faint", f"  {row.kind}"),
+    ]
     return _spread(left, [("class:faint", f"note {row.heard_at}")], columns, signs)
 
 
@@ -283,9 +285,8 @@ def gain_words(nats: float, signs: Signs) -> str:
 
 def why_title(view: ViewState) -> str:
     """Give the heading of the reasons: which mode, rather than which."""
-    name = view.leanings[0].name if view.leanings else ""
-    if name and view.rival:
-        return f"why {name}, not {view.rival}"
+    if view.in_view and view.rival and view.why:
+        return f"why {view.in_view}, not {view.rival}"
     return "why"
 
 

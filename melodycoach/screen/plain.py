@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING
 from melodycoach.screen.text import tidy
 
 if TYPE_CHECKING:
-    from melodycoach.screen.view import OwedRow, ViewState
+    from melodycoach.screen.view import LineNote, OwedRow, ViewState
 
 
 def plain_line(view: ViewState, previous: ViewState | None) -> str:
@@ -54,9 +54,13 @@ def _notes(view: ViewState, previous: ViewState | None) -> str:
     if not new:
         shorter = previous is not None and view.n_notes < previous.n_notes
         return f"the line now has {view.n_notes} notes" if shorter else ""
-    names = ", ".join(f"{note.name} {note.written}" if note.name != note.written else note.name for note in new)
+    names = ", ".join(_name(note) for note in new)
     numbers = str(new[0].number) if len(new) == 1 else f"{new[0].number} to {new[-1].number}"
     return f"{numbers} {names}"
+
+
+def _name(note: LineNote) -> str:
+    return note.name if note.name == note.written else f"{note.name} {note.written}"
 
 
 def _verdict(view: ViewState) -> str:

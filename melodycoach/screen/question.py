@@ -88,7 +88,7 @@ def offered(question: Question) -> tuple[str, ...]:
 
     >>> offered(ask(QuestionKind.TARGET, ("Beyâtî", "Hüseynî", "Hüzzam")))
     ('Beyâtî', 'Hüseynî', 'Hüzzam')
-    >>> offered(answered(ask(QuestionKind.TARGET, ("Beyâtî", "Hüseynî", "Hüzzam")), 0, 0, "huz"))
+    >>> offered(typed(ask(QuestionKind.TARGET, ("Beyâtî", "Hüseynî", "Hüzzam")), "huz"))
     ('Hüzzam',)
     """
     _, part = _parts(question)
@@ -109,18 +109,47 @@ def _parts(question: Question) -> tuple[str, str]:
     return before + comma + space, part.strip()
 
 
-def answered(question: Question, lo: int, hi: int, new: str) -> Question:
-    """Put typed text in place of the characters ``lo`` to ``hi``."""
+def typed(question: Question, new: str) -> Question:
+    """Type or paste text at the cursor."""
+    return _edited(question, question.cursor, question.cursor, new)
+
+
+def erased_before(question: Question) -> Question:
+    """Take away the character before the cursor."""
+    return _edited(question, max(question.cursor - 1, 0), question.cursor, "")
+
+
+def erased_after(question: Question) -> Question:
+    """Take away the character after the cursor."""
+    return _edited(question, question.cursor, question.cursor + 1, "")
+
+
+def cleared(question: Question) -> Question:
+    """Take everything typed away."""
+    return _edited(question, 0, len(question.text), "")
+
+
+def _edited(question: Question, lo: int, hi: int, new: str) -> Question:
     if question.awaited:
         return question
-    new = "".join(c for c in new if c.isprintable())
+    new = "".join(character for character in new if character.isprintable())
     text = question.text[:lo] + new + question.text[hi:]
     return replace(question, text=text, cursor=lo + len(new), picked=None, complaint="")
 
 
-def moved(question: Question, cursor: int) -> Question:
-    """Put the cursor before the character of that number, or at the nearest end."""
-    return replace(question, cursor=min(max(cursor, 0), len(question.text)))
+def moved(question: Question, step: int) -> Question:
+    """Move the cursor by so many characters, as far as it goes."""
+    return replace(question, cursor=min(max(question.cursor + step, 0), len(question.text)))
+
+
+def moved_to_start(question: Question) -> Question:
+    """Move the cursor before what is typed."""
+    return replace(question, cursor=0)
+
+
+def moved_to_end(question: Question) -> Question:
+    """Move the cursor behind what is typed."""
+    return replace(question, cursor=len(question.text))
 
 
 def picked_next(question: Question, step: int) -> Question:

@@ -68,9 +68,9 @@ def width(text: str) -> int:
 
 
 def tidy(text: str) -> str:
-    """Make a text fit to be shown: composed letters, no line ends, tabs or control characters.
+    r"""Make a text fit to be shown: composed letters, no line ends, tabs or control characters.
 
-    >>> tidy("USB\\tKeys\\x1b[0m\\n2")
+    >>> tidy("USB\tKeys\x1b[0m\n2")
     'USB Keys?[0m 2'
     """
     if text.isascii() and text.isprintable():

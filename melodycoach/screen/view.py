@@ -72,13 +72,15 @@ class LineNote:
 class Rung:
     """One step of the ladder beside the contour.
 
-    ``function`` is empty, ``final``, ``dominant``, ``leading tone`` or ``suspended cadence``, for
-    the mode in view.
+    ``function`` is what it does in the mode in view, in the words of the trade, or empty. ``role``
+    is the same for the drawing: ``final``, ``dominant`` or empty; where it is not given, the
+    function is taken for it.
     """
 
     height: int
     name: str
     function: str = ""
+    role: str = ""
 
 
 @dataclass(frozen=True, slots=True)

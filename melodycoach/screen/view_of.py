@@ -8,17 +8,17 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-import numpy as np
-
 from melodycoach.core.event import PitchReading
+from melodycoach.core.evidence import Tally, tally
 from melodycoach.core.function import Function, function_of, trade_words
+from melodycoach.core.keyboard import keyboard_note
 from melodycoach.core.note import InputKind, Mark, Note
 from melodycoach.core.offmode import off_mode, off_mode_words
 from melodycoach.core.owed import StepTrack, follow, start_track
 from melodycoach.core.ranking import rank_owed
 from melodycoach.core.scorer import announced, leading, mode_posterior, posterior
 from melodycoach.core.step_words import step_label
-from melodycoach.core.why import keyboard_note, reasons
+from melodycoach.core.why import reasons_of_tally
 from melodycoach.screen.view import LeaningRow, LineNote, OwedRow, Rung, Status, ViewState, WhyRow
 
 if TYPE_CHECKING:
@@ -45,6 +45,7 @@ class ViewMaker:
     def __init__(self) -> None:
         self._tracks: list[StepTrack] = []
         self._followed: tuple[object, ...] = ()
+        self._tally: Tally | None = None
 
     def view_of(self, session: SessionState, status: Status, tokens: tuple[str, ...] = ()) -> ViewState:
         """Give what the screen shows of a session.
@@ -76,7 +77,7 @@ class ViewMaker:
             owed=_owed_rows(session, hypothesis, rival, track),
             line=_line_notes(session, mode, final_units),
             ladder=_ladder(mode, final_units, names),
-            why=_why_rows(session, hypothesis, rival) if heard_anything else (),
+            why=self._why_rows(session, hypothesis, rival) if heard_anything else (),
             keyboard_note=_keyboard_note(session, hypothesis, rival),
             tokens=tokens,
             n_notes=len(line.heard),
@@ -107,6 +108,17 @@ class ViewMaker:
             self._tracks.append(follow(self._tracks[-1], note))
         self._followed = (mode.id, final_units, session.pack.id, *heard)
         return self._tracks[-1]
+
+    def _why_rows(
+        self, session: SessionState, hypothesis: int | None, rival: int | None
+    ) -> tuple[WhyRow, ...]:
+        """Say what speaks for the mode in view against its rival, going on from the last view."""
+        if hypothesis is None or rival is None:
+            return ()
+        line = session.line
+        self._tally = tally(session.model, line.states, line.heard, hypothesis, rival, self._tally)
+        found = reasons_of_tally(self._tally, line.heard, REASONS_SHOWN)
+        return tuple(WhyRow(text=reason.text, nats=reason.nats) for reason in found)
 
 
 def _hypothesis_in_view(session: SessionState, lean: Leaning) -> tuple[Mode, int, int | None, int | None]:
@@ -167,7 +179,7 @@ def _leaning_rows(session: SessionState, state: ScorerState) -> tuple[LeaningRow
     states = session.line.states
     before = mode_posterior(model, states[-2]) if len(states) > 1 else by_mode
     by_hypothesis = posterior(model, state).reshape(-1, model.n_modes)
-    ranked = [int(i) for i in np.argsort(-by_mode, kind="stable")]
+    ranked = sorted(range(model.n_modes), key=lambda index: -by_mode[index])
     shown = ranked[:LEANINGS_SHOWN]
     target = session.target
     shown += [i for i in ranked[LEANINGS_SHOWN:] if target is not None and model.modes[i].id == target.id]
@@ -282,14 +294,6 @@ def _ladder(mode: Mode, final_units: int, names: PitchNames) -> tuple[Rung, ...]
             )
         )
     return tuple(rungs)
-
-
-def _why_rows(session: SessionState, hypothesis: int | None, rival: int | None) -> tuple[WhyRow, ...]:
-    if hypothesis is None or rival is None:
-        return ()
-    line = session.line
-    found = reasons(session.model, line.states, line.heard, hypothesis, rival, REASONS_SHOWN)
-    return tuple(WhyRow(text=reason.text, nats=reason.nats) for reason in found)
 
 
 def _keyboard_note(session: SessionState, hypothesis: int | None, rival: int | None) -> str:

@@ -5,8 +5,9 @@ Inputs are read as queues and never through a callback: closing a port under a c
 
 The rules for JACK, each found the hard way: a closed input cannot be opened again, so each opening
 makes a new one; when the server dies its clients notice nothing, and once a new client has been
-made after that, touching an old one crashes. So the server is watched from outside, and all
-clients of a dead one are deleted before a new one is made.
+made after that, touching an old one crashes; a client that was tried for in vain leaves later ones
+deaf. So the server is watched from outside, all clients of a dead one are deleted before a new one
+is made, and none is made while no server listens.
 """
 
 from __future__ import annotations
@@ -142,6 +143,8 @@ def jack_server() -> str | None:
         The identity of the socket that the server listens on; empty when none listens; None where
         this system cannot tell.
     """
+    if "JACK_PROMISCUOUS_SERVER" in os.environ:  # shared by all users, under another name
+        return None
     try:
         lines = _UNIX_SOCKETS.read_text(errors="replace").splitlines()
     except OSError:  # not Linux
@@ -209,10 +212,10 @@ class RtMidiSystem:
         """List the inputs that exist now, in the order of the systems: ALSA before JACK."""
         self._let_go_of_dead_jack()
         found = []
-        for system, api in self._api_by_system.items():
+        for system in self._api_by_system:
             spare = self._spare_by_system.get(system)
             if spare is None:
-                spare = self._client(api, f"{CLIENT_NAME} watch")
+                spare = self._client(system, f"{CLIENT_NAME} watch")
                 if spare is None:
                     continue
                 self._spare_by_system[system] = spare
@@ -245,7 +248,7 @@ class RtMidiSystem:
             It is gone, or the system refuses.
         """
         self._let_go_of_dead_jack()
-        client = self._client(self._api_by_system[port.system], CLIENT_NAME)
+        client = self._client(port.system, CLIENT_NAME)
         if client is None:
             raise PortError(f"{port.name!r}: {port.system} does not answer")
         try:
@@ -268,7 +271,10 @@ class RtMidiSystem:
                 spare.delete()
         self._spare_by_system.clear()
 
-    def _client(self, api: int, name: str) -> Any:
+    def _client(self, system: str, name: str) -> Any:
+        if system == "JACK" and jack_server() == "":
+            return None
+        api = self._api_by_system[system]
         with _hushed():
             try:
                 return self._rtmidi.MidiIn(api, name=name, queue_size_limit=QUEUE_LIMIT)

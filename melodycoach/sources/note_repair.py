@@ -79,10 +79,10 @@ def _guesses(text: str, names: PitchNames, near_cents: float) -> Iterator[str]:
     yield bare
     trimmed = bare.rstrip(",.|;")
     mark = bare[len(trimmed) :][:1].replace(";", ",")
-    if mark:
+    if trimmed and mark:
         yield f"{trimmed} {mark}"
     yield from _mended(bare, names, near_cents)
-    if mark:
+    if trimmed and mark:
         yield from (f"{guess} {mark}" for guess in _mended(trimmed, names, near_cents))
     for parting in ",|":  # two tokens that were not parted
         parts = bare.split(parting)

@@ -250,13 +250,22 @@ class Scan:
             return None
         line, column, value = self._values["final"]
         word = value.replace(" ", "-")
-        item = read_token(word, self.names, self.headers.key)
-        if isinstance(item, Note) and item.kind is InputKind.TYPED and ":" not in word:
+        item = self._pitch(word)
+        if isinstance(item, Note):
             return item.pitch_cents
-        nearest = nearest_token(word, self.names, A4_CENTS, self.headers.key).split(":")[0]
-        misread = item if isinstance(item, Misread) else Misread("is no pitch", "one, such as 'A4'")
-        self._fault(line, column, value, misread, nearest)
+        nearest = nearest_token(word, self.names, A4_CENTS, self.headers.key).partition(":")[0]
+        if not isinstance(self._pitch(nearest), Note):
+            nearest = ""
+        self._fault(line, column, value, item, nearest)
         return None
+
+    def _pitch(self, word: str) -> Note | Misread:
+        item = read_token(word, self.names, self.headers.key)
+        if isinstance(item, Misread):
+            return item
+        if isinstance(item, Note) and item.kind is InputKind.TYPED and ":" not in word:
+            return item
+        return Misread("is no pitch alone", "one without length, such as 'A4'")
 
     def _tempo(self) -> float | None:
         if "tempo" not in self._values:

@@ -3,6 +3,7 @@
 import math
 from fractions import Fraction
 from importlib.util import find_spec
+from itertools import pairwise
 from pathlib import Path
 
 import pytest
@@ -84,7 +85,7 @@ def test_cents_to_units_and_back_gives_the_same_pitch(system: ToneSystem, cents:
 def test_the_naturals_are_nine_commas_apart_and_four_at_the_half_tones():
     # common practice in AEU notation: C D E F G A B C = tanini 9, tanini 9, bakiye 4, 9, 9, 9, 4
     octave = [*COMMAS_53.natural_units, 53]
-    assert [high - low for low, high in zip(octave, octave[1:], strict=False)] == [9, 9, 4, 9, 9, 9, 4]
+    assert [high - low for low, high in pairwise(octave)] == [9, 9, 4, 9, 9, 9, 4]
 
 
 @pytest.mark.parametrize(

@@ -135,9 +135,7 @@ def test_a_bad_record_stops_a_strict_reading_and_one_that_nobody_listens_to(
     assert faults == []
 
 
-def test_a_line_that_is_too_long_is_skipped_whole(
-    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
+def test_a_line_that_is_too_long_is_skipped_whole(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(collection, "MAX_LINE_BYTES", 200)
     monkeypatch.setattr(collection, "_CHUNK_BYTES", 16)
     faults: list[str] = []

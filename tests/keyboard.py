@@ -1,0 +1,31 @@
+"""A keyboard that is not there: a process of its own that offers one MIDI output over JACK.
+
+Run as ``python keyboard.py NAME``. It writes ``ready`` when the port exists, then obeys lines from
+standard input: a message in hex is sent; ``wait SECONDS`` waits; ``sync`` answers ``done``. When
+standard input ends, or the process is ended, the port is gone: the keyboard was unplugged.
+"""
+
+import sys
+import time
+
+import rtmidi
+
+
+def main() -> None:
+    out = rtmidi.MidiOut(rtmidi.API_UNIX_JACK, name=sys.argv[1])
+    out.open_virtual_port("out")
+    print("ready", flush=True)
+    for line in sys.stdin:
+        word, _, rest = line.strip().partition(" ")
+        if word == "sync":
+            print("done", flush=True)
+        elif word == "wait":
+            time.sleep(float(rest))
+        elif word:
+            out.send_message(list(bytes.fromhex(line)))
+    out.close_port()
+    out.delete()
+
+
+if __name__ == "__main__":
+    main()

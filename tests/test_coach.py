@@ -1,0 +1,267 @@
+"""The coach: what is played, typed and asked for becomes one session, one log and one view."""
+
+from pathlib import Path
+
+import pytest
+
+from melodycoach.coach import REFUSALS_KEPT, Coach, read_final
+from melodycoach.core.event import Event, NoteOff, NoteOn, PitchReading
+from melodycoach.core.note import InputKind, Mark, Note
+from melodycoach.core.session import SessionState, begin
+from melodycoach.errors import UnknownNameError
+from melodycoach.screen.command import (
+    Fresh,
+    Open,
+    Quit,
+    Redo,
+    ReplaceText,
+    Save,
+    SetFinal,
+    SetOnly,
+    SetPort,
+    SetTarget,
+    Undo,
+)
+from melodycoach.screen.view import ViewState
+from melodycoach.sources.pack_file import load_pack
+
+PACK = load_pack("makam")
+ONLY = ("makam/huseyni", "makam/rast", "makam/hicaz")
+
+
+class StillClock:
+    def __init__(self) -> None:
+        self.now_s = 0.0
+
+    def __call__(self) -> float:
+        return self.now_s
+
+
+class Hands:
+    """A player whose notes the test decides."""
+
+    def __init__(self) -> None:
+        self.events: list[Event] = []
+        self.chosen: list[str] = []
+        self.closed = False
+
+    def poll(self, now_s: float) -> list[Event]:
+        due = [event for event in self.events if event.at_s <= now_s]
+        self.events = [event for event in self.events if event.at_s > now_s]
+        return due
+
+    def input_line(self, now_s: float) -> str:
+        return "listening to two hands"
+
+    def tuning_line(self) -> str:
+        return "plain keys"
+
+    def choose(self, name: str) -> None:
+        self.chosen.append(name)
+
+    def is_over(self, now_s: float) -> bool:
+        return not self.events
+
+    def close(self) -> None:
+        self.closed = True
+
+
+@pytest.fixture
+def clock() -> StillClock:
+    return StillClock()
+
+
+@pytest.fixture
+def hands() -> Hands:
+    return Hands()
+
+
+@pytest.fixture
+def coach(clock: StillClock, hands: Hands) -> Coach:
+    return Coach(begin(PACK, ONLY), hands, clock)
+
+
+def asked(coach: Coach, *commands: object) -> ViewState:
+    for command in commands:
+        coach.send(command)  # type: ignore[arg-type]
+    coach.turn()
+    return coach.view
+
+
+def test_played_notes_appear_in_the_view_as_tokens(coach: Coach, hands: Hands, clock: StillClock) -> None:
+    hands.events = [
+        NoteOn(0.1, 69, 6900.0, InputKind.KEYS),
+        NoteOff(0.9, 69),
+        NoteOn(1.0, 71, 7100.0, InputKind.KEYS),
+    ]
+    clock.now_s = 1.1
+    assert coach.turn()
+    assert coach.view.tokens[0].startswith("A4~")
+    assert [note.number for note in coach.view.line] == [1, 2]
+
+
+def test_a_turn_with_nothing_new_publishes_nothing(coach: Coach) -> None:
+    coach.turn()
+    view = coach.view
+    assert not coach.turn()
+    assert coach.view is view
+
+
+def test_typed_text_becomes_notes(coach: Coach) -> None:
+    view = asked(coach, ReplaceText(0, 0, "E5 dügâh B4-1:2 .", 1))
+    assert view.tokens == ("E5", "A4", "B4-1:2", ".")
+    assert view.handled == 1
+    assert view.refusals == ()
+
+
+def test_a_word_that_cannot_be_read_is_refused_with_its_place_and_takes_nothing(coach: Coach) -> None:
+    view = asked(coach, ReplaceText(0, 0, "E5 H5 D5", 7))
+    assert view.tokens == ()
+    assert view.handled == 7
+    assert [refusal.number for refusal in view.refusals] == [7]
+    assert view.refusals[0].words == ("H5",)
+    assert "H5" in view.status.warning
+
+
+def test_the_newest_refusals_are_kept(coach: Coach) -> None:
+    view = asked(coach, *(SetTarget("nothing such", number) for number in range(1, 20)))
+    assert [refusal.number for refusal in view.refusals] == list(range(20 - REFUSALS_KEPT, 20))
+
+
+def test_undo_redo_and_fresh_start_work_through_commands(coach: Coach) -> None:
+    asked(coach, ReplaceText(0, 0, "E5 D5"))
+    assert asked(coach, ReplaceText(2, 2, "C5")).tokens == ("E5", "D5", "C5")
+    assert asked(coach, Undo()).tokens == ("E5", "D5")
+    assert asked(coach, Redo()).tokens == ("E5", "D5", "C5")
+    assert asked(coach, Fresh()).tokens == ()
+
+
+def test_a_target_is_found_in_any_spelling_and_shown(coach: Coach) -> None:
+    view = asked(coach, SetTarget("HÜSEYNÎ"))
+    assert (view.in_view, view.is_target) == ("Hüseynî", True)
+    assert not asked(coach, SetTarget(None)).is_target
+
+
+def test_final_and_competing_modes_can_be_set(coach: Coach) -> None:
+    view = asked(coach, SetFinal("nevâ"), SetOnly("rast, mahur"))
+    assert view.reading == "final given: nevâ"
+    assert view.restricted == "only Rast, Mahur"
+    assert asked(coach, SetOnly("")).restricted.startswith("all ")
+
+
+@pytest.mark.parametrize(
+    ("text", "reading"), [("any", PitchReading.ANY), (" Written ", PitchReading.WRITTEN)]
+)
+def test_the_final_can_be_left_open(text: str, reading: PitchReading) -> None:
+    assert read_final(text, PACK.names) == (reading, None)
+
+
+@pytest.mark.parametrize("text", ["", "A4 B4", "-", "nowhere"])
+def test_a_final_that_is_no_single_pitch_is_refused(text: str) -> None:
+    with pytest.raises(UnknownNameError) as error:
+        read_final(text, PACK.names)
+    assert str(error.value) == (
+        f"final: found {text!r}, expected one pitch such as A4 or dügâh, or 'written' or 'any'"
+    )
+
+
+def test_a_saved_line_opens_again_as_it_was(coach: Coach, tmp_path: Path) -> None:
+    path = tmp_path / "new" / "line.txt"
+    asked(coach, SetTarget("rast"), ReplaceText(0, 0, "G4 A4 B4-1:2 , C5 ."))
+    assert asked(coach, Save(str(path))).status.warning == f"saved as {path}"
+    asked(coach, Fresh(), SetTarget(None))
+    view = asked(coach, Open(str(path)))
+    assert view.tokens == ("G4", "A4", "B4-1:2", ",", "C5", ".")
+    assert view.in_view == "Rast"
+
+
+def test_a_line_that_cannot_be_saved_is_kept_and_that_is_said(coach: Coach, tmp_path: Path) -> None:
+    (tmp_path / "file").write_text("in the way")
+    path = tmp_path / "file" / "line.txt"
+    asked(coach, ReplaceText(0, 0, "G4"))
+    view = asked(coach, Save(str(path), 5))
+    assert "the line is still here" in view.status.warning
+    assert view.refusals[-1].number == 5
+    assert view.tokens == ("G4",)
+
+
+@pytest.mark.parametrize(
+    ("content", "said"),
+    [
+        (None, "No such file or directory; name a file of note text"),
+        (b"\xff\xfe\x00", "byte 0 is not UTF-8 text"),
+    ],
+)
+def test_a_file_that_cannot_be_opened_is_refused(
+    coach: Coach, tmp_path: Path, content: bytes | None, said: str
+) -> None:
+    path = tmp_path / "line.txt"
+    if content is not None:
+        path.write_bytes(content)
+    asked(coach, ReplaceText(0, 0, "G4"))
+    view = asked(coach, Open(str(path)))
+    assert said in view.status.warning
+    assert view.tokens == ("G4",)
+
+
+def test_a_port_is_chosen_by_the_player(coach: Coach, hands: Hands) -> None:
+    asked(coach, SetPort("USB"))
+    assert hands.chosen == ["USB"]
+
+
+def test_quit_asks_the_screen_to_leave(coach: Coach) -> None:
+    asked(coach, Quit())
+    assert coach.wants_to_quit
+
+
+def test_each_note_that_ends_is_told_with_what_was_known_then(hands: Hands, clock: StillClock) -> None:
+    told: list[ViewState] = []
+    coach = Coach(begin(PACK, ONLY), hands, clock, on_note=told.append)
+    hands.events = [
+        NoteOn(0.1, 69, 6900.0, InputKind.KEYS),
+        NoteOn(0.5, 71, 7100.0, InputKind.KEYS),
+        NoteOff(0.6, 69),
+        NoteOff(0.9, 71),
+    ]
+    clock.now_s = 5.0
+    coach.turn()
+    assert [view.n_notes for view in told] == [1, 2]
+
+
+def test_text_put_behind_the_line_is_told_note_by_note_with_its_marks(
+    hands: Hands, clock: StillClock
+) -> None:
+    told: list[ViewState] = []
+    coach = Coach(begin(PACK, ONLY), hands, clock, on_note=told.append)
+    coach.append_text("E5 D5 , A4 .")
+    assert [view.tokens for view in told] == [("E5",), ("E5", "D5", ","), ("E5", "D5", ",", "A4", ".")]
+    coach.append_text("E5 X9")
+    assert coach.session.line.items[-1] is Mark.PHRASE_END
+    coach.turn()
+    assert "X9" in coach.view.status.warning
+
+
+def test_a_sounding_note_grows_in_the_view_while_the_clock_runs(
+    coach: Coach, hands: Hands, clock: StillClock
+) -> None:
+    hands.events = [NoteOn(0.0, 69, 6900.0, InputKind.KEYS)]
+    coach.turn()
+    clock.now_s = 0.6
+    assert coach.turn()
+    assert coach.view.line[0].rests
+    assert coach.view.line[0].length_s == pytest.approx(0.6)
+
+
+def test_closing_closes_the_player(coach: Coach, hands: Hands) -> None:
+    coach.close()
+    assert hands.closed
+
+
+def test_a_long_line_is_shown_from_its_newest_notes(clock: StillClock, hands: Hands) -> None:
+    session: SessionState = begin(PACK, ONLY)
+    coach = Coach(session, hands, clock)
+    view = asked(coach, ReplaceText(0, 0, "A4 " * 400))
+    assert len(view.tokens) == 400
+    assert view.line[-1].number == 400
+    assert len(view.line) < 400
+    assert all(isinstance(item, Note) for item in coach.session.line.items)
