@@ -10,8 +10,10 @@ from __future__ import annotations
 import time
 from collections import deque
 from dataclasses import replace
+from itertools import pairwise
 from pathlib import Path
 from queue import Empty, SimpleQueue
+from statistics import median
 from typing import TYPE_CHECKING, Protocol
 
 from melodycoach.core.event import (
@@ -28,8 +30,8 @@ from melodycoach.core.event import (
     TimePassed,
     Undone,
 )
-from melodycoach.core.note import Item, Note
-from melodycoach.core.session import PHRASE_GAP_S, SessionState, apply
+from melodycoach.core.note import Item, Mark, Note
+from melodycoach.core.session import PHRASE_GAP_S, Line, SessionState, apply
 from melodycoach.errors import MelodycoachError, NoteTextError, StorageError, UnknownNameError
 from melodycoach.screen.command import (
     Command,
@@ -70,6 +72,9 @@ TURN_S = 0.001
 """How long the owner sleeps between two turns."""
 
 REFUSALS_KEPT = 8
+
+SLOWEST_BPM, FASTEST_BPM = 30.0, 300.0
+"""Bounds of the tempo that a played line is saved with."""
 
 
 class Clock:
@@ -287,7 +292,8 @@ class Coach:
     def _save(self, path: Path) -> None:
         session = self.session
         headers = replace(self._headers, mode=session.target.slug if session.target else self._headers.mode)
-        text = write_note_text(headers, session.line.items, self.names)
+        tempo = headers.tempo or pace_bpm(session.line)
+        text = write_note_text(headers, session.line.items, self.names, tempo)
         try:
             path.parent.mkdir(parents=True, exist_ok=True)
             path.write_text(text, encoding="utf-8")
@@ -360,15 +366,42 @@ class Coach:
 
     def _tokens(self) -> tuple[str, ...]:
         """Write the line as note text; what was written for the last view is kept."""
-        items, (known, tokens) = self.session.line.items, self._written
+        items, (known, tokens) = entry_items(self.session.line), self._written
         kept = 0
         for old, new in zip(known, items, strict=False):
-            if old is not new:
+            if old != new:
                 break
             kept += 1
         fresh = (item_token(item, self.names, self._tempo) for item in items[kept:])
         self._written = (items, (*tokens[:kept], *fresh))
         return self._written[1]
+
+
+def entry_items(line: Line) -> tuple[Item, ...]:
+    """Give the line as the entry shows it: a played note counts one beat, or two where it rests.
+
+    So the entry stays readable, and a token that is edited keeps what the scorer heard in it. Before
+    a breath or a phrase end the rest is said already.
+    """
+    shown: list[Item] = []
+    heard = iter(line.heard)
+    for place, item in enumerate(line.items):
+        if isinstance(item, Note):
+            rests = next(heard).rests and not any(isinstance(after, Mark) for after in line.items[place + 1 : place + 2])
+            shown.append(item if item.beats is not None else replace(item, beats=2.0 if rests else 1.0))
+        else:
+            shown.append(item)
+    return tuple(shown)
+
+
+def pace_bpm(line: Line) -> float | None:
+    """Give the tempo at which the usual played note takes one beat, or None where none was played."""
+    notes = [item for item in line.items if isinstance(item, Note)]
+    onsets = [note.onset_s for note in notes if note.beats is None]
+    spans = [b - a for a, b in pairwise(onsets) if b > a]
+    if not onsets:
+        return None
+    return float(round(min(max(60 / median(spans), SLOWEST_BPM), FASTEST_BPM))) if spans else DEFAULT_TEMPO
 
 
 def _notes_with_marks(items: Sequence[Item]) -> list[tuple[Item, ...]]:

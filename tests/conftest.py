@@ -129,6 +129,8 @@ def jack_server(monkeypatch: pytest.MonkeyPatch) -> Iterator[JackServer]:
     monkeypatch.setenv("JACK_NO_START_SERVER", "1")
     yield server
     server.stop()
+    for left in Path("/dev/shm").glob(f"jack*_{server.name}_*"):  # what a killed server leaves
+        left.unlink(missing_ok=True)
 
 
 @pytest.fixture

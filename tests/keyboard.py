@@ -11,14 +11,19 @@ import time
 import rtmidi
 
 
+def say(word: str) -> None:
+    sys.stdout.write(f"{word}\n")
+    sys.stdout.flush()
+
+
 def main() -> None:
     out = rtmidi.MidiOut(rtmidi.API_UNIX_JACK, name=sys.argv[1])
     out.open_virtual_port("out")
-    print("ready", flush=True)
+    say("ready")
     for line in sys.stdin:
         word, _, rest = line.strip().partition(" ")
         if word == "sync":
-            print("done", flush=True)
+            say("done")
         elif word == "wait":
             time.sleep(float(rest))
         elif word:

@@ -265,3 +265,27 @@ def test_a_long_line_is_shown_from_its_newest_notes(clock: StillClock, hands: Ha
     assert view.line[-1].number == 400
     assert len(view.line) < 400
     assert all(isinstance(item, Note) for item in coach.session.line.items)
+
+
+def test_the_entry_writes_a_played_note_as_what_was_heard_in_it(
+    coach: Coach, hands: Hands, clock: StillClock
+) -> None:
+    for number in range(5):
+        hands.events += [NoteOn(float(number), 69, 6900.0, InputKind.KEYS), NoteOff(number + 0.9, 69)]
+    hands.events += [NoteOn(5.0, 71, 7100.0, InputKind.KEYS), NoteOff(7.0, 71)]
+    hands.events += [NoteOn(7.1, 72, 7200.0, InputKind.KEYS), NoteOff(7.9, 72)]
+    clock.now_s = 12.0
+    coach.turn()
+    assert coach.view.tokens == ("A4~:2", "A4~", "A4~", "A4~", "A4~", "B4~:2", "C5~", ".")
+
+
+def test_a_played_line_is_saved_at_its_own_pace(
+    coach: Coach, hands: Hands, clock: StillClock, tmp_path: Path
+) -> None:
+    for number in range(6):
+        hands.events += [NoteOn(number * 0.5, 69, 6900.0, InputKind.KEYS), NoteOff(number * 0.5 + 0.5, 69)]
+    clock.now_s = 9.0
+    coach.turn()
+    path = tmp_path / "line.txt"
+    asked(coach, Save(str(path)))
+    assert path.read_text(encoding="utf-8") == "tempo: 120\n\nA4~ A4~ A4~ A4~ A4~ A4~ .\n"

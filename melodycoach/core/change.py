@@ -1,57 +1,88 @@
 """The change filter: which mode a line is in *right now*, and when it moved to another.
 
-The scorer's running sums say what the whole line is. The filter says what its latest notes are: it
-gives every hypothesis a small chance to be left at each note, so that old evidence fades as soon
-as new evidence speaks against it. It keeps every note's evidence at a constant power, so its
-numbers are too sure of themselves and are never shown as probabilities; only its announcements are.
+The scorer's running sums say what the whole line is; they are slow to see that it has moved on. The
+filter looks for the moment from which another mode explains the notes better than the announced
+one. It works in two stages:
+
+*Before anything is announced* it holds a belief over the hypotheses, in which each may be left
+again at every note with a small probability, and announces the first mode that keeps a high belief
+for a few notes.
+
+*From then on* each hypothesis has a *gain*: the evidence for it and against the announced one,
+summed since the note at which it began to rise (it never falls below 0). A hypothesis is announced
+when its gain passes a threshold and leaves every other mode's gain behind. Its gain began to rise at
+the *seam*, which is therefore known too.
+
+Both stages take every note at a constant power, so their numbers are too sure of themselves: they
+are never shown as probabilities, only the announcements are.
 
 Conventions
 -----------
-``log_belief`` is float64, shape (n_hypotheses,), nats, normalised. Modes are numbered as in the
-model; -1 stands for none. Notes are counted from 1.
+Arrays are of shape (n_hypotheses,), in nats; hypothesis ``h`` is of mode ``h % n_modes``; -1 stands
+for none. Notes are counted from 1.
 
 References
 ----------
-The forward algorithm of a hidden Markov model whose states are the hypotheses: L. Rabiner, "A
-tutorial on hidden Markov models" (1989), section III A.
+The belief is the forward algorithm of a hidden Markov model: L. Rabiner, "A tutorial on hidden
+Markov models" (1989), section III A. The gain is the cumulative-sum test: E. Page, "Continuous
+inspection schemes" (1954).
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 if TYPE_CHECKING:
+    from melodycoach.core.ngram import IntArray
     from melodycoach.core.parameters import ScoringParameters
     from melodycoach.core.theory import FloatArray
 
-NO_MODE = -1
+NONE = -1
 
 
 @dataclass(frozen=True, eq=False, slots=True)
 class ChangeState:
-    """What the filter believes after some notes, and what it has announced.
+    """What the filter holds after some notes.
 
     Parameters
     ----------
     log_belief : float64, shape (n_hypotheses,), nats
-    holder
-        The mode that holds the announcing probability now, or -1.
-    held_notes
-        For how many notes running it has held it.
+        Kept up to date until the first announcement.
+    holder, held_notes
+        The mode that holds the announcing belief, or -1, and for how many notes running.
     announced
-        The mode announced last, or -1.
+        The hypothesis announced last, or -1.
+    gain : float64, shape (n_hypotheses,), nats
+        Evidence for each hypothesis against the announced one since it began to rise.
+    risen_from : int64, shape (n_hypotheses,)
+        The note at which each gain began to rise.
     changed_at
-        The note at which an announced mode gave way to another one last, or None.
+        The note at which a mode gave way to another one last, or None.
+    seam_at
+        The first note of that other mode, as found at ``changed_at``, or None.
     """
 
     log_belief: FloatArray
-    holder: int = NO_MODE
+    gain: FloatArray
+    risen_from: IntArray
+    holder: int = NONE
     held_notes: int = 0
-    announced: int = NO_MODE
+    announced: int = NONE
     changed_at: int | None = None
+    seam_at: int | None = None
+
+
+def start_change(log_prior: FloatArray) -> ChangeState:
+    """Give the filter's state before the first note."""
+    return ChangeState(log_prior, np.zeros(len(log_prior)), np.ones(len(log_prior), dtype=np.int64))
+
+
+def change_threshold(n_hypotheses: int, parameters: ScoringParameters) -> float:
+    """Give the gain that announces a change, in nats: the more could have gained it, the higher."""
+    return parameters.change_nats + float(np.log(max(n_hypotheses - 1, 1)))
 
 
 def advance_change(
@@ -62,28 +93,58 @@ def advance_change(
     Parameters
     ----------
     nats : float64, shape (n_hypotheses,)
-        What the note says for each hypothesis.
-    n_modes
-        Hypothesis ``h`` is of mode ``h % n_modes``.
+        What the note says for each hypothesis, to the power that its input has in this filter.
     n_notes
         The number of this note.
     """
+    if state.announced == NONE:
+        return _first(state, nats, n_modes, parameters)
+    return _next(state, nats, n_modes, n_notes, parameters)
+
+
+def _first(state: ChangeState, nats: FloatArray, n_modes: int, parameters: ScoringParameters) -> ChangeState:
     belief = np.exp(state.log_belief)
     if len(belief) > 1:
         rate = parameters.change_rate
         belief = (1 - rate) * belief + rate * (1 - belief) / (len(belief) - 1)
-    log_belief = np.log(belief) + parameters.change_power * nats
+    log_belief = np.log(belief) + nats
     log_belief -= log_belief.max()
-    belief = np.exp(log_belief)
-    total = belief.sum()
-    log_belief -= np.log(total)
-    by_mode = belief.reshape(-1, n_modes).sum(axis=0) if len(belief) > n_modes else belief
-    leader = int(by_mode.argmax())
-    holder = leader if by_mode[leader] >= parameters.announce_at * total else NO_MODE
-    held = state.held_notes + 1 if holder == state.holder else 1
-    announced, changed_at = state.announced, state.changed_at
-    if holder not in (NO_MODE, announced) and held >= parameters.announce_notes:
-        changed_at = changed_at if announced == NO_MODE else n_notes
-        announced = holder
+    log_belief -= np.log(np.exp(log_belief).sum())
     log_belief.setflags(write=False)
-    return ChangeState(log_belief, holder, held, announced, changed_at)
+    by_mode = np.exp(log_belief).reshape(-1, n_modes).sum(axis=0)
+    leader = int(by_mode.argmax())
+    holder = leader if by_mode[leader] >= parameters.announce_at else NONE
+    held = state.held_notes + 1 if holder == state.holder else 1
+    announced = NONE
+    if holder != NONE and held >= parameters.announce_notes:
+        announced = int(log_belief.reshape(-1, n_modes)[:, holder].argmax()) * n_modes + holder
+    return replace(state, log_belief=log_belief, holder=holder, held_notes=held, announced=announced)
+
+
+def _next(
+    state: ChangeState, nats: FloatArray, n_modes: int, n_notes: int, parameters: ScoringParameters
+) -> ChangeState:
+    gain = np.maximum(state.gain + (nats - nats[state.announced]), 0.0)
+    risen_from = np.where(gain > 0, state.risen_from, n_notes + 1)
+    best = int(gain.argmax())
+    announced, changed_at, seam_at = state.announced, state.changed_at, state.seam_at
+    threshold = change_threshold(len(gain), parameters)
+    if gain[best] >= threshold:
+        by_mode = gain.reshape(-1, n_modes).max(axis=0)
+        mode, top = best % n_modes, float(gain[best])
+        by_mode[mode] = 0.0
+        if top >= by_mode.max() + parameters.change_lead_nats or top >= 2 * threshold:
+            if mode != announced % n_modes:
+                changed_at, seam_at = n_notes, int(risen_from[best])
+            announced = best
+            gain, risen_from = np.zeros(len(gain)), np.full(len(gain), n_notes + 1)
+    for array in (gain, risen_from):
+        array.setflags(write=False)
+    return replace(
+        state,
+        gain=gain,
+        risen_from=risen_from,
+        announced=announced,
+        changed_at=changed_at,
+        seam_at=seam_at,
+    )

@@ -18,12 +18,13 @@ no more than a short one; that memory never changes an answer.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from enum import StrEnum
 from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 
+from melodycoach.core.event import PitchReading
 from melodycoach.core.function import find_degree, key_of
 from melodycoach.core.model import register_columns
 from melodycoach.core.note import InputKind
@@ -32,7 +33,6 @@ from melodycoach.core.scorer import closing, note_weight, temper
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
-    from melodycoach.core.mode import Mode
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.note import Heard
     from melodycoach.core.scorer import ScorerState
@@ -132,11 +132,15 @@ class _Place(NamedTuple):
 
 @dataclass(frozen=True, eq=False, slots=True)
 class Tally:
-    """Untempered evidence of the notes so far, for one hypothesis against another."""
+    """Untempered evidence of the notes so far, for one hypothesis against another.
+
+    ``finals`` says where the two stand, in units from A4: see `placed_final`.
+    """
 
     model: ScoringModel
     a: int
     b: int
+    finals: tuple[int, int]
     state: ScorerState
     sums: dict[_Key, _Sum]
     first: tuple[_First, ...]
@@ -173,8 +177,9 @@ def tally(
         known = None
     while known is not None and not _is_beginning(known, states):
         known = known.before
-    if known is None:
-        known = Tally(model, a, b, states[0], {}, (), None, {})
+    if known is None or not known.state.n_notes:
+        finals = placed_final(model, a, heard), placed_final(model, b, heard)
+        known = Tally(model, a, b, finals, states[0], {}, (), None, {})
     if known.state.n_notes == len(heard):
         return known
     if len(heard) - known.state.n_notes > 1:
@@ -216,8 +221,8 @@ def _extended(known: Tally, states: Sequence[ScorerState], heard: Sequence[Heard
         so_far, new_numbers = sums.get(key, _NOTHING), numbers[key]
         kept = (*so_far.numbers, *new_numbers)[-NUMBERS_KEPT:]
         sums[key] = _Sum(total, so_far.n_notes + len(new_numbers), kept)
-    before = Tally(model, a, b, known.state, known.sums, known.first, None, known._places)
-    return Tally(model, a, b, states[until], sums, tuple(first), before, known._places)
+    before = replace(known, before=None)
+    return Tally(model, a, b, known.finals, states[until], sums, tuple(first), before, known._places)
 
 
 def _place(known: Tally, note: Heard) -> _Place:
@@ -233,8 +238,8 @@ def _place(known: Tally, note: Heard) -> _Place:
     cents = note.pitch_cents if plain else system.units_to_cents(units_heard)
     degrees: list[int | None] = []
     inside: list[bool] = []
-    for hypothesis in (known.a, known.b):
-        mode, final = hypothesis_mode(model, hypothesis)
+    for hypothesis, final in zip((known.a, known.b), known.finals, strict=True):
+        mode = model.modes[model.mode_index[hypothesis]]
         degrees.append(find_degree(mode, final, cents, note.kind, system))
         low, high = mode.opening
         inside.append(low - 1 <= units_heard - final <= high + 1)
@@ -247,9 +252,7 @@ def _place(known: Tally, note: Heard) -> _Place:
         likely = shares @ tables.register[model.mode_index[pair], columns]
         register_nats = tables.register_power * float(np.log(likely[0] / likely[1]))
     where = [
-        int(model.final_units[hypothesis]) + degree
-        for hypothesis, degree in zip((known.a, known.b), degrees, strict=True)
-        if degree is not None
+        final + degree for final, degree in zip(known.finals, degrees, strict=True) if degree is not None
     ]
     units_named = min(where, key=lambda unit: abs(unit - units_heard), default=round(units_heard))
     keys = [DegreeKey(degrees[0], degrees[1], units_named, rests) for rests in (False, True)]
@@ -258,9 +261,19 @@ def _place(known: Tally, note: Heard) -> _Place:
     return place
 
 
-def hypothesis_mode(model: ScoringModel, hypothesis: int) -> tuple[Mode, int]:
-    """Give the mode of a hypothesis and its final, in units from A4."""
-    return model.modes[model.mode_index[hypothesis]], int(model.final_units[hypothesis])
+def placed_final(model: ScoringModel, hypothesis: int, heard: Sequence[Heard]) -> int:
+    """Give where a hypothesis stands, in units from A4, in the octave that a line is in.
+
+    A hypothesis of `PitchReading.ANY` has a final but no octave. It is put where the middle of its
+    opening region is nearest to the first note.
+    """
+    final = int(model.final_units[hypothesis])
+    if model.reading is not PitchReading.ANY or not heard:
+        return final
+    mode, system = model.modes[model.mode_index[hypothesis]], model.pack.system
+    middle = final + sum(mode.opening) / 2
+    octaves = round((system.cents_to_units(heard[0].pitch_cents) - middle) / system.divisions)
+    return int(final + octaves * system.divisions)
 
 
 def evidence(
@@ -336,7 +349,7 @@ def _earlier(total: _Sum | None, nats: float, number: int) -> _Sum:
 
 def _opening(counted: Tally) -> float | None:
     """Give what the opening notes say, where that is for the mode that opens where they lie."""
-    if not counted.first:
+    if not counted.first or counted.model.reading is PitchReading.ANY:
         return None
     lean = opening_lean(counted.model, counted.a, counted.b, [note.units for note in counted.first])
     nats = sum(note.degree_nats + note.register_nats for note in counted.first)
@@ -348,7 +361,6 @@ def opening_lean(model: ScoringModel, a: int, b: int, units: Sequence[float]) ->
     middle = float(np.median(units))
     sides = []
     for hypothesis in (a, b):
-        mode, final = hypothesis_mode(model, hypothesis)
-        low, high = mode.opening
-        sides.append(low - 1 <= middle - final <= high + 1)
+        low, high = model.modes[model.mode_index[hypothesis]].opening
+        sides.append(low - 1 <= middle - model.final_units[hypothesis] <= high + 1)
     return int(sides[0]) - int(sides[1])

@@ -88,7 +88,7 @@ class ScoringModel:
     final_shift
         In units; see the module's conventions.
     log_prior : float64, shape (n_hypotheses,), nats
-        Even.
+        The same for all finals of a mode.
     """
 
     pack: ModePack
@@ -182,7 +182,8 @@ def build_model(
     else:
         finals = np.array([[mode.final_units for mode in modes]], dtype=np.int64)
     mode_index = np.broadcast_to(np.arange(len(modes)), finals.shape).reshape(-1).copy()
-    log_prior = np.full(finals.size, -np.log(finals.size))
+    weight = np.array([parameters.prior_by_confidence[mode.confidence] for mode in modes])
+    log_prior = np.log(np.broadcast_to(weight / weight.sum() / len(finals), finals.shape)).reshape(-1)
     final_units = finals.reshape(-1)
     for array in (mode_index, final_units, log_prior):
         array.setflags(write=False)

@@ -10,6 +10,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from enum import StrEnum
+from statistics import median
 from typing import TYPE_CHECKING, TypeAlias
 
 if TYPE_CHECKING:
@@ -100,49 +101,68 @@ TYPED_BEAT_S = 0.35
 """What one written beat counts, whatever the tempo: an ordinary moving note."""
 
 RESTING_LENGTH_S = 0.4
-"""A note that sounds at least so long is one that the line rests on."""
+"""A note that the line rests on sounds at least so long, however fast the line moves."""
 
 RESTING_GAP_S = 0.25
-"""A silence of at least so long makes the note before it one that the line rests on."""
+"""A silence of less than this, however fast the line moves, is no rest."""
+
+RESTING_RATIO = 1.4
+"""A note that the line rests on takes so many times as long as the notes before it usually do."""
+
+PACE_NOTES = 8
+"""How many notes before a note say how long notes usually take; their median counts."""
 
 
-def hear(items: Sequence[Item]) -> tuple[Heard, ...]:
+def hear(items: Sequence[Item], n_known: int = 0) -> tuple[Heard, ...]:
     """Give the notes of a line as the scorer hears them, each with what follows it.
 
-    A note rests when it is at least `RESTING_LENGTH_S` long, or when a breath, a phrase end or a
-    silence (written, or at least `RESTING_GAP_S` of nothing played) follows.
+    A note rests when a written silence, a breath or a phrase end follows. It also rests when it is
+    long, or is followed by a silence while nothing else is played, measured against the pace of
+    the line: from its start to the next note it takes at least `RESTING_RATIO` times what the
+    `PACE_NOTES` notes before it usually took, and either sounds for `RESTING_LENGTH_S` or is
+    followed by `RESTING_GAP_S` of silence. So the notes of a slow exercise do not all rest.
 
+    Parameters
+    ----------
+    items
+        The line, or a stretch of it.
+    n_known
+        The first notes of the stretch, at least `PACE_NOTES` or all that there are before the
+        rest, are heard already: they set the pace and are not given again.
+
+    Examples
+    --------
     >>> line = (Note(6900, 0, 1, beats=1), Note(7100, 1, 1, beats=1), Mark.BREATH)
     >>> [heard.rests for heard in hear(line)]
     [False, True]
     """
     heard: list[Heard] = []
-    note: Note | None = None
-    rests = closes = False
-    for item in items:
-        match item:
-            case Note():
-                if note is not None:
-                    heard.append(_heard(note, rests or _gap_s(note, item) >= RESTING_GAP_S, closes))
-                note, rests, closes = item, False, False
-            case Mark.PHRASE_END:
-                rests = closes = True
-            case Mark.BREATH | Silence():
-                rests = True
-            case Mark.BAR:
-                pass
-    if note is not None:
-        heard.append(_heard(note, rests, closes))
+    spans_s: list[float] = []
+    places = [place for place, item in enumerate(items) if isinstance(item, Note)]
+    for number, place in enumerate(places):
+        until = places[number + 1] if number + 1 < len(places) else len(items)
+        note = items[place]
+        assert isinstance(note, Note)
+        after = items[place + 1 : until]
+        length_s = note.duration_s if note.beats is None else note.beats * TYPED_BEAT_S
+        gap_s = _gap_s(note, items[until]) if until < len(items) else 0.0
+        if number >= n_known:
+            long = length_s >= RESTING_LENGTH_S or gap_s >= RESTING_GAP_S
+            slow = length_s + gap_s >= RESTING_RATIO * _usual_s(spans_s)
+            closes = Mark.PHRASE_END in after
+            rests = closes or any(item is not Mark.BAR for item in after) or (long and slow)
+            heard.append(Heard(note.pitch_cents, note.kind, length_s, rests, closes))
+        spans_s.append(length_s + gap_s)
     return tuple(heard)
 
 
-def _gap_s(note: Note, following: Note) -> float:
-    if note.beats is not None or following.beats is not None:
-        return 0.0  # written notes touch: their silences are written too
-    return following.onset_s - note.onset_s - note.duration_s
+def _usual_s(spans_s: Sequence[float]) -> float:
+    """Give how long the last notes usually took, from one's start to the next; 0 with no notes."""
+    return median(spans_s[-PACE_NOTES:]) if spans_s else 0.0
 
 
-def _heard(note: Note, rests: bool, closes: bool) -> Heard:
-    length_s = note.duration_s if note.beats is None else note.beats * TYPED_BEAT_S
-    long = length_s >= RESTING_LENGTH_S
-    return Heard(note.pitch_cents, note.kind, length_s, rests or long, closes)
+def _gap_s(note: Note, following: Item) -> float:
+    """Give the silence between two played notes; written ones touch, and write their silences."""
+    if not isinstance(following, Note) or note.beats is not None or following.beats is not None:
+        return 0.0
+    return max(following.onset_s - note.onset_s - note.duration_s, 0.0)

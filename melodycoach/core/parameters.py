@@ -67,24 +67,29 @@ class Hearing:
         How far the written degree is expected, and not the one usually played: 1 means the book.
     register_power
         Power of the register factor beside the octave-folded one.
+    change_power
+        Power on a note's evidence in the change filter.
     """
 
     blur_cents: float
     noise: float
     book_share: float
     register_power: float
+    change_power: float
 
 
 _COMMA = 1200 / 53
 
 _HEARING = MappingProxyType(
     {
-        InputKind.TYPED: Hearing(0.45 * _COMMA, 0.12, 0.8, 0.15),
-        InputKind.KEYS: Hearing(0.45 * _COMMA, 0.12, 0.5, 0.15),
-        InputKind.TUNED: Hearing(0.60 * _COMMA, 0.12, 0.5, 0.15),
-        InputKind.RECORDED: Hearing(1.10 * _COMMA, 0.25, 0.0, 0.10),
+        InputKind.TYPED: Hearing(0.45 * _COMMA, 0.12, 0.8, 0.15, 2.5),
+        InputKind.KEYS: Hearing(0.45 * _COMMA, 0.12, 0.5, 0.15, 2.5),
+        InputKind.TUNED: Hearing(0.60 * _COMMA, 0.12, 0.5, 0.15, 2.5),
+        InputKind.RECORDED: Hearing(1.10 * _COMMA, 0.25, 0.0, 0.10, 1.5),
     }
 )
+
+_PRIOR_BY_CONFIDENCE = MappingProxyType({"high": 1.0, "medium": 0.5, "low": 0.25})
 
 
 @dataclass(frozen=True)
@@ -97,6 +102,9 @@ class ScoringParameters:
         Function weights on notes that move on and on notes that the line rests on.
     hearing
         Blur and noise of each kind of input.
+    prior_by_confidence
+        Prior weight of a mode by how well the sources agree on it: few agree on one that is seldom
+        played. It weighs little against a phrase, but breaks ties between near-twins.
     same_degree_cents
         Degrees closer than this are one degree.
     opening_margin_cents
@@ -121,10 +129,13 @@ class ScoringParameters:
         A phrase end adds ``closing_power`` times the log-likelihood of the last ``closing_notes``
         notes under a distribution with ``closing_final`` of its mass near the final (of which
         ``closing_noise`` is spread evenly) and the rest as resting notes are.
-    change_rate, change_power
-        Change filter: probability of a change of mode at a note, power on each note's evidence.
+    change_rate
+        Change filter: probability of a change of mode at a note.
     announce_at, announce_notes
-        The filter announces a mode that held at least this probability for so many notes.
+        It first announces a mode that held at least this belief for so many notes.
+    change_nats, change_lead_nats
+        It announces a change at a gain of ``change_nats``, raised by the log of the number of
+        rivals, that leads the next mode's by ``change_lead_nats``.
     decided_at, decided_half, decided_ratio
         A leaning is decided at a probability of ``decided_at``, or from ``decided_half`` on when
         it is ``decided_ratio`` times the rival's.
@@ -142,15 +153,16 @@ class ScoringParameters:
     moving: FunctionWeights = FunctionWeights(1.0, 0.3, 0.25, 0.33, 1.5, 1.8, 1.5, 1.5, 1.4, 1.25)
     resting: FunctionWeights = FunctionWeights(1.0, 0.3, 0.5, 0.33, 3.0, 3.0, 1.3, 1.5, 1.3, 1.25)
     hearing: Mapping[InputKind, Hearing] = field(default_factory=lambda: _HEARING)
+    prior_by_confidence: Mapping[str, float] = field(default_factory=lambda: _PRIOR_BY_CONFIDENCE)
     same_degree_cents: float = 1.6 * _COMMA
     opening_margin_cents: float = 1.0 * _COMMA
     below_limit_cents: float = 25.0 * _COMMA
     length_power: float = 0.75
     longest_s: float = 1.0
     memory_mass: float = 50.0
-    temper: float = 2.7
-    temper_weight: float = 3.0
-    temper_fall: float = 0.4
+    temper: float = 3.6
+    temper_weight: float = 1.0
+    temper_fall: float = 0.35
     register_main: float = 2.7
     register_final: float = 1.8
     register_dominant: float = 3.0
@@ -162,9 +174,10 @@ class ScoringParameters:
     closing_final: float = 0.9
     closing_noise: float = 0.1
     change_rate: float = 0.003
-    change_power: float = 1.5
     announce_at: float = 0.6
     announce_notes: int = 3
+    change_nats: float = 2.3
+    change_lead_nats: float = 0.75
     decided_at: float = 0.6
     decided_half: float = 0.5
     decided_ratio: float = 2.0

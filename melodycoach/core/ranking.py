@@ -13,6 +13,7 @@ with the line's last note is not held against the step that goes on from there.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from math import ceil
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -132,16 +133,14 @@ def placed(
     """Give the pitches of a step in the octave where it would be played now.
 
     An opening and a register step stand where they are written. A final cadence and the leading
-    tone do so too, unless the line lies outside the compass of the mode altogether: then they move
-    with it by octaves. Any other step takes the octave nearest to where the line has been, out of
-    those in which the mode names all its degrees.
+    tone do so too, unless the line lies outside the compass of the mode altogether, by more than a
+    quarter of an octave: then they move with it. Any other step takes the octave nearest to where
+    the line has been, out of those in which the mode names all its degrees.
     """
     size = system.divisions
     recent = system.cents_to_units(recent_pitch_cents) - final_units
-    low, high = mode.degrees[0], mode.degrees[-1]
-    base = 0
-    if not low - size // 4 <= recent <= high + size // 4:
-        base = round((recent - (low + high) / 2) / size)
+    low, high = mode.degrees[0] - size // 4, mode.degrees[-1] + size // 4
+    base = -ceil((low - recent) / size) if recent < low else max(ceil((recent - high) / size), 0)
     if step.kind in AS_WRITTEN:
         octave = 0
     elif step.kind in _STAYS_LOW:

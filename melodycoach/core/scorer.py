@@ -22,7 +22,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from melodycoach.core.change import NO_MODE, ChangeState, advance_change
+from melodycoach.core.change import NONE, ChangeState, advance_change, start_change
 from melodycoach.core.model import register_columns
 from melodycoach.core.theory import MOVING, RESTING
 from melodycoach.errors import ImpossibleEvidenceError
@@ -127,7 +127,7 @@ def start(model: ScoringModel) -> ScorerState:
         context = grams.root[model.mode_index]
     for array in (loglik, memory, context):
         array.setflags(write=False)
-    return ScorerState(loglik, 0.0, 0, context, memory, (), ChangeState(model.log_prior))
+    return ScorerState(loglik, 0.0, 0, context, memory, (), start_change(model.log_prior))
 
 
 def note_weight(model: ScoringModel, heard: Heard) -> float:
@@ -147,6 +147,7 @@ def advance(model: ScoringModel, state: ScorerState, heard: Heard) -> ScorerStat
         array.setflags(write=False)
     n_notes = state.n_notes + 1
     latest = (*state.latest, heard)[-model.parameters.closing_notes :]
+    fresh *= model.parameters.hearing[heard.kind].change_power
     change = advance_change(state.change, fresh, model.n_modes, n_notes, model.parameters)
     return ScorerState(loglik, state.weight + weight, n_notes, context, memory, latest, change)
 
@@ -326,5 +327,5 @@ def leading(model: ScoringModel, state: ScorerState) -> Leaning:
 
 def announced(model: ScoringModel, state: ScorerState) -> int | None:
     """Give the mode that the change filter announces right now, or None."""
-    index = state.change.announced
-    return None if index == NO_MODE else index
+    at = state.change.announced
+    return None if at == NONE else at % model.n_modes

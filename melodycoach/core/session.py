@@ -32,7 +32,7 @@ from melodycoach.core.event import (
     Undone,
 )
 from melodycoach.core.model import build_model
-from melodycoach.core.note import Heard, Item, Mark, Note, hear
+from melodycoach.core.note import PACE_NOTES, Heard, Item, Mark, Note, hear
 from melodycoach.core.parameters import ScoringParameters
 from melodycoach.core.scorer import ScorerState, advance, start
 
@@ -106,18 +106,21 @@ def extend(model: ScoringModel, line: Line, *items: Item) -> Line:
 
 def _with_tail(model: ScoringModel, line: Line, items: tuple[Item, ...]) -> Line:
     """Score again from the last note of ``line`` on; all items before it are unchanged."""
-    first = max(line.last_note_at, 0)
-    done = len(line.heard) - (line.last_note_at >= 0)
-    tail = hear(items[first:])
+    done = max(len(line.heard) - 1, 0)
+    first, n_known = max(line.last_note_at, 0), 0
+    while first > 0 and n_known < PACE_NOTES:
+        first -= 1
+        n_known += isinstance(items[first], Note)
+    tail = hear(items[first:], n_known)
     states = list(line.states[done : done + 1])
     for note in tail:
         states.append(advance(model, states[-1], note))
-    last = first + _last_note_at(items[first:]) if tail else -1
+    last = first + _last_note_at(items[first:])
     return Line(items, line.heard[:done] + tail, line.states[:done] + tuple(states), last)
 
 
 def _last_note_at(items: Sequence[Item]) -> int:
-    return max((i for i, item in enumerate(items) if isinstance(item, Note)), default=-1)
+    return next((i for i in range(len(items) - 1, -1, -1) if isinstance(items[i], Note)), -1)
 
 
 @dataclass(frozen=True, eq=False, slots=True)

@@ -71,9 +71,10 @@ def step_label(
             is_dominant = last % names.system.divisions in {
                 d % names.system.divisions for d in mode.dominants
             }
-            return f"half cadence on {name(last)}{words.beside(words.dominant) if is_dominant else ''}"
+            gloss = words.beside(words.dominant) if is_dominant else ""
+            return f"half cadence on {name(last)}{gloss}{_way(step, mode, name)}"
         case StepKind.SUSPENDED_CADENCE:
-            return f"suspended cadence on {name(last)}{words.beside(words.suspended)}"
+            return f"suspended cadence on {name(last)}{words.beside(words.suspended)}{_way(step, mode, name)}"
         case StepKind.LEADING_TONE:
             tone, target = _leading_pair(step)
             return f"leading tone{words.beside(words.leading)}: {name(tone)} before {name(target)}"
@@ -84,7 +85,13 @@ def step_label(
         case StepKind.COLOUR_INTERVAL:
             return _interval(step, mode, names.system.unit_cents, name)
         case StepKind.FINAL_CADENCE:
-            return f"final cadence on {name(last)}{words.beside(words.final)}"
+            return f"final cadence on {name(last)}{words.beside(words.final)}{_way(step, mode, name)}"
+
+
+def _way(step: CharacteristicStep, mode: Mode, name: _Namer) -> str:
+    """Tell a cadence from another one of the mode on the same degree by where it comes from."""
+    twins = [s for s in mode.steps if s.kind is step.kind and s.degrees[-1] == step.degrees[-1]]
+    return f", from {name(step.degrees[0])}" if len(twins) > 1 else ""
 
 
 def _travel(step: CharacteristicStep, first: str, last: str) -> str:
@@ -134,19 +141,20 @@ def _interval(step: CharacteristicStep, mode: Mode, unit_cents: float, name: _Na
         if not between and _AUGMENTED_SECOND[0] <= (high - low) * unit_cents / 100 <= _AUGMENTED_SECOND[1]:
             return f"augmented second {name(low)}–{name(high)}"
     first, last = step.degrees[0], step.degrees[-1]
+    if first == last and len(set(step.degrees)) == 2:
+        return f"{name(step.degrees[1])} as the neighbour of {name(first)}"
     if len(step.degrees) == 2:
         size = _interval_word(abs(last - first) * unit_cents / 100)
-        kind = (
-            f"leap of a {size}" if any(min(first, last) < d < max(first, last) for d in mode.rising) else size
-        )
-        return f"{kind} {name(first)}–{name(last)}".strip()
+        leaps = any(min(first, last) < d < max(first, last) for d in mode.rising)
+        kind = " of a ".join(filter(None, ("leap", size))) if leaps else size or "step"
+        return f"{kind} {name(first)}–{name(last)}"
     low, high = min(step.degrees), max(step.degrees)
     size = _interval_word((high - low) * unit_cents / 100)
-    return f"{size} {name(low)}–{name(high)}, by step"
+    return f"{size or 'run'} {name(low)}–{name(high)}, by step"
 
 
 def _interval_word(semitones: float) -> str:
     for low, high, word in _INTERVALS:
         if low <= semitones < high:
             return word
-    return "interval"
+    return ""

@@ -17,7 +17,7 @@ from melodycoach.core.evidence import (
     Tally,
     evidence,
     evidence_of_tally,
-    hypothesis_mode,
+    placed_final,
     tally,
 )
 from melodycoach.core.function import Function, function_of, trade_words
@@ -39,6 +39,7 @@ __all__ = [
     "evidence",
     "keyboard_note",
     "opening_place",
+    "placed_final",
     "reasons",
     "reasons_of_tally",
     "tally",
@@ -114,7 +115,7 @@ def reasons_of_tally(counted: Tally, heard: Sequence[Heard], count: int = 8) -> 
     contra = [one for one in told if one.nats < 0]
     kept = min(len(contra), max(count // 4, count - len(pro)))
     shown = [*pro[: count - kept], *contra[:kept]]
-    words = _Words(counted.model, counted.a, counted.b)
+    words = _Words(counted.model, counted.a, counted.b, counted.finals)
     return tuple(Reason(words.say(one), one.nats, one.numbers) for one in shown)
 
 
@@ -142,10 +143,10 @@ def opening_place(mode: Mode, final_units: int, model: ScoringModel) -> str:
 class _Words:
     """Words for the evidence between two hypotheses."""
 
-    def __init__(self, model: ScoringModel, a: int, b: int) -> None:
+    def __init__(self, model: ScoringModel, a: int, b: int, finals: tuple[int, int]) -> None:
         self.model = model
-        self.a, self.final_a = hypothesis_mode(model, a)
-        self.b, self.final_b = hypothesis_mode(model, b)
+        self.a, self.b = (model.modes[model.mode_index[h]] for h in (a, b))
+        self.final_a, self.final_b = finals
         self.size = model.pack.system.divisions
         self.trade = trade_words(self.size)
 

@@ -41,6 +41,7 @@ _FINAL_ROWS: tuple[tuple[str, str, Callable[[Tally], float]], ...] = (
 )
 
 _N_PAIRS = 10
+_TIED = "\u00a0"  # a space at which no line is broken
 
 
 def protocol(evaluation: Evaluation) -> tuple[str, ...]:
@@ -254,8 +255,9 @@ def _confusion_list(
         row = confusion[place]
         wrong = sorted((o for o in range(len(row)) if row[o] and o != place), key=lambda o: -int(row[o]))
         head = f"  {slugs[place]:<{name_width}} {row[place]:>5} of {row.sum():<6}"
-        instead = ", ".join(f"{slugs[other]} {row[other]}" for other in wrong) or "–"
-        lines.append(textwrap.fill(instead, columns, initial_indent=head, subsequent_indent=" " * len(head)))
+        instead = ", ".join(f"{slugs[other]}{_TIED}{row[other]}" for other in wrong) or "–"
+        text = textwrap.fill(instead, columns, initial_indent=head, subsequent_indent=" " * len(head))
+        lines.append(text.replace(_TIED, " "))
     return "\n".join(lines)
 
 

@@ -16,7 +16,7 @@ from typing import TYPE_CHECKING
 from melodycoach.screen.text import Line, cut, pad, pad_left, width
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Mapping, Sequence
 
     from melodycoach.screen.signs import Signs
     from melodycoach.screen.view import LineNote, Rung, ViewState
@@ -61,7 +61,7 @@ def draw_contour(
     """
     if rows <= 0 or columns <= 0:
         return []
-    ruled = rows >= 4
+    ruled = rows >= 6
     labels = _label_columns(view.ladder, columns)
     room = columns - labels
     notes, slot = _window(view.line, room, focus)
@@ -143,22 +143,27 @@ def _choose_rows(ladder: Sequence[Rung], notes: Sequence[LineNote], rows: int) -
         if own and height not in by_height:
             by_height[height] = _Row(height, note.name, "", "")
         n_notes[height] = n_notes.get(height, 0) + 1
-    worth = {"final": 3, "dominant": 2}
-    low, high = min(n_notes, default=-999), max(n_notes, default=999)
-    ranked = sorted(
-        by_height.values(),
-        key=lambda row: (
-            -worth.get(row.role, 0),
-            -(n_notes.get(row.height, 0) > 0),
-            -(row.height in heights),
-            -(low <= row.height <= high),
-            -bool(row.function),
-            -n_notes.get(row.height, 0),
-            min(abs(row.height - low), abs(row.height - high)),
-            row.height,
-        ),
+    chosen = [row for row in by_height.values() if row.role == "final"][: max(rows // 2, 1)]
+    chosen += [row for row in by_height.values() if row.role == "dominant"][: max(rows // 3, 0)]
+    left = {height: row for height, row in by_height.items() if row not in chosen}
+    while left and len(chosen) < rows:
+        chosen.append(left.pop(_most_wanted(left, [row.height for row in chosen], n_notes)))
+    return sorted(chosen[:rows], key=lambda row: -row.height)
+
+
+def _most_wanted(left: Mapping[float, _Row], chosen: Sequence[float], n_notes: Mapping[float, int]) -> float:
+    """Find the rung that brings the notes nearest to their rungs; then one with a function, near to them."""
+    away = {height: min((abs(height - other) for other in chosen), default=200.0) for height in n_notes}
+
+    def gain(height: float) -> float:
+        return sum(n_notes[place] * max(far - abs(height - place), 0.0) for place, far in away.items() if far)
+
+    def distance(height: float) -> float:
+        return min((abs(height - place) for place in n_notes), default=0.0)
+
+    return max(
+        left, key=lambda height: (gain(height), bool(left[height].function), -distance(height), -height)
     )
-    return sorted(ranked[:rows], key=lambda row: -row.height)
 
 
 def _nearest(heights: Sequence[float], height: float) -> float | None:
@@ -179,8 +184,8 @@ def _plot(
     focus: int | None,
 ) -> tuple[list[list[_Cell]], list[_Cell]]:
     """Put the notes on the rungs; give the cells of each rung and of the ruler below."""
-    guides = {"final": signs.final_guide, "dominant": signs.dominant_guide}
-    grid = [[_Cell(guides.get(row.role, " "), "class:faint")] * max(room, 0) for row in ladder]
+    guides = {"final": signs.final_guide, "dominant": " " + signs.dominant_guide}
+    grid = [_guide(guides.get(row.role, " "), room) for row in ladder]
     ruler = [_Cell(" ", "class:faint")] * max(room, 0)
     heights = sorted(row.height for row in ladder)
     place_of = {row.height: place for place, row in enumerate(ladder)}
@@ -216,6 +221,11 @@ def _plot(
                 ruler[column] = _Cell(note.mark, "class:faint")
             column += 1
     return grid, ruler
+
+
+def _guide(pattern: str, room: int) -> list[_Cell]:
+    """Fill a rung with its pattern."""
+    return [_Cell(pattern[place % len(pattern)], "class:faint") for place in range(room)]
 
 
 def _note_sign(note: LineNote, over: float, signs: Signs) -> str:

@@ -176,11 +176,12 @@ class Desk:
             self._send_change(Undo)
 
     def redo(self) -> None:
-        """Give back what was taken back."""
-        if self.entry.aside is not None:
-            self.entry = typing.brought_again(self.entry)
-        else:
+        """Give back what was taken back last."""
+        again = typing.brought_again(self.entry)
+        if again is None:
             self._send_change(Redo)
+        else:
+            self.entry = again
 
     def fresh(self) -> None:
         """Lay the line aside and begin a new one."""

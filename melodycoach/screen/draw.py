@@ -133,11 +133,11 @@ def _sentence(view: ViewState, columns: int, rows: int) -> list[Line]:
     return _filled([[("class:verdict" if row == 0 else "", text)] for row, text in enumerate(texts)], rows)
 
 
-def _attention(view: ViewState, columns: int, signs: Signs) -> Line:
+def _attention(view: ViewState, columns: int, layout: Layout, signs: Signs) -> Line:
     """Say what wants to be noticed now: a change of mode, a note off the mode, else the standing words."""
     off = _fresh_off(view)
     if view.now or off is None:
-        return draw_now(view, columns, signs)
+        return draw_now(view, columns, signs, theory=layout.status < 2)
     return [("class:off", cut(f"{signs.off} {off_words(off)}", columns, signs.more))]
 
 
@@ -168,7 +168,7 @@ def _pair(view: ViewState, columns: int, layout: Layout, signs: Signs, focus: in
     contour = layout.line - 1 - layout.mending
     return [
         draw_verdict(view, columns, signs),
-        _attention(view, columns, signs),
+        _attention(view, columns, layout, signs),
         *both,
         _line_title(view, columns, signs),
         *_filled(_contour(view, columns, contour, signs, focus), contour),
@@ -185,15 +185,17 @@ def _line_title(view: ViewState, columns: int, signs: Signs) -> Line:
     return title_line(f"line {signs.dot} last: {last.name} {last.written}", columns, signs, off)
 
 
-def _contour(view: ViewState, columns: int, rows: int, signs: Signs, focus: int | None) -> list[Line]:
+def _contour(
+    view: ViewState, columns: int, rows: int, signs: Signs, focus: int | None, theory: bool = False
+) -> list[Line]:
     """Draw the contour; before the first note, say how to begin."""
     if view.line:
         return draw_contour(view, columns, rows, signs, focus)
-    names = [rung.name for rung in view.ladder if rung.function == "final"]
-    example = f" or a name such as {names[0]}" if names else ""
-    texts = [f"play a note, or type one below: A4{example}; a space hands it over"]
-    if rows >= 5:
-        texts += ["", theory_words(view)]
+    names = [rung.name for rung in view.ladder if "final" in {rung.role, rung.function}]
+    example = f" or {names[0]}" if names else ""
+    texts = [f"play, or type below: A4{example}, then a space"]
+    if theory:
+        texts.append(theory_words(view))
     lines: list[Line] = [
         [("class:faint", f"  {row}")] for text in texts for row in (wrap(text, columns - 2) or [""])
     ]
@@ -205,10 +207,10 @@ def _stack(view: ViewState, columns: int, layout: Layout, signs: Signs, focus: i
     inner = columns - layout.gutter
     lines = [draw_verdict(view, columns, signs)]
     if layout.attention:
-        lines.append(_attention(view, columns, signs))
+        lines.append(_attention(view, columns, layout, signs))
     why, owed = layout.why, layout.owed
     if not layout.attention and why and (view.now or _fresh_off(view) is not None):
-        lines.append(_attention(view, columns, signs))
+        lines.append(_attention(view, columns, layout, signs))
         why -= 1
     areas = (
         ("", draw_leanings(view, inner, layout.leanings, signs), layout.leanings),
@@ -220,7 +222,8 @@ def _stack(view: ViewState, columns: int, layout: Layout, signs: Signs, focus: i
             margin = name if place == 0 else ""
             label: Line = [("class:title", margin.ljust(layout.gutter))] if layout.gutter else []
             lines.append([*label, *line])
-    return [*lines, *_filled(_contour(view, columns, layout.line, signs, focus), layout.line)]
+    contour = _contour(view, columns, layout.line, signs, focus, theory=not layout.attention)
+    return [*lines, *_filled(contour, layout.line)]
 
 
 def _foot(view: ViewState, columns: int, layout: Layout, signs: Signs) -> list[Line]:

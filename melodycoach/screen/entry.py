@@ -31,7 +31,7 @@ if TYPE_CHECKING:
 class Edit:
     """Items ``start`` to ``stop`` give way to ``words``; ``first`` is the place of these in the text.
 
-    ``replaced`` holds the tokens that give way.
+    ``replaced`` holds the tokens that give way; ``number`` is that of the command that carries it.
     """
 
     start: int
@@ -39,6 +39,7 @@ class Edit:
     words: tuple[str, ...]
     replaced: tuple[str, ...]
     first: int
+    number: int = 0
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,7 +56,7 @@ class Entry:
         For each word of the text the item that it stands for, None for a pending word. The
         numbers rise from left to right.
     awaited
-        Number of the command whose answer is awaited; 0: none.
+        Number of the newest command whose answer is awaited; 0: none.
     sent
         The edit under way.
     unreadable
@@ -278,11 +279,11 @@ def taken_back(entry: Entry) -> Entry:
     return replace(plain, awaited=entry.awaited, sent=entry.sent, unreadable=entry.unreadable, aside=entry)
 
 
-def brought_again(entry: Entry) -> Entry:
-    """Give the pending words back that were taken back, if the line is still the same."""
+def brought_again(entry: Entry) -> Entry | None:
+    """Give back the pending words that were taken back; None unless the line is again as it was."""
     before = entry.aside
     if before is None or before.base != entry.base:
-        return replace(entry, aside=None)
+        return None
     return replace(before, awaited=entry.awaited, sent=entry.sent, unreadable=entry.unreadable)
 
 
@@ -295,7 +296,7 @@ def due(entry: Entry) -> Edit | None:
     >>> due(edited(entry_of(("A4",)), 3, 3, "C5")) is None
     True
     >>> due(edited(entry_of(("A4",)), 3, 3, "C5 "))
-    Edit(start=1, stop=1, words=('C5',), replaced=(), first=1)
+    Edit(start=1, stop=1, words=('C5',), replaced=(), first=1, number=0)
     """
     if entry.awaited:
         return None
@@ -340,7 +341,7 @@ def handed_over(entry: Entry, edit: Edit, number: int) -> Entry:
     shift = len(edit.words) - (edit.stop - edit.start)
     items = [item if item is None or item < edit.stop else item + shift for item in entry.items]
     items[edit.first : edit.first + len(edit.words)] = range(edit.start, edit.start + len(edit.words))
-    return replace(entry, base=base, items=tuple(items), awaited=number, sent=edit)
+    return replace(entry, base=base, items=tuple(items), awaited=number, sent=replace(edit, number=number))
 
 
 def awaiting(entry: Entry, number: int) -> Entry:
@@ -369,18 +370,19 @@ def arrived(entry: Entry, tokens: Sequence[str], handled: int, refusals: Sequenc
         cursor have kept their places beside the words around them.
     """
     goal = tuple(tokens)
-    if entry.awaited and handled < entry.awaited:
-        if entry.sent is not None:
-            start, stop = min(entry.sent.start, len(goal)), min(entry.sent.stop, len(goal))
-            goal = goal[:start] + entry.sent.words + goal[stop:]
-        return _rebased(entry, goal)
-    if entry.awaited:
-        answer = next((refusal for refusal in refusals if refusal.number == entry.awaited), None)
-        if answer is not None and entry.sent is not None and entry.sent.words:
-            entry = _refused(entry, entry.sent, answer)
-        entry = replace(entry, awaited=0, sent=None)
+    sent = entry.sent
+    if sent is not None and handled < sent.number:
+        start, stop = min(sent.start, len(goal)), min(sent.stop, len(goal))
+        return _rebased(entry, goal[:start] + sent.words + goal[stop:])
+    if sent is not None:
+        answer = next((refusal for refusal in refusals if refusal.number == sent.number), None)
+        if answer is not None and sent.words:
+            entry = _refused(entry, sent, answer)
+        entry = replace(entry, sent=None)
+    if handled >= entry.awaited:
+        entry = replace(entry, awaited=0)
     entry = _rebased(entry, goal)
-    if entry.pressed and due(entry) is None:
+    if entry.pressed and not entry.awaited and due(entry) is None:
         entry = replace(entry, pressed=False)
     return entry
 

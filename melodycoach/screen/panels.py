@@ -64,13 +64,12 @@ def draw_verdict(view: ViewState, columns: int, signs: Signs) -> Line:
     return [(style, verdict)]
 
 
-def draw_now(view: ViewState, columns: int, signs: Signs) -> Line:
-    """Write what the last stretch sounds like; else what the keyboard hides; else whose theory it is."""
+def draw_now(view: ViewState, columns: int, signs: Signs, theory: bool) -> Line:
+    """Write what the last stretch sounds like, else what the keyboard hides, else the theory if wanted."""
     if view.now:
-        return [("class:now", cut(f"{signs.next} now: {view.now}", columns, signs.more))]
-    if view.keyboard_note:
-        return [("class:faint", cut(f"  {view.keyboard_note}", columns, signs.more))]
-    return [("class:faint", cut(f"  {theory_words(view)}", columns, signs.more))]
+        return [("class:now", cut(f"{signs.next} {view.now}", columns, signs.more))]
+    text = view.keyboard_note or (theory_words(view) if theory else "")
+    return [("class:faint", cut(f"  {text}", columns, signs.more))]
 
 
 def theory_words(view: ViewState) -> str:
@@ -153,62 +152,71 @@ def owed_title(view: ViewState, signs: Signs) -> tuple[str, str]:
 def draw_owed(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line]:
     """Draw the best step to play next, then all steps by need: owed, then heard.
 
-    With little room the headings go first, then written notes and keys of all but the best, then
-    the heard steps, of which a count stays in the title.
+    With little room the written notes and keys of all but the best go first, then the headings,
+    then steps: the least telling of those owed, and the oldest of those heard.
     """
     if rows <= 0:
         return []
+    if not view.owed or not (view.n_notes or view.is_target):
+        text = "owed steps will stand here"
+        if rows >= 4:
+            text = "the steps that mark the leading mode will stand here: which you owe, which are heard"
+        return [[("class:faint", row)] for row in wrap(text, columns)][:rows]
     owed, heard = split_owed(view)
-    if not view.owed:
-        return [[("class:faint", "nothing to show yet")]]
     if not owed:
-        lines = [[("class:heard", f"{signs.heard} every step of {view.in_view} is heard")]]
+        lines: list[Line] = [[("class:heard", f"{signs.heard} every step of {view.in_view} is heard")]]
         return (lines + [_heard(row, columns, signs) for row in heard])[:rows]
-    best = owed[0]
-    lines = _best(best, columns, signs)
-    grouped = _grouped(owed[1:], heard, columns, signs, 2)
+    best, others = owed[0], owed[1:]
+    if rows <= 2:
+        return _best_in_short(best, columns, rows, signs)
+    lines = _best(best, columns, signs)[:rows]
     for choice in (
-        grouped,
-        _grouped(owed[1:], heard, columns, signs, 1),
-        _listed(owed[1:], heard, columns, signs),
+        _grouped(others, heard, columns, signs, 2),
+        _grouped(others, heard, columns, signs, 1),
     ):
         if len(lines) + len(choice) <= rows:
             return lines + choice
-    left = _listed(owed[1:], heard, columns, signs)
     room = rows - len(lines)
-    if room <= 0:
-        return [_one_line(best, columns, signs)] if rows == 1 else lines[:rows]
-    if len(left) > room:
-        missing = len(left) - room + 1
-        left = [*left[: room - 1], [("class:faint", f"  {signs.more} {missing} more steps")]]
-    return lines + left
+    n_heard = min(len(heard), max(room // 3, room - len(others)))
+    lines += [_owed(row, columns, signs, f"{row.need} ") for row in others[: room - n_heard]]
+    return lines + [_heard(row, columns, signs) for row in heard[:n_heard]]
 
 
 def _best(row: OwedRow, columns: int, signs: Signs) -> list[Line]:
     """Draw the best owed step: what it is, its perdes, its written notes, the keys to press."""
-    gain = gain_words(row.gain_nats, signs)
-    head = f"{signs.next} play next: {row.kind} ({row.need})"
-    lines: list[Line] = [_spread([("class:next", head)], [("class:next", gain)], columns, signs)]
-    for text in wrap(" ".join(row.perdes), columns - 4)[:2]:
-        lines.append([("class:next", f"    {text}")])
-    written = "written " + " ".join(row.written)
-    keys = "keys " + " ".join(row.keys)
-    if not row.keys:
-        lines.append([("", cut(f"    {written}", columns, signs.more))])
-    elif width(written) + width(keys) + 7 <= columns:
-        lines.append([("", f"    {written}   {keys}")])
-    else:
-        lines.append([("", cut(f"    {written}", columns, signs.more))])
-        lines.append([("", cut(f"    {keys}", columns, signs.more))])
+    right = f"{row.need} {gain_words(row.gain_nats, signs)}"
+    head = f"{signs.next} play next: {row.kind}"
+    if width(head) + width(right) + 1 > columns:
+        head = f"{signs.next} next: {row.kind}"
+    lines = [_spread([("class:next", head)], [("class:next", right)], columns, signs)]
+    lines += [[("class:next", f"    {text}")] for text in wrap(" ".join(row.perdes), columns - 4)[:2]]
+    written, keys = " ".join(row.written), " ".join(row.keys)
+    if not keys:
+        return [*lines, [("", cut(f"    written {written}", columns, signs.more))]]
+    for text in (f"    written {written}   keys {keys}", f"    {written}   keys {keys}"):
+        if width(text) <= columns:
+            return [*lines, [("", text)]]
+    lines.append([("", cut(f"    written {written}", columns, signs.more))])
+    lines.append([("", cut(f"    keys {keys}", columns, signs.more))])
     return lines
 
 
-def _one_line(row: OwedRow, columns: int, signs: Signs) -> Line:
-    """Draw the best owed step where there is a single line for it."""
-    text = f"{signs.next} {row.kind}: {' '.join(row.perdes)}  {' '.join(row.keys or row.written)}"
-    if width(text) > columns:
-        text = f"{signs.next} {' '.join(row.perdes)}  {' '.join(row.keys or row.written)}"
-    return [("class:next", cut(text, columns, signs.more))]
+def _best_in_short(row: OwedRow, columns: int, rows: int, signs: Signs) -> list[Line]:
+    """Draw the best owed step in one line or two: its notes come before what it is."""
+    perdes, keys = " ".join(row.perdes), " ".join(row.keys or row.written)
+    notes = f"{perdes}   {keys}"
+    if rows == 2:
+        right = f"{row.need} {gain_words(row.gain_nats, signs)}"
+        head: Line = [("class:next", f"{signs.next} next: {row.kind}")]
+        shown = notes if width(notes) + 4 <= columns else perdes
+        return [
+            _spread(head, [("class:next", right)], columns, signs),
+            [("class:next", cut(f"    {shown}", columns, signs.more))],
+        ]
+    for text in (f"{row.kind}: {notes}", notes, perdes):
+        if width(text) + 2 <= columns:
+            break
+    return [[("class:next", cut(f"{signs.next} {text}", columns, signs.more))]]
 
 
 def _grouped(
@@ -216,8 +224,8 @@ def _grouped(
 ) -> list[Line]:
     """Draw steps under a heading for each need, with ``depth`` lines for an owed one."""
     lines: list[Line] = []
-    others = sorted({row.need for row in (*owed, *heard)} - set(NEEDS))
-    for need in (*NEEDS, *others):
+    unlisted = sorted({row.need for row in (*owed, *heard)} - set(NEEDS))
+    for need in (*NEEDS, *unlisted):
         group = [row for row in owed if row.need == need]
         done = [row for row in heard if row.need == need]
         if not group and not done:
@@ -231,28 +239,32 @@ def _grouped(
     return lines
 
 
-def _listed(owed: Sequence[OwedRow], heard: Sequence[OwedRow], columns: int, signs: Signs) -> list[Line]:
-    """Draw steps one line each, owed before heard."""
-    return [_owed(row, columns, signs) for row in owed] + [_heard(row, columns, signs) for row in heard]
+_SHORTEST_KIND = 12
+"""A kind that would be cut to less than this is left out."""
 
 
-def _owed(row: OwedRow, columns: int, signs: Signs) -> Line:
-    left: Line = [("class:owed", f"{signs.owed} {' '.join(row.perdes)}"), ("class:faint", f"  {row.kind}")]
-    return _spread(left, [("class:faint", gain_words(row.gain_nats, signs))], columns, signs)
+def _owed(row: OwedRow, columns: int, signs: Signs, need: str = "") -> Line:
+    gain = f"{need}{gain_words(row.gain_nats, signs)}"
+    return _step(row, f"{signs.owed} ", "class:owed", gain, columns, signs)
+
+
+def _heard(row: OwedRow, columns: int, signs: Signs) -> Line:
+    return _step(row, f"{signs.heard} ", "class:heard", f"note {row.heard_at}", columns, signs)
+
+
+def _step(row: OwedRow, sign: str, style: str, right: str, columns: int, signs: Signs) -> Line:
+    """Draw a step in one line: its notes, then as much of what it is as there is room for."""
+    notes = " ".join(row.perdes)
+    left: Line = [(style, sign), (style if style == "class:owed" else "", notes)]
+    room = columns - width(right) - 1 - width(notes) - 4
+    if room >= min(width(row.kind), _SHORTEST_KIND):
+        left.append(("class:faint", f"  {row.kind}"))
+    return _spread(left, [("class:faint", right)], columns, signs)
 
 
 def _notes(row: OwedRow, columns: int, signs: Signs) -> Line:
     keys = f"   keys {' '.join(row.keys)}" if row.keys else ""
     return [("class:faint", cut(f"    {' '.join(row.written)}{keys}", columns, signs.more))]
-
-
-def _heard(row: OwedRow, columns: int, signs: Signs) -> Line:
-    left: Line = [
-        ("class:heard", f"{signs.heard} "),
-        ("", " ".join(row.perdes)),
-        ("class:faint", f"  {row.kind}"),
-    ]
-    return _spread(left, [("class:faint", f"note {row.heard_at}")], columns, signs)
 
 
 def _spread(left: Line, right: Line, columns: int, signs: Signs) -> Line:
@@ -310,7 +322,7 @@ def draw_why(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Lin
 
 
 def draw_status(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line]:
-    """Write the newest warning, then input and tuning, then theory, then where the log goes."""
+    """Write the newest warning, then input and tuning, then the theory, then where the log goes."""
     if rows <= 0:
         return []
     lines: list[Line] = []
@@ -330,7 +342,7 @@ def draw_status(view: ViewState, columns: int, rows: int, signs: Signs) -> list[
         world, log = whole, ""
     else:
         log = status.log_line
-    for text in (world, theory_words(view) if view.now or view.keyboard_note else "", log):
+    for text in (world, theory_words(view), log):
         if text and len(lines) < rows:
             lines.append([("class:status", cut(text, columns, signs.more))])
     return lines[:rows]

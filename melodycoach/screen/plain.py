@@ -38,7 +38,7 @@ def plain_line(view: ViewState, previous: ViewState | None) -> str:
         parts += _off(view, previous)
         parts.append(_next(view))
     if view.now and (previous is None or view.now != previous.now):
-        parts.append(f"now: {view.now}")
+        parts.append(view.now)
     parts.append(_settings(view, previous))
     if view.status.warning and (previous is None or view.status.warning != previous.status.warning):
         parts.append(f"warning: {view.status.warning}")

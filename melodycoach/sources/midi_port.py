@@ -169,7 +169,9 @@ class LivePort:
 
     Nothing is opened before the first `poll`. Without a wanted name the only keyboard there is
     gets opened; with several the player is asked (`choose`); with none the first that appears is
-    taken. A lost one is waited for by name and opened again, with a new client.
+    taken. A lost one is waited for by name and opened again, with a new client. ``n_openings``
+    counts how often a port was opened, ``n_overflows`` how often so much came at once that notes may
+    be missing.
 
     Parameters
     ----------
@@ -185,6 +187,7 @@ class LivePort:
         self, clock: Callable[[], float], wanted: str = "", system: MidiSystem | None = None
     ) -> None:
         self.n_overflows = 0
+        self.n_openings = 0
         self._clock = clock
         self._wanted = wanted
         self._system: MidiSystem = RtMidiSystem() if system is None else system
@@ -203,7 +206,8 @@ class LivePort:
     def poll(self) -> list[tuple[bytes, float]]:
         """Give the messages since the last call, oldest first, each with its time; watch the port.
 
-        When the status turns from ``OPEN`` to another, keys may be left sounding: tell the tracker
+        The messages are all of one opening. When the status turns from ``OPEN`` to another, or
+        `n_openings` has grown, keys may be left sounding: decode what came, then tell the tracker
         to start over.
         """
         messages = self._read()
@@ -303,6 +307,7 @@ class LivePort:
             self._status = PortStatus(PortState.REFUSED, port.name, self._wanted, reason=str(error))
             return
         self._port = port
+        self.n_openings += 1
         self._last_at_s = None
         self._empty_at_s = self._clock()
         self._status = PortStatus(PortState.OPEN, port.name, self._wanted)

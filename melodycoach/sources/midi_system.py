@@ -5,9 +5,8 @@ Inputs are read as queues and never through a callback: closing a port under a c
 
 The rules for JACK, each found the hard way: a closed input cannot be opened again, so each opening
 makes a new one; when the server dies its clients notice nothing, and once a new client has been
-made after that, touching an old one crashes; a client that was tried for in vain leaves later ones
-deaf. So the server is watched from outside, all clients of a dead one are deleted before a new one
-is made, and none is made while no server listens.
+made after that, touching an old one crashes. So the server is watched from outside, and all
+clients of a dead one are deleted before a new one is made.
 """
 
 from __future__ import annotations
@@ -143,8 +142,6 @@ def jack_server() -> str | None:
         The identity of the socket that the server listens on; empty when none listens; None where
         this system cannot tell.
     """
-    if "JACK_PROMISCUOUS_SERVER" in os.environ:  # shared by all users, under another name
-        return None
     try:
         lines = _UNIX_SOCKETS.read_text(errors="replace").splitlines()
     except OSError:  # not Linux
@@ -152,6 +149,11 @@ def jack_server() -> str | None:
     ending = f"/jack_{os.environ.get('JACK_DEFAULT_SERVER', 'default')}_{os.getuid()}_0"
     found = (line.split(maxsplit=7) for line in lines if line.endswith(ending))
     return ",".join(sorted(fields[6] for fields in found if fields[3] == _LISTENS))
+
+
+def _delete(client: Any) -> None:
+    with _hushed():
+        client.delete()
 
 
 class _QueuedInput:
@@ -221,7 +223,7 @@ class RtMidiSystem:
                 self._spare_by_system[system] = spare
                 if system == "JACK":
                     self._jack_server = jack_server() or None
-            with _hushed():
+            with _hushed(), contextlib.suppress(*_FAILURES):
                 found += [PortName(name, system) for name in spare.get_ports()]
         return tuple(found)
 
@@ -254,11 +256,15 @@ class RtMidiSystem:
         try:
             client.ignore_types(sysex=False, timing=True, active_sense=True)
             with _hushed():
-                client.open_port(client.get_ports().index(port.name), name="in")
+                names = client.get_ports()
+                if port.name in names:
+                    client.open_port(names.index(port.name), name="in")
         except _FAILURES as error:
-            with _hushed():
-                client.delete()
+            _delete(client)
             raise PortError(f"{port.name!r}: {error}") from error
+        if port.name not in names:
+            _delete(client)
+            raise PortError(f"{port.name!r}: it has just gone")
         opened = _QueuedInput(client)
         if port.system == "JACK":
             self._open_in_jack.append(opened)
@@ -266,17 +272,14 @@ class RtMidiSystem:
 
     def close(self) -> None:
         """Delete the spare clients. Inputs are closed by whoever opened them."""
-        with _hushed():
-            for spare in self._spare_by_system.values():
-                spare.delete()
+        for spare in self._spare_by_system.values():
+            _delete(spare)
         self._spare_by_system.clear()
 
     def _client(self, system: str, name: str) -> Any:
-        if system == "JACK" and jack_server() == "":
-            return None
-        api = self._api_by_system[system]
         with _hushed():
             try:
+                api = self._api_by_system[system]
                 return self._rtmidi.MidiIn(api, name=name, queue_size_limit=QUEUE_LIMIT)
             except _FAILURES:  # no sequencer, no server
                 return None
@@ -288,8 +291,7 @@ class RtMidiSystem:
         for opened in self._open_in_jack:
             opened.close()
         self._open_in_jack.clear()
-        with _hushed():
-            self._spare_by_system.pop("JACK").delete()
+        _delete(self._spare_by_system.pop("JACK"))
 
 
 def list_ports() -> PortList:

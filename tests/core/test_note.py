@@ -103,3 +103,26 @@ def test_what_follows_changes_only_the_last_note_heard_before(items: list[Item],
 def test_items_cannot_be_changed():
     with pytest.raises(FrozenInstanceError):
         typed().beats = 2.0  # type: ignore[misc]
+
+
+def evenly(lengths_s: list[float]) -> list[Note]:
+    notes, onset_s = [], 0.0
+    for length_s in lengths_s:
+        notes.append(Note(6900.0, onset_s, length_s, InputKind.TUNED))
+        onset_s += length_s
+    return notes
+
+
+def test_the_notes_of_a_slow_exercise_do_not_all_rest_but_a_longer_one_does() -> None:
+    heard = hear(evenly([1.0, 1.0, 1.1, 0.9, 1.0, 1.6, 1.0]))
+    assert [one.rests for one in heard] == [True, False, False, False, False, True, False]
+
+
+def test_staccato_at_an_even_pace_does_not_rest() -> None:
+    line = [Note(6900.0, 0.8 * number, 0.3, InputKind.KEYS) for number in range(6)]
+    assert [one.rests for one in hear(line)] == [True, False, False, False, False, False]
+
+
+def test_notes_heard_already_set_the_pace_and_are_not_given_again() -> None:
+    line = evenly([1.0] * 12)
+    assert hear(line)[-2:] == hear(line[-10:], n_known=8)

@@ -245,6 +245,7 @@ def test_a_keyboard_replugged_between_two_looks_is_opened_anew() -> None:
     machine.ports = [KEYS_AGAIN]
     assert machine.after(1.0, port) == PortStatus(PortState.OPEN, KEYS_AGAIN.name)
     assert machine.wires[0].closed
+    assert port.n_openings == 2
 
 
 def test_another_keyboard_does_not_take_the_place_of_a_lost_one_unasked() -> None:
@@ -262,6 +263,7 @@ def test_choosing_closes_the_one_before() -> None:
     port.choose("pad")
     port.poll()
     assert [wire.closed for wire in machine.wires] == [True, False]
+    assert port.n_openings == 2
 
 
 def test_a_keyboard_that_refuses_is_tried_again() -> None:
@@ -394,9 +396,9 @@ def test_every_state_was_put_in_words() -> None:
 
 
 def test_loading_the_module_does_not_load_rtmidi() -> None:
-    code = "import sys, melodycoach.sources.midi_port; print('rtmidi' in sys.modules or '_rtmidi' in sys.modules)"
+    code = "import sys, melodycoach.sources.midi_port; print({'rtmidi', '_rtmidi'} & set(sys.modules))"
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
-    assert done.stdout == "False\n"
+    assert done.stdout == "set()\n"
 
 
 # over JACK
@@ -488,7 +490,7 @@ def test_an_unplugged_keyboard_is_seen_within_2_s_and_heard_again_within_2_s(
     port, tracker = LivePort(time.monotonic), PitchTracker()
     wait_for(port, PortState.OPEN)
     keyboard.play("90 45 40")
-    hear(port, tracker, 1)
+    assert len(hear(port, tracker, 1)) == 1
     keyboard.unplug()
     assert wait_for(port, PortState.LOST) < 2.0
     assert [type(event) for event in tracker.start_over(0.0)] == [NoteOff]
@@ -529,7 +531,7 @@ print("20 times")
 @pytest.mark.jack
 def test_a_port_closed_while_notes_arrive_never_crashes(plug_in: Callable[[str], object]) -> None:
     keyboard = plug_in("flood")
-    keyboard.send(*["90 45 40", "90 45 00", "wait 0.001"] * 15_000)
+    keyboard.send(*["90 45 40", "90 45 00", "wait 0.002"] * 3_000)
     done = subprocess.run(
         [sys.executable, "-X", "faulthandler", "-c", CLOSE_WHILE_PLAYING],
         capture_output=True,
@@ -578,6 +580,7 @@ def test_a_server_that_dies_and_comes_back_is_outlived(
                 said = listener.stdout.readline().strip()
             assert said == "open"
             jack_server.stop(kill=kill)
+            keyboard.unplug()  # a client that outlives its server disturbs the next one
             assert listener.stdout.readline() == "lost\n"
             jack_server.start()
             keyboard = plug_in("saz")

@@ -59,6 +59,7 @@ def test_the_final_stands_under_the_key_signature_wherever_that_is_written():
 
 HEADERS = "title, mode, final, tempo or key"
 NEITHER = f"is neither a note nor a pitch name, expected {WANTED};"
+MISPLACED = "is a header, expected one before the first note only; put it at the top of the file"
 NO_TEMPO = "is no tempo, expected beats a minute, from 10 to 500; mend it or delete it"
 NO_PITCH = "is no pitch alone, expected one without length, such as 'A4';"
 SAYS_NOTHING = "says nothing, expected a value after the colon; mend it or delete it"
@@ -96,7 +97,7 @@ NO_MARK = "is no mark of a key signature, expected letters with what alters them
         ),
         (
             "A4\n tempo: 6",
-            "2:2: 'tempo: 6' is a header, expected one before the first note only; put it at the top of the file",
+            f"2:2: 'tempo: 6' {MISPLACED}",
         ),
     ],
 )

@@ -1,0 +1,105 @@
+"""Changes of mode: what counts as noticed, as named, as a false alarm."""
+
+import math
+import random
+
+import pytest
+
+from melodycoach.core import seams
+from melodycoach.core.model import build_model
+from melodycoach.core.note import Heard, InputKind
+from melodycoach.core.seams import Crossing, count_changes, cross, seam_figures
+from melodycoach.sources.pack_file import load_pack
+
+PACK = load_pack("makam")
+MODEL = build_model(PACK, PACK.restrict(("rast", "hicaz", "saba")))
+NOTE = Heard(6900, InputKind.TYPED, 0.35, False, False)
+
+
+def script(monkeypatch: pytest.MonkeyPatch, announced: list[int | None]) -> None:
+    """Let the filter announce what is written down, after 0, 1, 2, … notes."""
+    monkeypatch.setattr(seams, "start", lambda model: 0)
+    monkeypatch.setattr(seams, "advance", lambda model, state, note: state + 1)
+    monkeypatch.setattr(seams, "announced", lambda model, state: announced[state])
+
+
+@pytest.mark.parametrize(
+    ("announced", "crossing"),
+    [
+        # two notes before the seam, four after it; the mode after the seam is 2
+        ([None, 0, 1, 1, 1, 2, 2], Crossing(1, 3, 3)),
+        ([None, 0, 1, 1, 0, 0, 2], Crossing(1, 2, 4)),  # left for a wrong mode first
+        ([None, 0, 1, 1, 1, 1, 1], Crossing(1, None, None)),
+        ([None, 0, 1, 0, 0, 0, 0], Crossing(1, 1, None)),
+        ([None, None, None, None, 2, 2, 2], Crossing(None, 2, 2)),  # nothing announced at the seam
+        ([None, 2, 2, 2, 2, 2, 2], Crossing(2, None, 1)),  # wrong before, so never left
+    ],
+)
+def test_a_delay_counts_the_notes_after_the_seam(
+    monkeypatch: pytest.MonkeyPatch, announced: list[int | None], crossing: Crossing
+) -> None:
+    script(monkeypatch, announced)
+    assert cross(MODEL, [NOTE] * 2, [NOTE] * 4, 2) == crossing
+
+
+@pytest.mark.parametrize(
+    ("announced", "changes"),
+    [
+        ([None, None, 1, 1, 1], 0),  # the first announcement is no change
+        ([None, 0, 1, 1, 0], 2),
+        ([None, 0, None, 0, 1], 1),
+        ([None, 0, None, 1, 1], 1),
+        ([None, None, None, None, None], 0),
+    ],
+)
+def test_a_change_is_one_announced_mode_in_place_of_another(
+    monkeypatch: pytest.MonkeyPatch, announced: list[int | None], changes: int
+) -> None:
+    script(monkeypatch, announced)
+    assert count_changes(MODEL, [NOTE] * 4) == changes
+
+
+def test_the_figures_of_some_lines() -> None:
+    # delays 10, 20, 40 and one line not noticed: median 20, noticed 3/4
+    # the first mode (0) was announced at the seam in the first three, the second named in two of those
+    lines = [(0, Crossing(0, 10, 12)), (0, Crossing(0, 40, 50)), (0, Crossing(0, None, None))]
+    lines.append((0, Crossing(1, 20, 30)))
+    # 3 changes in 120 + 180 notes: 1 in 100
+    found = seam_figures(iter(lines), iter([(120, 2), (180, 1)]), seed=7)
+    assert (found.n_seams, found.noticed, found.median_delay) == (4, 3 / 4, 20)
+    assert (found.right_before, found.named) == (3 / 4, 2 / 3)
+    assert (found.n_excerpts, found.false_alarms_per_100, found.seed) == (2, 1.0, 7)
+
+
+def test_no_lines_give_figures_that_are_no_numbers() -> None:
+    found = seam_figures([], [])
+    for figure in (found.noticed, found.median_delay, found.right_before, found.named):
+        assert math.isnan(figure)
+    assert math.isnan(found.false_alarms_per_100)
+
+
+def wander(mode: str, length: int, seed: int) -> list[Heard]:
+    chooser = random.Random(seed)
+    found = PACK.find(mode)
+    return [
+        Heard(
+            PACK.system.units_to_cents(found.final_units + chooser.choice(found.rising)),
+            InputKind.TYPED,
+            0.35,
+            False,
+            False,
+        )
+        for _ in range(length)
+    ]
+
+
+def test_on_the_real_filter_two_scales_that_differ_are_told_apart() -> None:
+    # rast on G4 and saba on A4 share few degrees: common practice
+    before, after = wander("rast", 60, 1), wander("saba", 60, 2)
+    places = {mode.slug: i for i, mode in enumerate(MODEL.modes)}
+    found = cross(MODEL, before, after, places["saba"])
+    assert found.announced == places["rast"]
+    assert found.named_after is not None
+    assert found.named_after <= 20
+    assert count_changes(MODEL, before) == 0
+    assert count_changes(MODEL, before + after) == 1
