@@ -24,7 +24,7 @@ from melodycoach.coach import TURN_S, Clock, Coach, Player, read_final
 from melodycoach.core.event import PitchReading
 from melodycoach.core.session import begin
 from melodycoach.demo import PACK as DEMO_PACK
-from melodycoach.errors import MelodycoachError
+from melodycoach.errors import MelodycoachError, PortError
 from melodycoach.players import DemoKeyboard, Keyboard, Replay
 from melodycoach.screen.plain import plain_line
 from melodycoach.sources.event_json import LogHeader
@@ -128,7 +128,10 @@ def _prepare(settings: Settings, clock: Clock) -> tuple[SessionState, Player, Ev
     if recorded is not None and settings.replay is not None:
         return session, Replay(recorded, settings.replay), None
     if settings.port is not None:
-        find_port(list_ports().inputs, settings.port)
+        ports = list_ports()
+        if ports.problem:
+            raise PortError(f"port {settings.port!r}: {ports.problem}")
+        find_port(ports.inputs, settings.port)
     player: Player = Keyboard(clock, settings.port or "")
     if settings.demo:
         assert isinstance(player, Keyboard)

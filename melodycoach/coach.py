@@ -10,7 +10,7 @@ from __future__ import annotations
 import time
 from collections import deque
 from dataclasses import replace
-from itertools import pairwise
+from itertools import pairwise, zip_longest
 from pathlib import Path
 from queue import Empty, SimpleQueue
 from statistics import median
@@ -31,7 +31,7 @@ from melodycoach.core.event import (
     Undone,
 )
 from melodycoach.core.note import Item, Mark, Note
-from melodycoach.core.session import PHRASE_GAP_S, Line, SessionState, apply
+from melodycoach.core.session import Line, SessionState, apply
 from melodycoach.errors import MelodycoachError, NoteTextError, StorageError, UnknownNameError
 from melodycoach.screen.command import (
     Command,
@@ -213,13 +213,11 @@ class Coach:
 
     def _tick(self, now_s: float) -> None:
         """Let the clock be seen while a note sounds or a silence may still become something."""
-        line = self.session.line.last_note
-        if now_s - self._ticked_s < TICK_S or line is None or line.beats is not None:
-            return
-        silent_s = now_s - line.onset_s - line.duration_s
-        if self.session.sounding is not None or silent_s <= PHRASE_GAP_S + 2 * TICK_S:
+        session = self.session
+        may_end = session.played_last and session.line.items[-1] is not Mark.PHRASE_END
+        if now_s - self._ticked_s >= TICK_S and (session.sounding is not None or may_end):
             self._ticked_s = now_s
-            self.session = apply(self.session, TimePassed(now_s))
+            self.session = apply(session, TimePassed(now_s))
 
     # --- commands ---------------------------------------------------------------------------
 
@@ -385,10 +383,11 @@ def entry_items(line: Line) -> tuple[Item, ...]:
     """
     shown: list[Item] = []
     heard = iter(line.heard)
-    for place, item in enumerate(line.items):
+    for item, after in zip_longest(line.items, line.items[1:]):
         if isinstance(item, Note):
-            rests = next(heard).rests and not any(isinstance(after, Mark) for after in line.items[place + 1 : place + 2])
-            shown.append(item if item.beats is not None else replace(item, beats=2.0 if rests else 1.0))
+            marked = isinstance(after, Mark)
+            beats = 2.0 if next(heard).rests and not marked else 1.0
+            shown.append(item if item.beats is not None else replace(item, beats=beats))
         else:
             shown.append(item)
     return tuple(shown)

@@ -36,18 +36,19 @@ class Keyboard:
     def __init__(self, clock: Callable[[], float], wanted: str = "") -> None:
         self.port = LivePort(clock, wanted)
         self._tracker = PitchTracker()
-        self._clock = clock
-        self._was_open = False
+        self._has_played = False
+        self._n_openings = 0
 
     def poll(self, now_s: float) -> Sequence[Event]:
         """Give what has been played since the last call."""
-        events = [
-            event for message, at_s in self.port.poll() for event in self._tracker.decode(message, at_s)
-        ]
-        is_open = self.port.status.state is PortState.OPEN
-        if self._was_open and not is_open:
-            events += self._tracker.start_over(max(now_s, self._clock()))
-        self._was_open = is_open
+        played = self.port.poll()
+        events: list[Event] = []
+        if self.port.n_openings != self._n_openings or self.port.status.state is not PortState.OPEN:
+            events += self._tracker.start_over(now_s)  # no note-off comes from a port that has gone
+            self._n_openings = self.port.n_openings
+        for message, at_s in played:
+            events += self._tracker.decode(message, at_s)
+        self._has_played = self._has_played or bool(events)
         return events
 
     @property
@@ -57,7 +58,10 @@ class Keyboard:
 
     def input_line(self, now_s: float) -> str:
         """Say what is being listened to."""
-        return port_sentence(self.port.status)
+        sentence = port_sentence(self.port.status)
+        if self._tracker.n_ignored_notes and not self._has_played:
+            sentence += "; notes on channel 10 are taken for drums and not heard: send on another channel"
+        return sentence
 
     def tuning_line(self) -> str:
         """Say which tuning is believed, and why."""

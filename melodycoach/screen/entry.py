@@ -117,6 +117,8 @@ def spans(entry: Entry) -> list[Span]:
 
 def complaint(entry: Entry) -> str:
     """Say what is wrong with the unreadable word nearest to the cursor; empty if all can be read."""
+    if not entry.unreadable:
+        return ""
     refused = dict(entry.unreadable)
     wrong = [span for span in spans(entry) if span.state == "unreadable"]
     if not wrong:

@@ -80,6 +80,8 @@ class _Channel:
     coarse: int = COARSE_CENTRE  # 0 to 127
     parameter: tuple[int, int] = _NO_PARAMETER  # coarse and fine byte of the selected RPN
     cents_by_key: dict[int, float] = field(default_factory=dict)  # the keys that sound
+    n_bends: int = 0  # bend messages since the last note-on
+    is_tuned: bool = False  # a single bend before a note has shown that bends tune, here
 
     def bend_cents(self) -> float:
         return self.bend * self.range_cents / CENTRE
@@ -87,11 +89,14 @@ class _Channel:
     def fine_cents(self) -> float:
         return (self.fine - CENTRE) * 100 / CENTRE
 
+    def offset_cents(self) -> float:
+        return self.bend_cents() + self.fine_cents()
+
     def sound(self, key: int) -> tuple[float, InputKind]:
         """Say where a key sounds and how sure that is."""
         plain = 100.0 * (key + self.coarse - COARSE_CENTRE)
-        offset = self.bend_cents() + self.fine_cents()
-        if abs(offset) < PLAIN_CENTS:
+        offset = self.offset_cents()
+        if abs(offset) < PLAIN_CENTS and not self.is_tuned:
             return plain, InputKind.KEYS
         return plain + offset, InputKind.TUNED
 
@@ -103,6 +108,8 @@ class PitchTracker:
 
     - A key whose bend and fine tuning come to less than one cent gives a `KEYS` note on a multiple
       of 100 cents: it stands for every pitch near it. Any other gives a `TUNED` note.
+    - A single bend message between two note-ons tunes the second one (a wheel that a hand moves sends
+      many). From then on every key of that channel is `TUNED`, unbent ones too.
     - A bend or a tuning that changes while keys sound moves them, each with one `PitchMoved`.
     - A key struck again before it was released ends and begins anew.
     - Channel 10 is taken for drums and left out, and so are the notes of any channel in
@@ -169,6 +176,7 @@ class PitchTracker:
             return self._control(number, channel, message[1], message[2], at_s)
         if kind == _BEND:
             channel.bend = message[1] + 128 * message[2] - CENTRE
+            channel.n_bends += 1
             return self._moved(number, channel, at_s)
         return ()  # pressure and programs say nothing of pitch
 
@@ -217,6 +225,9 @@ class PitchTracker:
             self.n_ignored_notes += 1
             return ()
         ended = self._note_off(number, channel, key, at_s)
+        tuned_now = channel.n_bends == 1 and abs(channel.offset_cents()) >= PLAIN_CENTS
+        channel.is_tuned = channel.is_tuned or tuned_now
+        channel.n_bends = 0
         cents, kind = channel.sound(key)
         channel.cents_by_key[key] = cents
         return (*ended, NoteOn(at_s, self._voice(number, key), cents, kind))
@@ -254,7 +265,7 @@ class PitchTracker:
             channel.parameter = _NO_PARAMETER
         elif control == _RESET_CONTROLLERS:  # the bend range stays
             channel.parameter = _NO_PARAMETER
-            channel.bend = 0
+            channel.bend, channel.is_tuned = 0, False
             return self._moved(number, channel, at_s)
         elif control == _ALL_SOUND_OFF or control >= _ALL_NOTES_OFF:  # 124-127 end notes too
             return self._all_off(number, channel, at_s)

@@ -169,6 +169,11 @@ def test_a_degree_is_told_by_what_it_does_in_both_modes(one: Evidence, a: str, b
     assert say(one, a, b).endswith(text)
 
 
+YET_TEXT = (
+    "3 notes lie where Muhayyer lives; Hüseynî lives round hüseynî, yet at a height that suits Hüseynî more"
+)
+
+
 def register(in_a: bool, in_b: bool, nats: float, n_notes: int = 3) -> Evidence:
     return Evidence(Factor.REGISTER, nats, n_notes, (1,), register=RegisterKey(in_a, in_b))
 
@@ -183,8 +188,7 @@ def register(in_a: bool, in_b: bool, nats: float, n_notes: int = 3) -> Evidence:
         (register(False, True, -1, 1), "1 note lies where Muhayyer lives; Hüseynî lives round hüseynî"),
         (
             register(False, True, 1),
-            "3 notes lie where Muhayyer lives; Hüseynî lives round hüseynî, yet at a height that suits"
-            " Hüseynî more",
+            YET_TEXT,
         ),
         (register(True, True, 1), "3 notes lie where both live, at a height that suits Hüseynî more"),
         (

@@ -334,3 +334,20 @@ def test_bends_before_and_during_a_note_agree(key: int, bend: int, semitones: in
     last = events[-1]
     assert isinstance(last, NoteOn | PitchMoved)
     assert last.pitch_cents == before
+
+
+def test_a_single_bend_before_a_note_shows_that_the_keys_of_this_channel_are_tuned() -> None:
+    tracker = PitchTracker()
+    tracker.decode(bytes.fromhex("E0 61 38"), 0.0)
+    tracker.decode(bytes.fromhex("90 47 40"), 0.1)
+    tracker.decode(bytes.fromhex("E0 00 40"), 0.4)
+    [unbent] = tracker.decode(bytes.fromhex("90 45 40"), 0.5)
+    assert unbent == NoteOn(0.5, 69, 6900.0, InputKind.TUNED)
+
+
+def test_a_wheel_that_a_hand_has_moved_leaves_the_keys_plain() -> None:
+    tracker = PitchTracker()
+    for value in ("61 38", "00 3A", "00 40"):
+        tracker.decode(bytes.fromhex(f"E0 {value}"), 0.0)
+    [note] = tracker.decode(bytes.fromhex("90 45 40"), 0.5)
+    assert note == NoteOn(0.5, 69, 6900.0, InputKind.KEYS)
