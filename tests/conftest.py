@@ -15,6 +15,8 @@ import pytest
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
 
+    from pseudo_terminal import PseudoTerminal
+
 KEYBOARD = Path(__file__).with_name("keyboard.py")
 DEADLINE_S = 10.0
 
@@ -145,3 +147,20 @@ def plug_in(jack_server: JackServer) -> Iterator[Callable[[str], Keyboard]]:
     yield plug
     for keyboard in plugged:
         keyboard.unplug()
+
+
+@pytest.fixture
+def open_terminal(tmp_path: Path) -> Iterator[Callable[..., PseudoTerminal]]:
+    """Give a function that runs the program on a pseudo-terminal, at home in a folder of its own."""
+    pytest.importorskip("pty", reason="pseudo-terminals need a Unix system")
+    from pseudo_terminal import PseudoTerminal
+
+    opened: list[PseudoTerminal] = []
+
+    def open_one(*arguments: str, **options: object) -> PseudoTerminal:
+        opened.append(PseudoTerminal(*arguments, home=tmp_path, **options))  # type: ignore[arg-type]
+        return opened[-1]
+
+    yield open_one
+    for terminal in opened:
+        terminal.close()

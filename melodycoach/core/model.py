@@ -164,7 +164,8 @@ def build_model(
         No modes, a final that does not go with the reading, an order below 1.
     """
     parameters = parameters or ScoringParameters()
-    counts = counts or Counts()
+    known = {} if counts is None else counts.by_mode
+    counts = Counts({mode.id: known[mode.id] for mode in modes if mode.id in known})
     if not modes:
         raise ValueError("no modes, expected at least one")
     if (reading is PitchReading.FINAL) != (final_cents is not None):

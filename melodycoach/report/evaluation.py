@@ -53,12 +53,12 @@ def protocol(evaluation: Evaluation) -> tuple[str, ...]:
     )
     shorter = f"Melodies that end before a checkpoint ({ends_sooner}) count there with their last answer."
     closing = "The answer after all notes counts the end of the melody as the end of a phrase."
-    compete = f"The {len(evaluation.mode_ids)} modes of pack {evaluation.pack_id!r} that compete"
+    compete = f"{len(evaluation.mode_ids)} modes of pack {evaluation.pack_id!r} compete"
     finals = "A final is found when it is within a good comma of the label, in any octave."
     lines = [
         "Each melody is heard note by note, by the same scorer as a live line; nothing is learned from it.",
         f"Input: {evaluation.kind}. Final: {_READING[evaluation.reading]}.",
-        f"{compete} are equally likely at first. The answer is the likeliest one, decided or not.",
+        f"{compete}; the answer is the likeliest one, decided or not.",
         shorter if ends_sooner else "",
         closing if evaluation.closing else closing.replace("counts", "does not count"),
         "Macro-F1 is the mean over the modes that occur as labels.",

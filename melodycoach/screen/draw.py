@@ -8,6 +8,7 @@ Styles are class names; every meaning has a sign or a word of its own besides.
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from melodycoach.screen.contour import draw_contour, mending, off_words
@@ -92,7 +93,10 @@ def picture(
     columns, rows = max(columns, 1), max(rows, 1)
     signs = ASCII if ascii_only else UNICODE
     shown = entry_of(view.tokens) if entry is None else entry
-    layout = lay_out(columns, rows, question_rows(question), bool(complaint(shown)))
+    wrong = complaint(shown)
+    layout = lay_out(columns, rows, question_rows(question), bool(wrong))
+    if view.status.warning and view.status.warning in {wrong, question.complaint if question else ""}:
+        view = replace(view, status=replace(view.status, warning=""))  # it is said beside its cause
     match layout.form:
         case Form.SENTENCE:
             above = _sentence(view, columns, rows - layout.question - layout.entry)

@@ -8,10 +8,11 @@ Rows break between words, never inside one that would fit. Row and column count 
 from __future__ import annotations
 
 import re
+from bisect import bisect_right
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from melodycoach.screen.entry import Entry, complaint, spans
+from melodycoach.screen.entry import Entry, Span, complaint, spans
 from melodycoach.screen.question import Question, offered
 from melodycoach.screen.text import Line, character_width, cut, to_ascii, width
 
@@ -23,7 +24,6 @@ if TYPE_CHECKING:
 _WORD_AND_SPACES = re.compile(r"\s+|\S+\s*")
 _MARGIN = 2
 _STYLES = {
-    "taken": "class:entry",
     "pending": "class:entry.pending",
     "unreadable": "class:entry.unreadable",
 }
@@ -87,12 +87,6 @@ def moved_up_or_down(text: str, cursor: int, columns: int, step: int) -> int:
     return min(lo + cursor - rows[here][0], last)
 
 
-def entry_rows(entry: Entry, columns: int) -> int:
-    """Count the rows that the whole entry takes, with what is wrong with it below."""
-    wrong = 1 if complaint(entry) else 0
-    return len(break_text(entry.text, columns - _MARGIN)) + wrong
-
-
 def draw_entry(entry: Entry, columns: int, rows: int, signs: Signs) -> Drawn:
     """Draw the part of the entry round the cursor; pending words are underlined.
 
@@ -109,25 +103,31 @@ def draw_entry(entry: Entry, columns: int, rows: int, signs: Signs) -> Drawn:
     ranges = break_text(entry.text, columns - _MARGIN)
     here = row_of(ranges, entry.cursor)
     top = max(0, min(here - rows // 2, len(ranges) - rows))
+    shown = ranges[top : top + rows]
     words = spans(entry)
     lines: list[Line] = []
-    for place, (lo, hi) in enumerate(ranges[top : top + rows], start=top):
-        older = top > 0 and place == top
-        margin = signs.more if older else signs.entry if place == 0 else " "
-        line: Line = [("class:key", pad_margin(margin, columns))]
-        at = lo
-        for span in words:
-            if span.hi <= lo or span.lo >= hi:
-                continue
-            start, stop = max(span.lo, lo), min(span.hi, hi)
-            if start > at:
-                line.append(("", entry.text[at:start]))
-            line.append((_STYLES[span.state], entry.text[start:stop]))
-            at = stop
-        lines.append(line)
-    lo = ranges[here][0]
-    column = _MARGIN + width(entry.text[lo : entry.cursor])
+    for place, (lo, hi) in enumerate(shown, start=top):
+        hidden = (place == top > 0) or (place == top + rows - 1 < len(ranges) - 1)
+        margin = signs.more if hidden else signs.entry if place == 0 else " "
+        lines.append([("class:key", pad_margin(margin, columns)), *_words(entry.text, words, lo, hi)])
+    column = _MARGIN + width(entry.text[ranges[here][0] : entry.cursor])
     return Drawn([*lines, *below], here - top, min(column, columns - 1))
+
+
+def _words(text: str, words: Sequence[Span], lo: int, hi: int) -> Line:
+    """Write the characters ``lo`` to ``hi``, each word in the style of its state."""
+    line: Line = []
+    at = lo
+    first = bisect_right(words, lo, key=lambda span: span.hi)
+    for span in words[first:]:
+        if span.lo >= hi:
+            break
+        if span.state == "taken":
+            continue
+        start, stop = max(span.lo, lo), min(span.hi, hi)
+        line += [("class:entry", text[at:start]), (_STYLES[span.state], text[start:stop])]
+        at = stop
+    return [*line, ("class:entry", text[at:hi])]
 
 
 def pad_margin(sign: str, columns: int) -> str:

@@ -271,9 +271,9 @@ def not_a_region(value: Any, here: Here) -> Breaches:
 def played_not_numbers(value: Any, here: Here) -> Breaches:
     """Find an entry of `played` that is not a whole degree with a number."""
     for degree, played in value.items():
-        number = isinstance(played, int | float) and not isinstance(played, bool)
-        if not number or not re.fullmatch(r"-?\d{1,3}", degree):
-            yield degree, shorten(played)
+        whole = re.fullmatch(r"-?\d{1,3}", degree)
+        if not whole or isinstance(played, bool) or not isinstance(played, int | float):
+            yield degree if whole else shorten(degree), shorten(played)
 
 
 def played_far_off(value: Any, here: Here) -> Breaches:

@@ -182,8 +182,8 @@ def _parse(path: Path) -> dict[str, Any]:
     except UnicodeDecodeError as error:
         text = f"{path.name}: byte {error.start} is not UTF-8 text; save the file as UTF-8"
         raise PackError(f"{path}: not a mode pack, expected a TOML file", (text,)) from error
-    except tomllib.TOMLDecodeError as error:
-        said = str(error)
+    except (ValueError, RecursionError) as error:  # tomllib lets more through than its own TOMLDecodeError
+        said = "nested too deeply" if isinstance(error, RecursionError) else str(error)
         text = f"{path.name}: {said[:1].lower()}{said[1:]}"
         raise PackError(f"{path}: not a mode pack, expected a TOML file", (text,)) from error
 

@@ -4,9 +4,8 @@ Conventions
 -----------
 A pack passes four gates. *Syntax* is the business of `tomllib`. The other three are in `RULES`:
 for each kind of TOML table its rules in the order *shape* (keys and types), *range* (each value by
-itself), *sense* (values against each other). A rule is tried only where it can be: with the shape
-of every key that it looks at in order, and a rule of sense with the range of its own key too. All
-faults are collected.
+itself), *sense* (values against each other). A rule is tried only where it can be, with the shape
+of every key that it reads in order. All faults are collected.
 """
 
 from __future__ import annotations
@@ -31,6 +30,8 @@ FACTS = (
     "course", "opening", "signature", "genera", "steps", "neighbours",
 )  # fmt: skip
 """What a mode's sources may be given for."""
+
+_LONGEST_LABEL = 40
 
 
 class Gate(IntEnum):
@@ -129,12 +130,15 @@ def _unique_id(kind: str) -> tuple[Rule, ...]:
 def _degrees(*keys: str) -> Iterator[Rule]:
     for key in keys:
         yield _range(key, checks.outside_compass, f"{key} has {{0}}, expected degrees from {{1}} to {{2}}")
+
+
+def _once(*keys: str) -> Iterator[Rule]:
+    for key in keys:
         yield _range(key, checks.repeated, f"{key} has {{0}} more than once")
 
 
 def _function(*keys: str) -> Iterator[Rule]:
     for key in keys:
-        yield from _degrees(key)
         yield _sense(key, checks.no_degree_of_mode, f"{key} names {_NO_DEGREE}", *DEGREE_LISTS)
 
 
@@ -190,6 +194,7 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
         *_shown("name", "also"),
         *_unique_id("mode"),
         *_degrees(*DEGREE_LISTS),
+        *_once("below", "above", "passing", "dominants", "leading", "suspended"),
         _range("final", checks.unreadable_note, "final is {0!r}, expected a written pitch such as 'F#4'"),
         _range("course", checks.not_one_of(Course), "course is {0!r}; {1}"),
         _range("confidence", checks.not_one_of(CONFIDENCES), "confidence is {0!r}; {1}"),
@@ -205,8 +210,7 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
         _sense("below", checks.not_below_final, "below has {0}, expected degrees below 0 (the final)"),
         _sense("above", checks.not_above_scale, "above has {0}, expected degrees above {1}", "rising"),
         _sense("leading", checks.not_below_final, "leading has {0}, expected degrees below 0 (the final)"),
-        *_function("dominants", "leading", "suspended"),
-        _sense("played", checks.no_degree_of_mode, f"played names {_NO_DEGREE}", *DEGREE_LISTS),
+        *_function("dominants", "leading", "suspended", "played"),
         _sense("opening", checks.outside_mode, "opening has {0}, the mode spans {1} to {2}", *DEGREE_LISTS),
         _sense("signature", checks.letter_signed_twice, "signature has two signs for {0}"),
         _sense("name", checks.taken_name, "name {0!r} finds another mode too; give each its own", "also"),
@@ -273,7 +277,6 @@ def faults_in(data: Table, where: str) -> list[str]:
 
 def _walk(kind: str, here: Here, where: str, misshapen_around: frozenset[str]) -> Iterator[str]:
     misshapen: set[str] = set()
-    out_of_range: set[str] = set()
     rules = RULES[kind]
     keys = {rule.key for rule in rules}
     for key in here.item:
@@ -285,11 +288,9 @@ def _walk(kind: str, here: Here, where: str, misshapen_around: frozenset[str]) -
             continue
         if not misshapen.isdisjoint((rule.key, *rule.needs)) or not misshapen_around.isdisjoint(rule.needs):
             continue
-        if rule.gate is Gate.SENSE and rule.key in out_of_range:
-            continue
         found = [rule.sentence.format(*breach) for breach in rule.test(value, here)]
-        if found and rule.gate is not Gate.SENSE:
-            (misshapen if rule.gate is Gate.SHAPE else out_of_range).add(rule.key)
+        if found and rule.gate is Gate.SHAPE:
+            misshapen.add(rule.key)
         yield from (f"{where}{sentence}" for sentence in found)
     for key in _CHILDREN.get(kind, ()):
         yield from _walk_children(key, here, where, frozenset(f".{one}" for one in misshapen))
@@ -303,7 +304,8 @@ def _walk_children(kind: str, here: Here, where: str, misshapen: frozenset[str])
         for place, item in enumerate(inside):
             if isinstance(item, dict):
                 name = item.get("id", item.get("mode", item.get("name")))
-                label = f'{kind}[{place}] "{name}"' if isinstance(name, str) else f"{kind}[{place}]"
+                shown = isinstance(name, str) and name.isprintable() and len(name) <= _LONGEST_LABEL
+                label = f'{kind}[{place}] "{name}"' if shown else f"{kind}[{place}]"
                 yield from _walk(kind, Here(item, here.item, here.known), f"{where}{label}: ", misshapen)
 
 

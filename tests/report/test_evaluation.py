@@ -53,8 +53,8 @@ How it was measured
   Each melody is heard note by note, by the same scorer as a live line;
   nothing is learned from it.
   Input: typed. Final: each mode stands on its own written final.
-  The 4 modes of pack 'own' that compete are equally likely at first. The
-  answer is the likeliest one, decided or not.
+  4 modes of pack 'own' compete; the answer is the likeliest one, decided or
+  not.
   The answer after all notes counts the end of the melody as the end of a
   phrase.
   Macro-F1 is the mean over the modes that occur as labels.
@@ -118,10 +118,7 @@ def test_the_protocol_says_what_was_left_out_and_what_was_short() -> None:
     assert found == (
         "Each melody is heard note by note, by the same scorer as a live line; nothing is learned from it.",
         "Input: recorded. Final: every mode may stand on every pitch.",
-        (
-            "The 4 modes of pack 'own' that compete are equally likely at first. "
-            "The answer is the likeliest one, decided or not."
-        ),
+        "4 modes of pack 'own' compete; the answer is the likeliest one, decided or not.",
         (
             "Melodies that end before a checkpoint (1 before note 20, 3 before note 40) count there with "
             "their last answer."

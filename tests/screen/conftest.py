@@ -53,9 +53,7 @@ def notes_of(text: str) -> tuple[LineNote, ...]:
         mend = "hüseynî" if off else ""
         rests = ":" in word
         notes.append(
-            LineNote(
-                len(notes) + 1, units, name, written, 0.7 if rests else 0.3, rests, off, mend, item=item
-            )
+            LineNote(len(notes) + 1, units, name, written, 0.7 if rests else 0.3, rests, off, mend, item=item)
         )
     return tuple(notes)
 

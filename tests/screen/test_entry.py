@@ -437,7 +437,9 @@ def test_text_and_line_agree_once_everything_is_answered(
 WORDS = st.sampled_from(["A4", "B4-1", "C5", "x", ",", "."])
 
 
-@given(st.lists(st.one_of(WORDS, st.sampled_from(["play D5", "play E5", "carry out", "answer"])), max_size=40))
+@given(
+    st.lists(st.one_of(WORDS, st.sampled_from(["play D5", "play E5", "carry out", "answer"])), max_size=40)
+)
 def test_nothing_typed_or_played_is_lost_and_each_keeps_its_order(moments: list[str]) -> None:
     line = Line()
     entry = entry_of(())
