@@ -164,3 +164,22 @@ def open_terminal(tmp_path: Path) -> Iterator[Callable[..., PseudoTerminal]]:
     yield open_one
     for terminal in opened:
         terminal.close()
+
+
+def pytest_addoption(parser: pytest.Parser) -> None:
+    """Add the option that rewrites golden files instead of comparing with them."""
+    parser.addoption("--update-golden", action="store_true", help="rewrite the golden files; read the diff")
+
+
+@pytest.fixture
+def check_golden(request: pytest.FixtureRequest) -> Callable[[Path, str], None]:
+    """Give a function that compares a text with a golden file, or rewrites the file when asked to."""
+
+    def check(path: Path, text: str) -> None:
+        if request.config.getoption("--update-golden"):
+            path.parent.mkdir(exist_ok=True)
+            path.write_text(text, encoding="utf-8")
+        assert path.exists(), f"no golden file {path.name}; pytest --update-golden writes it"
+        assert text == path.read_text(encoding="utf-8")
+
+    return check

@@ -87,16 +87,7 @@ def empty_line(model: ScoringModel) -> Line:
 
 def rewrite(model: ScoringModel, line: Line, items: Sequence[Item]) -> Line:
     """Give the line with other items; what stays the same from the start is not scored again."""
-    heard = hear(items)
-    kept = 0
-    for old, new in zip(line.heard, heard, strict=False):
-        if old != new:
-            break
-        kept += 1
-    states = list(line.states[: kept + 1])
-    for note in heard[kept:]:
-        states.append(advance(model, states[-1], note))
-    return Line(tuple(items), heard, tuple(states), _last_note_at(items))
+    return _scored(model, line, tuple(items), hear(items), 0, _last_note_at(items))
 
 
 def extend(model: ScoringModel, line: Line, *items: Item) -> Line:
@@ -105,17 +96,29 @@ def extend(model: ScoringModel, line: Line, *items: Item) -> Line:
 
 
 def _with_tail(model: ScoringModel, line: Line, items: tuple[Item, ...]) -> Line:
-    """Score again from the last note of ``line`` on; all items before it are unchanged."""
-    done = max(len(line.heard) - 1, 0)
+    """Hear again from the last note of ``line`` on; all items before it are unchanged."""
     first, n_known = max(line.last_note_at, 0), 0
     while first > 0 and n_known < PACE_NOTES:
         first -= 1
         n_known += isinstance(items[first], Note)
-    tail = hear(items[first:], n_known)
-    states = list(line.states[done : done + 1])
-    for note in tail:
+    done = max(len(line.heard) - 1, 0)
+    return _scored(
+        model, line, items, hear(items[first:], n_known), done, first + _last_note_at(items[first:])
+    )
+
+
+def _scored(
+    model: ScoringModel, line: Line, items: tuple[Item, ...], tail: tuple[Heard, ...], done: int, last: int
+) -> Line:
+    """Score the notes after the first ``done``, from the first one on that is heard differently."""
+    kept = done
+    for old, new in zip(line.heard[done:], tail, strict=False):
+        if old != new:
+            break
+        kept += 1
+    states = list(line.states[done : kept + 1])
+    for note in tail[kept - done :]:
         states.append(advance(model, states[-1], note))
-    last = first + _last_note_at(items[first:])
     return Line(items, line.heard[:done] + tail, line.states[:done] + tuple(states), last)
 
 

@@ -15,7 +15,6 @@ from melodycoach.screen.contour import draw_contour, mending, off_words
 from melodycoach.screen.entry import Entry, complaint, entry_of, item_at
 from melodycoach.screen.entry_lines import (
     Drawn,
-    ascii_lines,
     draw_entry,
     draw_question,
     question_rows,
@@ -36,7 +35,7 @@ from melodycoach.screen.panels import (
 )
 from melodycoach.screen.plain import plain_line
 from melodycoach.screen.signs import ASCII, UNICODE
-from melodycoach.screen.text import Line, cut, fit, wrap
+from melodycoach.screen.text import Line, cut, fit, tidy_lines, wrap
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -116,9 +115,8 @@ def picture(
     else:
         row, column = len(above) - 1, columns - 1
     lines = [*above, *asked.lines, *_filled(typed.lines, layout.entry), *below]
-    if ascii_only:
-        lines = ascii_lines(lines)
-    fitted = [fit(line, columns, signs.more) for line in _filled(lines, rows)]
+    lines = tidy_lines(_filled(lines, rows), ascii_only)
+    fitted = [fit(line, columns, signs.more) for line in lines]
     return Drawn(fitted, min(max(row, 0), rows - 1), min(column, columns - 1))
 
 
@@ -284,9 +282,7 @@ def draw_help(
     more = signs.more if first + room < len(lines) else ""
     foot: Line = [("class:key", "Esc"), ("class:hint", f" back to the line   arrows move the help {more}")]
     shown = [*_filled(lines[first : first + room], room), foot]
-    if ascii_only:
-        shown = ascii_lines(shown)
-    return [fit(line, columns, signs.more) for line in shown]
+    return [fit(line, columns, signs.more) for line in tidy_lines(shown, ascii_only)]
 
 
 def help_lines(columns: int, signs: Signs, theory: str = "") -> list[Line]:

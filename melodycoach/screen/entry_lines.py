@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING
 
 from melodycoach.screen.entry import Entry, Span, complaint, spans
 from melodycoach.screen.question import Question, offered
-from melodycoach.screen.text import Line, character_width, cut, to_ascii, width
+from melodycoach.screen.text import Line, character_width, cut, width
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -162,7 +162,7 @@ def _below(question: Question, columns: int, signs: Signs) -> Line:
     if question.complaint:
         return [("class:warning", cut(f"{signs.warning} {question.complaint}", columns, signs.more))]
     if question.awaited:
-        return [("class:faint", cut("  …", columns, signs.more))]
+        return [("class:faint", cut(f"  {signs.more}", columns, signs.more))]
     choices = offered(question)
     if not choices:
         return [("class:faint", cut(f"  {question.advice}", columns, signs.more))]
@@ -178,8 +178,3 @@ def _below(question: Question, columns: int, signs: Signs) -> Line:
         line.append(("class:choice.picked" if picked else "class:choice", text))
         room -= width(text)
     return line
-
-
-def ascii_lines(lines: Sequence[Line]) -> list[Line]:
-    """Write lines with plain letters only."""
-    return [[(style, to_ascii(text)) for style, text in line] for line in lines]

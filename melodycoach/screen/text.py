@@ -73,16 +73,16 @@ def tidy(text: str) -> str:
     >>> tidy("USB\tKeys\x1b[0m\n2")
     'USB Keys?[0m 2'
     """
-    if text.isascii() and text.isprintable():
-        return text
-    composed = unicodedata.normalize("NFC", text)
-    return "".join(_tidy_character(character) for character in composed)
+    if not unicodedata.is_normalized("NFC", text):
+        text = unicodedata.normalize("NFC", text)
+    return text if text.isprintable() else "".join(map(_tidy_character, text))
 
 
 def _tidy_character(character: str) -> str:
     if character.isspace():
         return " "
-    return "?" if unicodedata.category(character) in _UNPRINTABLE else character
+    category = unicodedata.category(character)
+    return "" if category == "Cf" else "?" if category in _UNPRINTABLE else character
 
 
 def to_ascii(text: str) -> str:
@@ -201,6 +201,14 @@ def fit(line: Iterable[Fragment], columns: int, sign: str = "…", style: str = 
     if room > 0:
         fitted.append((style, " " * room))
     return fitted
+
+
+def tidy_lines(lines: Iterable[Line], ascii_only: bool = False) -> list[Line]:
+    """Make lines fit to be shown, with plain letters only where that is asked for."""
+    tidied = [[(style, tidy(text)) for style, text in line] for line in lines]
+    if not ascii_only:
+        return tidied
+    return [[(style, to_ascii(text)) for style, text in line] for line in tidied]
 
 
 def plain_text(line: Iterable[Fragment]) -> str:

@@ -9,7 +9,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from melodycoach.core.event import PitchReading
-from melodycoach.core.evidence import Tally, tally
+from melodycoach.core.evidence import Tally, placed_final, tally
 from melodycoach.core.function import Function, function_of, trade_words
 from melodycoach.core.keyboard import keyboard_note
 from melodycoach.core.note import InputKind, Mark, Note
@@ -127,17 +127,17 @@ def _hypothesis_in_view(session: SessionState, lean: Leaning) -> tuple[Mode, int
     That is the target, where it competes, and else the leading mode. A target that does not
     compete has no hypothesis.
     """
-    model = session.model
+    model, line = session.model, session.line
     if session.target is None:
         mode = model.modes[model.mode_index[lean.best]]
-        return mode, int(model.final_units[lean.best]), lean.best, lean.rival
+        return mode, placed_final(model, lean.best, line.heard), lean.best, lean.rival
     candidates = [i for i, index in enumerate(model.mode_index) if model.modes[index].id == session.target.id]
     if not candidates:
         return session.target, session.target.final_units, None, None
-    nats = posterior(model, session.line.states[-1])
+    nats = posterior(model, line.states[-1])
     best = max(candidates, key=lambda i: nats[i])
     rival = lean.rival if model.mode_index[lean.best] == model.mode_index[best] else lean.best
-    return session.target, int(model.final_units[best]), best, rival
+    return session.target, placed_final(model, best, line.heard), best, rival
 
 
 def _verdict(model: ScoringModel, state: ScorerState, lean: Leaning) -> str:
