@@ -253,6 +253,50 @@ def _add_evaluate(commands: Any) -> None:
     command.add_argument("--json", action="store_true", help="print JSON")
 
 
+def _evaluate(options: argparse.Namespace) -> int:
+    from melodycoach.core.event import PitchReading
+    from melodycoach.core.note import InputKind
+    from melodycoach.measure import evaluate_collection
+    from melodycoach.report.evaluation import evaluation_json, evaluation_text
+
+    progress = _Progress()
+    evaluation = evaluate_collection(
+        Path(options.collection),
+        _pack(options.pack),
+        _names(options.only),
+        PitchReading(options.reading),
+        InputKind(options.input),
+        strict=options.strict,
+        on_fault=progress.complain,
+        progress=progress.show,
+        seams=options.seams,
+        owed=options.owed,
+        seed=options.seed,
+    )
+    progress.clear()
+    _print_result(options.json, evaluation_json(evaluation), lambda: evaluation_text(evaluation, _columns()))
+    return DONE
+
+
+class _Progress:
+    """Says on the terminal how far a long work has come; silent where there is none."""
+
+    def __init__(self) -> None:
+        self._on = sys.stderr.isatty()
+
+    def show(self, done: int) -> None:
+        if self._on:
+            print(f"\r{done} melodies", end="", file=sys.stderr, flush=True)
+
+    def clear(self) -> None:
+        if self._on:
+            print("\r\033[K", end="", file=sys.stderr, flush=True)
+
+    def complain(self, fault: str) -> None:
+        self.clear()
+        print(f"melodycoach: {fault}", file=sys.stderr)
+
+
 def _count(text: str) -> int:
     value = int(text)
     if not 0 <= value <= 100_000:
@@ -282,7 +326,3 @@ def _columns() -> int:
 
 def _print_result(as_json: bool, data: object, text: Callable[[], str]) -> None:
     print(json.dumps(data, ensure_ascii=False, indent=2) if as_json else text())
-
-
-def _evaluate(options: argparse.Namespace) -> int:
-    raise NotImplementedError

@@ -25,7 +25,15 @@ from melodycoach.core.model import build_model
 from melodycoach.core.note import InputKind, Mark, hear
 from melodycoach.core.owed_trial import TRIAL_NOTES, OwedFigures, OwedTrial, owed_figures, try_owed
 from melodycoach.core.parameters import ScoringParameters
-from melodycoach.core.seams import SIDE_NOTES, Crossing, SeamFigures, count_changes, cross, seam_figures
+from melodycoach.core.seams import (
+    SIDE_NOTES,
+    Crossing,
+    Excerpt,
+    SeamFigures,
+    cross,
+    hear_excerpt,
+    seam_figures,
+)
 from melodycoach.core.tally import tally
 from melodycoach.errors import CollectionError, MelodycoachError, UnknownModeError, UsageError
 from melodycoach.sources.collection import Melody, read_collection
@@ -292,8 +300,8 @@ def _cross(bench: Bench, task: tuple[int, tuple[Heard, ...], int, tuple[Heard, .
     return first, cross(bench.model(), before, after, second)
 
 
-def _excerpt(bench: Bench, task: tuple[Heard, ...]) -> tuple[int, int]:
-    return len(task), count_changes(bench.model(), task)
+def _excerpt(bench: Bench, task: tuple[Heard, ...]) -> Excerpt:
+    return hear_excerpt(bench.model(), task)
 
 
 def _measure_owed(

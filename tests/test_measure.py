@@ -14,6 +14,7 @@ from melodycoach import measure
 from melodycoach.core.evaluation import Evaluation
 from melodycoach.core.event import PitchReading
 from melodycoach.core.note import InputKind
+from melodycoach.core.seams import Excerpt
 from melodycoach.errors import CollectionError, MelodycoachError, UnknownModeError, UsageError
 from melodycoach.measure import Bench, evaluate_collection, spread
 from melodycoach.report.evaluation import evaluation_json
@@ -220,7 +221,7 @@ def test_what_a_helper_process_does_is_done_with_its_own_bench(monkeypatch: pyte
     monkeypatch.setattr(measure, "_bench", None)
     monkeypatch.setattr(measure.signal, "signal", lambda number, action: None)
     measure._settle_in(bench)
-    assert measure._do(measure._excerpt, [(), ()]) == [(0, 0), (0, 0)]
+    assert measure._do(measure._excerpt, [(), ()]) == [Excerpt(0, 0, False)] * 2
 
 
 def test_read_only_mappings_travel() -> None:

@@ -160,7 +160,7 @@ class ScoringParameters:
     length_power: float = 0.75
     longest_s: float = 1.0
     memory_mass: float = 50.0
-    temper: float = 3.6
+    temper: float = 3.8
     temper_weight: float = 1.0
     temper_fall: float = 0.35
     register_main: float = 2.7

@@ -1,12 +1,13 @@
 """How soon a change of mode is noticed: lines spliced from two melodies, and unspliced ones.
 
 The *seam* is where the notes of one melody end and those of another, of another mode, begin. What
-counts is the mode that the change filter announces: whether and when the announcement changes
-after the seam, and how often it changes where there is no seam.
+counts is the mode that the change filter announces: whether and when another one takes its place
+after the seam, and how often that happens where there is no seam.
 
 Conventions
 -----------
-A delay is the number of notes heard after the seam, the announcing one included. Melodies may
+A delay is the number of notes heard after the seam, the announcing one included. A first
+announcement takes no other's place: it is neither a change noticed nor a false alarm. Melodies may
 contain real modulations, so the false alarms are an upper bound.
 """
 
@@ -38,7 +39,7 @@ class Crossing:
     announced
         Place of the mode announced at the seam, or None.
     left_after
-        Delay until another mode was announced than at the seam, or None.
+        Delay until another mode took the place of the one announced at the seam, or None.
     named_after
         Delay until the mode after the seam was announced, or None.
     """
@@ -58,24 +59,44 @@ def cross(model: ScoringModel, before: Sequence[Heard], after: Sequence[Heard], 
     for delay, note in enumerate(after, 1):
         state = advance(model, state, note)
         now = announced(model, state)
-        if left_after is None and now is not None and now != at_seam:
+        if left_after is None and None not in (at_seam, now) and now != at_seam:
             left_after = delay
         if named_after is None and now == label_after:
             named_after = delay
     return Crossing(at_seam, left_after, named_after)
 
 
-def count_changes(model: ScoringModel, notes: Sequence[Heard]) -> int:
-    """Count how often one announced mode is replaced by another in a line without a seam."""
+@dataclass(frozen=True, slots=True)
+class Excerpt:
+    """One line without a seam.
+
+    Parameters
+    ----------
+    n_notes
+        Its length.
+    n_changes
+        How often one announced mode took another's place.
+    changed_late
+        One did after `SIDE_NOTES` notes: a seam there would have been called noticed.
+    """
+
+    n_notes: int
+    n_changes: int
+    changed_late: bool
+
+
+def hear_excerpt(model: ScoringModel, notes: Sequence[Heard]) -> Excerpt:
+    """Hear a line that has no seam."""
     state = start(model)
-    changes = 0
-    last = announced(model, state)
-    for note in notes:
+    changed_at: list[int] = []
+    last: int | None = None
+    for number, note in enumerate(notes, 1):
         state = advance(model, state, note)
         now = announced(model, state)
-        changes += last is not None and now is not None and now != last
+        if None not in (last, now) and now != last:
+            changed_at.append(number)
         last = last if now is None else now
-    return changes
+    return Excerpt(len(notes), len(changed_at), any(number > SIDE_NOTES for number in changed_at))
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,7 +108,7 @@ class SeamFigures:
     n_seams
         Spliced lines.
     n_noticed
-        Those where the announcement changed within `SIDE_NOTES` after the seam.
+        Those where another mode took the place of the announced one within `SIDE_NOTES`.
     median_delay
         Of those, in notes; NaN when there are none.
     n_right_before
@@ -96,6 +117,8 @@ class SeamFigures:
         Of those, how many had the second mode announced within `SIDE_NOTES`.
     n_excerpts, n_excerpt_notes, n_false_alarms
         Unspliced excerpts, their notes, and the changes announced in them.
+    n_changed_late
+        Excerpts with a change in their second half: what `n_noticed` is to be held against.
     seed
         Of the random choice of lines.
     """
@@ -108,6 +131,7 @@ class SeamFigures:
     n_excerpts: int
     n_excerpt_notes: int
     n_false_alarms: int
+    n_changed_late: int
     seed: int = 0
 
     @property
@@ -126,6 +150,11 @@ class SeamFigures:
         return _share(self.n_named, self.n_right_before)
 
     @property
+    def noticed_by_chance(self) -> float:
+        """Share of lines without a seam that would have been called noticed."""
+        return _share(self.n_changed_late, self.n_excerpts)
+
+    @property
     def false_alarms_per_100(self) -> float:
         """Changes announced in 100 notes without a seam."""
         return 100 * _share(self.n_false_alarms, self.n_excerpt_notes)
@@ -136,7 +165,7 @@ def _share(part: int, whole: int) -> float:
 
 
 def seam_figures(
-    crossings: Iterable[tuple[int, Crossing]], changes: Iterable[tuple[int, int]], seed: int = 0
+    crossings: Iterable[tuple[int, Crossing]], excerpts: Iterable[Excerpt], seed: int = 0
 ) -> SeamFigures:
     """Add up spliced lines and unspliced excerpts.
 
@@ -144,12 +173,12 @@ def seam_figures(
     ----------
     crossings
         The place of the mode before the seam, and what was heard.
-    changes
-        For each excerpt its number of notes and of changes.
+    excerpts
+        The lines without a seam.
     seed
         Kept with the figures.
     """
-    lines, excerpts = tuple(crossings), tuple(changes)
+    lines, unspliced = tuple(crossings), tuple(excerpts)
     delays = [line.left_after for _, line in lines if line.left_after is not None]
     right = [line for label, line in lines if line.announced == label]
     return SeamFigures(
@@ -158,8 +187,9 @@ def seam_figures(
         median_delay=float(median(delays)) if delays else math.nan,
         n_right_before=len(right),
         n_named=sum(line.named_after is not None for line in right),
-        n_excerpts=len(excerpts),
-        n_excerpt_notes=sum(n_notes for n_notes, _ in excerpts),
-        n_false_alarms=sum(n_changes for _, n_changes in excerpts),
+        n_excerpts=len(unspliced),
+        n_excerpt_notes=sum(excerpt.n_notes for excerpt in unspliced),
+        n_false_alarms=sum(excerpt.n_changes for excerpt in unspliced),
+        n_changed_late=sum(excerpt.changed_late for excerpt in unspliced),
         seed=seed,
     )

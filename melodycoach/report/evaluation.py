@@ -133,6 +133,7 @@ def _seams_json(seams: SeamFigures) -> dict[str, Any]:
         "n": seams.n_seams,
         "seed": seams.seed,
         "noticed": _plain(seams.noticed),
+        "noticed_by_chance": _plain(seams.noticed_by_chance),
         "median_delay_notes": _plain(seams.median_delay),
         "right_before": _plain(seams.right_before),
         "named": _plain(seams.named),
@@ -294,6 +295,7 @@ def _seams_text(seams: SeamFigures, columns: int) -> str:
     )
     rows = (
         ("seams noticed", _field(seams.noticed)),
+        ("noticed where there is none", _field(seams.noticed_by_chance)),
         ("median delay, notes", "–" if math.isnan(seams.median_delay) else f"{seams.median_delay:g}"),
         ("first mode named at the seam", _field(seams.right_before)),
         ("… and then the second one", _field(seams.named)),

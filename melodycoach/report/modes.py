@@ -226,7 +226,8 @@ def _sources(data: dict[str, Any], width: int) -> list[str]:
         for source in sources:
             facts_by_title.setdefault(source["title"], []).append(_FACT_NAMES.get(fact, fact))
     lines = _labelled("theory", data["theory"], width)
-    lines += _labelled("confidence", _CONFIDENCE.get(data["confidence"], data["confidence"]), width)
+    if facts_by_title:
+        lines += _labelled("confidence", _CONFIDENCE[data["confidence"]], width)
     for title, facts in facts_by_title.items():
         lines += _wrapped(f"{title} [{', '.join(facts)}]", width, "  - ", "    ")
     return [*lines, "", *_wrapped(data["caution"], width)]

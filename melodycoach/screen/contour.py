@@ -265,11 +265,12 @@ def mending(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line
 
 
 def off_words(note: LineNote) -> str:
-    """Say which note is off the mode, why, and what mends it.
+    """Say which note is off the mode, what mends it, and what is wrong with it.
 
     >>> from melodycoach.screen.view import LineNote
-    >>> off_words(LineNote(7, 35, "acem", "F5", 0.3, False, "not in rising Hüseynî", "eviç"))
-    '7 acem: not in rising Hüseynî; eviç mends it'
+    >>> off_words(LineNote(7, 35, "acem", "F5", 0.3, False, "not in Rast, 4 commas below eviç", "eviç"))
+    '7 acem: eviç mends it (not in Rast, 4 commas below eviç)'
     """
-    mend = f"; {note.mend} mends it" if note.mend else ""
-    return f"{note.number} {note.name}: {note.off_mode}{mend}"
+    if not note.mend:
+        return f"{note.number} {note.name}: {note.off_mode}"
+    return f"{note.number} {note.name}: {note.mend} mends it ({note.off_mode})"

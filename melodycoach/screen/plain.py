@@ -86,7 +86,7 @@ def _heard(view: ViewState, previous: ViewState | None) -> list[str]:
     """Name the characteristic steps that the new notes completed."""
     before = previous.n_notes if previous is not None else view.n_notes - 1
     return [
-        f"heard {row.kind} {' '.join(row.perdes)}"
+        f"heard {row.kind}, {' '.join(row.perdes)}"
         for row in view.owed
         if row.heard_at is not None and before < row.heard_at <= view.n_notes
     ]
@@ -107,7 +107,7 @@ def _next(view: ViewState) -> str:
     if not owed or not view.n_notes:
         return ""
     best = max(owed, key=lambda row: row.gain_nats)
-    return f"next: {best.kind} {' '.join(best.perdes)}"
+    return f"next: {best.kind}, {' '.join(best.perdes)}"
 
 
 def _settings(view: ViewState, previous: ViewState | None) -> str:

@@ -8,7 +8,7 @@ import pytest
 from melodycoach.core import seams
 from melodycoach.core.model import build_model
 from melodycoach.core.note import Heard, InputKind
-from melodycoach.core.seams import Crossing, count_changes, cross, seam_figures
+from melodycoach.core.seams import Crossing, Excerpt, cross, hear_excerpt, seam_figures
 from melodycoach.sources.pack_file import load_pack
 
 PACK = load_pack("makam")
@@ -31,7 +31,8 @@ def script(monkeypatch: pytest.MonkeyPatch, announced: list[int | None]) -> None
         ([None, 0, 1, 1, 0, 0, 2], Crossing(1, 2, 4)),  # left for a wrong mode first
         ([None, 0, 1, 1, 1, 1, 1], Crossing(1, None, None)),
         ([None, 0, 1, 0, 0, 0, 0], Crossing(1, 1, None)),
-        ([None, None, None, None, 2, 2, 2], Crossing(None, 2, 2)),  # nothing announced at the seam
+        ([None, None, None, None, 2, 2, 2], Crossing(None, None, 2)),  # nothing announced at the seam
+        ([None, 0, 1, None, None, 2, 2], Crossing(1, 3, 3)),  # silence leaves nothing
         ([None, 2, 2, 2, 2, 2, 2], Crossing(2, None, 1)),  # wrong before, so never left
     ],
 )
@@ -43,20 +44,24 @@ def test_a_delay_counts_the_notes_after_the_seam(
 
 
 @pytest.mark.parametrize(
-    ("announced", "changes"),
+    ("announced", "changes", "late"),
     [
-        ([None, None, 1, 1, 1], 0),  # the first announcement is no change
-        ([None, 0, 1, 1, 0], 2),
-        ([None, 0, None, 0, 1], 1),
-        ([None, 0, None, 1, 1], 1),
-        ([None, None, None, None, None], 0),
+        # a seam would stand after two notes of the four
+        ([None, None, 1, 1, 1], 0, False),  # the first announcement is no change
+        ([None, 0, 1, 1, 0], 2, True),
+        ([None, 0, 1, 1, 1], 1, False),
+        ([None, 0, None, 0, 1], 1, True),
+        ([None, 0, None, 1, 1], 1, True),
+        ([None, None, None, None, 2], 0, False),
+        ([None, None, None, None, None], 0, False),
     ],
 )
 def test_a_change_is_one_announced_mode_in_place_of_another(
-    monkeypatch: pytest.MonkeyPatch, announced: list[int | None], changes: int
+    monkeypatch: pytest.MonkeyPatch, announced: list[int | None], changes: int, late: bool
 ) -> None:
     script(monkeypatch, announced)
-    assert count_changes(MODEL, [NOTE] * 4) == changes
+    monkeypatch.setattr(seams, "SIDE_NOTES", 2)
+    assert hear_excerpt(MODEL, [NOTE] * 4) == Excerpt(4, changes, late)
 
 
 def test_the_figures_of_some_lines() -> None:
@@ -65,10 +70,11 @@ def test_the_figures_of_some_lines() -> None:
     lines = [(0, Crossing(0, 10, 12)), (0, Crossing(0, 40, 50)), (0, Crossing(0, None, None))]
     lines.append((0, Crossing(1, 20, 30)))
     # 3 changes in 120 + 180 notes: 1 in 100
-    found = seam_figures(iter(lines), iter([(120, 2), (180, 1)]), seed=7)
+    found = seam_figures(iter(lines), iter([Excerpt(120, 2, False), Excerpt(180, 1, True)]), seed=7)
     assert (found.n_seams, found.noticed, found.median_delay) == (4, 3 / 4, 20)
     assert (found.right_before, found.named) == (3 / 4, 2 / 3)
-    assert (found.n_excerpts, found.false_alarms_per_100, found.seed) == (2, 1.0, 7)
+    assert (found.n_excerpts, found.false_alarms_per_100, found.noticed_by_chance) == (2, 1.0, 0.5)
+    assert found.seed == 7
 
 
 def test_no_lines_give_figures_that_are_no_numbers() -> None:
@@ -76,6 +82,7 @@ def test_no_lines_give_figures_that_are_no_numbers() -> None:
     for figure in (found.noticed, found.median_delay, found.right_before, found.named):
         assert math.isnan(figure)
     assert math.isnan(found.false_alarms_per_100)
+    assert math.isnan(found.noticed_by_chance)
 
 
 def wander(mode: str, length: int, seed: int) -> list[Heard]:
@@ -101,5 +108,5 @@ def test_on_the_real_filter_two_scales_that_differ_are_told_apart() -> None:
     assert found.announced == places["rast"]
     assert found.named_after is not None
     assert found.named_after <= 20
-    assert count_changes(MODEL, before) == 0
-    assert count_changes(MODEL, before + after) == 1
+    assert hear_excerpt(MODEL, before) == Excerpt(60, 0, False)
+    assert hear_excerpt(MODEL, before + after) == Excerpt(120, 1, True)

@@ -186,6 +186,7 @@ SEAMS = SeamFigures(
     n_excerpts=8,
     n_excerpt_notes=960,
     n_false_alarms=6,
+    n_changed_late=2,
     seed=2,
 )
 OWED = OwedFigures(n=1, n_nothing_owed=0, step_nats=1.2, walk_nats=0.3, walk_beaten=0.875, seed=2)
@@ -198,6 +199,7 @@ def test_changes_of_mode_and_owed_steps_are_reported_when_they_were_measured() -
         "n": 8,
         "seed": 2,
         "noticed": 0.75,
+        "noticed_by_chance": 0.25,
         "median_delay_notes": 20.5,
         "right_before": 0.5,
         "named": 0.75,
@@ -221,6 +223,7 @@ Change of mode
   excerpts of 120 notes without a seam (seed 2). Melodies may change mode
   themselves, so the false alarms are an upper bound.
 seams noticed                      0.750
+noticed where there is none        0.250
 median delay, notes                 20.5
 first mode named at the seam       0.500
 … and then the second one          0.750

@@ -389,3 +389,9 @@ def test_a_mode_is_found_by_any_of_its_names_in_any_spelling() -> None:
     for one in pack.modes:
         for text in (one.id, one.slug, one.name, one.name.upper(), fold_name(one.name), *one.also):
             assert pack.find(text) is one
+
+
+def test_every_source_and_family_in_the_pack_is_used() -> None:
+    cited = {source for one in PACK.modes for sources in one.sources.values() for source in sources}
+    assert {source.id for source in PACK.sources} == cited
+    assert all(one.family for one in PACK.modes)
