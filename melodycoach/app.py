@@ -11,7 +11,7 @@ import signal
 import sys
 import threading
 import time
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import datetime
 from pathlib import Path
 from queue import Empty, SimpleQueue
@@ -256,16 +256,19 @@ class _Printer:
 
     def __init__(self, say: Callable[[str], None]) -> None:
         self._say = say
-        self._previous: ViewState | None = None
+        self._previous: ViewState | None = None  # of the last note
         self._status: tuple[str, ...] = ()
 
     def begin(self, coach: Coach) -> None:
         self._say(f"{coach.view.theory}. {coach.view.caution}")
+        self._previous = coach.view
         self.world(coach.view)
 
     def note(self, view: ViewState) -> None:
         self.world(view)
-        self._say(plain_line(view, self._previous))
+        before = self._previous
+        known = None if before is None else replace(before, status=view.status)  # said by `world`
+        self._say(plain_line(view, known))
         self._previous = view
 
     def world(self, view: ViewState) -> None:

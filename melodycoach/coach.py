@@ -185,18 +185,19 @@ class Coach:
 
     def take(self, event: Event) -> None:
         """Apply one event and log it."""
-        if self._ends_a_note(event):
+        if isinstance(event, NoteOn) and self.session.sounding is not None:
             self.session = apply(self.session, TimePassed(event.at_s))
-            if isinstance(event, NoteOff):
-                self.session = apply(self.session, event)
-            if self._on_note is not None:
-                self._on_note(self._make_view(event.at_s))
-            if isinstance(event, NoteOn):
-                self.session = apply(self.session, event)
-        else:
-            self.session = apply(self.session, event)
+            self._tell(event)  # the note that this one ends, before the new one is heard
+        ends_a_note = isinstance(event, NoteOff) and event.voice == self.session.sounding
+        self.session = apply(self.session, event)
+        if ends_a_note or isinstance(event, LineEdited):
+            self._tell(event)
         if self._log is not None and (fault := self._log.append(event)):
             self._warning = fault
+
+    def _tell(self, event: Event) -> None:
+        if self._on_note is not None:
+            self._on_note(self._make_view(event.at_s))
 
     def close(self) -> None:
         """Close the keyboard and the log."""
@@ -204,12 +205,6 @@ class Coach:
         if self._log is not None:
             self._log.append(TimePassed(self._clock()))
             self._log.close()
-
-    def _ends_a_note(self, event: Event) -> bool:
-        sounding = self.session.sounding
-        if isinstance(event, NoteOff):
-            return event.voice == sounding
-        return isinstance(event, NoteOn) and sounding is not None
 
     def _tick(self, now_s: float) -> None:
         """Let the clock be seen while a note sounds or a silence may still become something."""
@@ -284,8 +279,6 @@ class Coach:
         for group in _notes_with_marks(items):
             n_items = len(self.session.line.items)
             self.take(LineEdited(self._clock(), n_items, n_items, group))
-            if self._on_note is not None and any(isinstance(item, Note) for item in group):
-                self._on_note(self._make_view())
 
     def _save(self, path: Path) -> None:
         session = self.session

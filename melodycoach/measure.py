@@ -1,23 +1,14 @@
 """Measure a pack on a labelled collection: read it, hear every melody, add the answers up.
 
-The work on single melodies goes to as many processes as there are cores once it is worth it. Their
-answers are taken in the order of the file, so the figures do not depend on how many there were.
+The figures do not depend on the number of processes that the melodies are spread over.
 """
 
 from __future__ import annotations
 
-import multiprocessing
-import os
 import random
-import signal
-from collections import Counter, deque
-from concurrent.futures import Future, ProcessPoolExecutor
-from concurrent.futures.process import BrokenProcessPool
+from collections import Counter
 from dataclasses import dataclass, field
-from itertools import chain, islice
-from multiprocessing.reduction import ForkingPickler
-from types import MappingProxyType
-from typing import TYPE_CHECKING, Any, TypeVar
+from typing import TYPE_CHECKING, TypeVar
 
 from melodycoach.core.evaluation import CHECKPOINTS, Evaluation, judge
 from melodycoach.core.event import PitchReading
@@ -35,8 +26,9 @@ from melodycoach.core.seams import (
     seam_figures,
 )
 from melodycoach.core.tally import tally
-from melodycoach.errors import CollectionError, MelodycoachError, UnknownModeError, UsageError
+from melodycoach.errors import CollectionError, UnknownModeError, UsageError
 from melodycoach.sources.collection import Melody, read_collection
+from melodycoach.spread import n_cores, spread
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterable, Iterator
@@ -47,14 +39,7 @@ if TYPE_CHECKING:
     from melodycoach.core.note import Heard
     from melodycoach.core.tally import Verdict
 
-PARALLEL_FROM = 50
-"""More melodies than this are spread over processes; fewer are done before those have started."""
-
-BATCH = 8
-"""Melodies handed to a process at a time."""
-
 Task = TypeVar("Task")
-Answer = TypeVar("Answer")
 
 
 @dataclass(frozen=True)
@@ -160,7 +145,7 @@ def evaluate_collection(
     bench = Bench(pack, pack.restrict(only), reading, parameters or ScoringParameters(), closing)
     if owed and len(bench.modes) < 2:
         raise UsageError("owed steps are measured against other modes: let at least two compete")
-    workers = workers or _cores()
+    workers = workers or n_cores()
     intake = _Intake(path, bench, kind, strict, on_fault or _unheard)
     shorter = [0] * len(CHECKPOINTS)
     n = n_notes = 0
@@ -335,86 +320,3 @@ def _sample(items: Iterable[Task], count: int, chooser: random.Random) -> list[T
         elif (place := chooser.randrange(seen + 1)) < count:
             kept[place] = item
     return kept
-
-
-def _cores() -> int:
-    if hasattr(os, "sched_getaffinity"):
-        return len(os.sched_getaffinity(0))
-    return os.cpu_count() or 1
-
-
-def spread(
-    bench: Bench, work: Callable[[Bench, Task], Answer], tasks: Iterable[Task], workers: int
-) -> Iterator[Answer]:
-    """Do the tasks, in this process or in several, and give the answers in the order of the tasks.
-
-    Parameters
-    ----------
-    bench
-        Handed to ``work`` with each task.
-    work
-        A function at the top of its module; its tasks and answers travel between processes.
-    tasks
-        Taken as they are needed: memory does not grow with their number.
-    workers
-        Processes at most.
-
-    Raises
-    ------
-    MelodycoachError
-        A process ended before its time.
-    """
-    coming = iter(tasks)
-    first = list(islice(coming, PARALLEL_FROM + 1))
-    if workers == 1 or len(first) <= PARALLEL_FROM:
-        for task in chain(first, coming):
-            yield work(bench, task)
-        return
-    coming = chain(first, coming)
-    pool = ProcessPoolExecutor(
-        workers,
-        mp_context=multiprocessing.get_context("spawn"),
-        initializer=_settle_in,
-        initargs=(bench,),
-    )
-    waiting: deque[Future[list[Any]]] = deque()
-    try:
-        while True:
-            while len(waiting) < 2 * workers and (batch := list(islice(coming, BATCH))):
-                waiting.append(pool.submit(_do, work, batch))
-            if not waiting:
-                return
-            yield from waiting.popleft().result()
-    except BrokenProcessPool:
-        raise MelodycoachError(
-            "a helper process ended before its time, perhaps for want of memory; "
-            "close other programs and measure again"
-        ) from None
-    finally:
-        pool.shutdown(wait=True, cancel_futures=True)
-
-
-_bench: Bench | None = None
-
-
-def _settle_in(bench: Bench) -> None:
-    """Prepare a helper process; Ctrl-C is the business of the one that started it."""
-    global _bench
-    signal.signal(signal.SIGINT, signal.SIG_IGN)
-    _bench = bench
-
-
-def _do(work: Callable[[Bench, Any], Any], batch: list[Any]) -> list[Any]:
-    assert _bench is not None
-    return [work(_bench, task) for task in batch]
-
-
-def _plain(proxy: MappingProxyType[Any, Any]) -> tuple[Any, ...]:
-    return _read_only, (dict(proxy),)
-
-
-def _read_only(mapping: dict[Any, Any]) -> MappingProxyType[Any, Any]:
-    return MappingProxyType(mapping)
-
-
-ForkingPickler.register(MappingProxyType, _plain)  # read-only mappings do not travel by themselves

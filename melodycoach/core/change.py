@@ -77,7 +77,10 @@ class ChangeState:
 
 def start_change(log_prior: FloatArray) -> ChangeState:
     """Give the filter's state before the first note."""
-    return ChangeState(log_prior, np.zeros(len(log_prior)), np.ones(len(log_prior), dtype=np.int64))
+    gain, risen_from = np.zeros(len(log_prior)), np.ones(len(log_prior), dtype=np.int64)
+    for array in (gain, risen_from):
+        array.setflags(write=False)
+    return ChangeState(log_prior, gain, risen_from)
 
 
 def change_threshold(n_hypotheses: int, parameters: ScoringParameters) -> float:
@@ -125,7 +128,7 @@ def _next(
     state: ChangeState, nats: FloatArray, n_modes: int, n_notes: int, parameters: ScoringParameters
 ) -> ChangeState:
     gain = np.maximum(state.gain + (nats - nats[state.announced]), 0.0)
-    risen_from = np.where(gain > 0, state.risen_from, n_notes + 1)
+    risen_from = np.where(state.gain > 0, state.risen_from, n_notes)
     best = int(gain.argmax())
     announced, changed_at, seam_at = state.announced, state.changed_at, state.seam_at
     threshold = change_threshold(len(gain), parameters)
@@ -137,7 +140,7 @@ def _next(
             if mode != announced % n_modes:
                 changed_at, seam_at = n_notes, int(risen_from[best])
             announced = best
-            gain, risen_from = np.zeros(len(gain)), np.full(len(gain), n_notes + 1)
+            gain = np.zeros(len(gain))
     for array in (gain, risen_from):
         array.setflags(write=False)
     return replace(

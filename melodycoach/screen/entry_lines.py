@@ -168,7 +168,9 @@ def _below(question: Question, columns: int, signs: Signs) -> Line:
         return [("class:faint", cut(f"  {question.advice}", columns, signs.more))]
     line: Line = []
     room = columns
-    first = question.picked or 0
+    first = 0
+    while question.picked and sum(width(c) + 2 for c in choices[first : question.picked + 1]) > columns - 1:
+        first += 1
     for place, choice in enumerate(choices[first:], start=first):
         picked = place == question.picked
         text = f"[{choice}]" if picked else f" {choice} "

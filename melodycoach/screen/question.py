@@ -43,7 +43,7 @@ LABELS = {
 
 ADVICE = {
     QuestionKind.TARGET: "Enter with nothing typed: no aim",
-    QuestionKind.FINAL: "a note or a perde; written: as each mode is written; any: unknown",
+    QuestionKind.FINAL: "a pitch; written: each mode's own final; any: unknown",
     QuestionKind.ONLY: "names with commas between; nothing: all modes",
     QuestionKind.PORT: "part of its name will do; Esc goes back",
     QuestionKind.SAVE: "a path; the line is written as note text; Esc goes back",

@@ -146,7 +146,7 @@ def _verdict(model: ScoringModel, state: ScorerState, lean: Leaning) -> str:
     names = [model.modes[index].name for index in lean.among]
     if lean.decided:
         return f"leaning to {names[0]}, {percent(lean.p_best)}"
-    family = f" (all of the {lean.family} family)" if lean.family and len(names) > 1 else ""
+    family = f" (all of the {lean.family})" if lean.family and len(names) > 1 else ""
     if len(names) == 1:
         return f"undecided; {names[0]} is nearest"
     return f"undecided between {', '.join(names[:-1])} and {names[-1]}{family}"

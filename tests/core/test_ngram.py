@@ -5,7 +5,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from melodycoach.core.ngram import Counts, Token, build_table, count_tokens, snap_to_scale
+from melodycoach.core.ngram import Counts, ModeCounts, Token, build_table, count_tokens, snap_to_scale
 from melodycoach.core.theory import FoldedScale
 
 SNAP = np.arange(4)
@@ -90,6 +90,15 @@ def test_the_longest_known_suffix_of_a_context_is_used() -> None:
     assert table.row(0, (3, 1)) == rows[(1,)]
     assert table.row(0, (0, 1)) == rows[(0, 1)]
     assert table.row(0, (1, 3)) == rows[()]
+
+
+def test_counts_that_lost_a_context_lean_on_a_shorter_one() -> None:
+    full = count_tokens([[token(0), token(1), token(2)]], SNAP, order=3)
+    pruned = ModeCounts(full.single, {(0, 1): full.after[(0, 1)]}, 1)
+    table = build_table([EVEN], [pruned], [SNAP], (1.0,), 0.0, order=3)
+    alone, after_both = table.row(0, ()), table.row(0, (0, 1))
+    # P(2 | 0 1) = (1 + 1 * P(2)) / (1 + 1), as nothing is known of what follows 1
+    assert table.probability[0, after_both, 2] == pytest.approx((1 + table.probability[0, alone, 2]) / 2)
 
 
 def test_a_mode_without_counts_keeps_what_theory_implies() -> None:

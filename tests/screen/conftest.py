@@ -160,10 +160,16 @@ def hand_made_views() -> dict[str, ViewState]:
         leanings=(
             LeaningRow("makam/ussak", "Uşşak", "dügâh", 0.34, 0.02),
             LeaningRow("makam/beyati", "Beyâtî", "dügâh", 0.31, -0.03),
-            *(replace(row, probability=row.probability / 4) for row in LEANINGS if row.name != "Uşşak"),
+            *(
+                replace(row, probability=row.probability / 4)
+                for row in LEANINGS
+                if row.name not in {"Uşşak", "Beyâtî"}
+            ),
         ),
         in_view="Uşşak",
         rival="Beyâtî",
+        owed=tuple(replace(row, heard_at=None) for row in OWED),
+        why=(WhyRow("you opened on nevâ; both do, Beyâtî more often", -0.12),),
         keyboard_note="plain keys cannot tell segâh from bûselik: both are the B key",
     )
     target = replace(

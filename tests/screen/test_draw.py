@@ -292,11 +292,11 @@ def test_every_hand_made_view_fills_every_size(columns: int, rows: int, views: d
 
 
 def test_below_the_smallest_size_there_is_one_sentence(views: dict[str, ViewState]) -> None:
-    sentence = "13 hüseynî E5; leaning to Hüseynî, 72 %; next: final cadence on dügâh (karar), çargâh"
-    entry = "› E5 E5 G5 F#5 E5:2 , D5 C5 B4-1 A4:2 . G4 A4 D5 E5:2 ,"
-    assert text_of(views["decided"], 100, 3) == (
-        f"{sentence:100}|\n{'segâh dügâh rast dügâh':100}|\n{entry:100}|\n"
+    sentence = (
+        "13 hüseynî E5; leaning to Hüseynî, 72 %; next: final cadence on dügâh (karar), çargâh segâh dügâh"
     )
+    entry = "› E5 E5 G5 F#5 E5:2 , D5 C5 B4-1 A4:2 . G4 A4 D5 E5:2 ,"
+    assert text_of(views["decided"], 100, 3) == (f"{sentence:100}|\n{'rast dügâh':100}|\n{entry:100}|\n")
 
 
 def test_the_largest_usual_screen_is_drawn_in_five_milliseconds(views: dict[str, ViewState]) -> None:

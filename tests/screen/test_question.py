@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import pytest
 
 from melodycoach.screen import question as asking
@@ -77,8 +79,6 @@ def test_a_picked_name_is_the_answer() -> None:
 
 
 def test_a_question_waits_for_its_answer_to_be_carried_out() -> None:
-    from dataclasses import replace
-
     waiting = replace(about(QuestionKind.TARGET, "hicaz"), awaited=4)
     assert asking.answer_arrived(waiting, 3, ()) == waiting
     assert asking.answer_arrived(waiting, 4, ()) is None
