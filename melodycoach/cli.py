@@ -62,8 +62,8 @@ def main(argv: Sequence[str] | None = None) -> int:
 def _parser() -> tuple[argparse.ArgumentParser, Sequence[str]]:
     parser = _Parser(
         prog="melodycoach",
-        description="Hears a phrase, played or typed, and says note by note which mode it implies, "
-        "which characteristic steps it still owes that mode, and why.",
+        description="Hears a phrase, played or typed, and says note by note which mode it\n"
+        "implies, which characteristic steps it still owes that mode, and why.",
         epilog=_EPILOG,
         formatter_class=argparse.RawDescriptionHelpFormatter,
     )

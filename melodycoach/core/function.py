@@ -13,7 +13,6 @@ this key plays.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from enum import StrEnum
 from functools import lru_cache
 from math import floor, inf
@@ -50,43 +49,6 @@ class Function(StrEnum):
     OPENING = "opening region"
     DEGREE = "degree"
     OUTSIDE = "not in the mode"
-
-
-@dataclass(frozen=True, slots=True)
-class TradeWords:
-    """The trade's own words for the functions, shown beside the English ones; empty: none."""
-
-    final: str = ""
-    dominant: str = ""
-    suspended: str = ""
-    leading: str = ""
-    course: str = ""
-
-    def of(self, function: Function) -> str:
-        """Give the word for a function, in the trade's tongue if it has one.
-
-        >>> trade_words(53).of(Function.DOMINANT), trade_words(12).of(Function.DOMINANT)
-        ('güçlü', 'dominant')
-        """
-        own = {
-            Function.FINAL: self.final,
-            Function.DOMINANT: self.dominant,
-            Function.SUSPENDED: self.suspended,
-            Function.LEADING: self.leading,
-        }
-        return own.get(function) or function.value
-
-    def beside(self, word: str) -> str:
-        """Give a word in brackets, to stand behind an English one, or nothing."""
-        return f" ({word})" if word else ""
-
-
-_WORDS_BY_DIVISIONS = {53: TradeWords("karar", "güçlü", "asma karar", "yeden", "seyir")}
-
-
-def trade_words(divisions: int) -> TradeWords:
-    """Give the words of the trade that counts in so many divisions of the octave."""
-    return _WORDS_BY_DIVISIONS.get(divisions, TradeWords())
 
 
 def key_of(cents: float) -> int:

@@ -29,6 +29,14 @@ class Course(StrEnum):
     DESCENDING = "descending"
 
 
+class Repertoire(StrEnum):
+    """How often the trade's repertoire uses a mode: what a listener expects before the first note."""
+
+    COMMON = "common"
+    OCCASIONAL = "occasional"
+    RARE = "rare"
+
+
 class StepKind(StrEnum):
     """What a characteristic step does in its mode."""
 
@@ -117,6 +125,8 @@ class Mode:
         Fact to the ids of the sources in the pack that state it.
     confidence
         ``high``, ``medium`` or ``low``: how well the sources agree.
+    repertoire
+        How often the trade's repertoire uses it.
     """
 
     id: str
@@ -141,6 +151,7 @@ class Mode:
     family: str = ""
     sources: Mapping[str, tuple[str, ...]] = field(default_factory=dict)
     confidence: str = "medium"
+    repertoire: Repertoire = Repertoire.COMMON
 
     @property
     def slug(self) -> str:

@@ -183,7 +183,7 @@ def build_model(
     else:
         finals = np.array([[mode.final_units for mode in modes]], dtype=np.int64)
     mode_index = np.broadcast_to(np.arange(len(modes)), finals.shape).reshape(-1).copy()
-    weight = np.array([parameters.prior_by_confidence[mode.confidence] for mode in modes])
+    weight = np.array([parameters.prior_by_repertoire[mode.repertoire] for mode in modes])
     log_prior = np.log(np.broadcast_to(weight / weight.sum() / len(finals), finals.shape)).reshape(-1)
     final_units = finals.reshape(-1)
     for array in (mode_index, final_units, log_prior):

@@ -106,7 +106,7 @@ RESTING_LENGTH_S = 0.4
 RESTING_GAP_S = 0.25
 """A silence of less than this, however fast the line moves, is no rest."""
 
-RESTING_RATIO = 1.4
+RESTING_RATIO = 1.3
 """A note that the line rests on takes so many times as long as the notes before it usually do."""
 
 PACE_NOTES = 8

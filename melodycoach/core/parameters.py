@@ -18,6 +18,7 @@ from dataclasses import dataclass, field
 from types import MappingProxyType
 from typing import TYPE_CHECKING
 
+from melodycoach.core.mode import Repertoire
 from melodycoach.core.note import InputKind
 
 if TYPE_CHECKING:
@@ -89,7 +90,9 @@ _HEARING = MappingProxyType(
     }
 )
 
-_PRIOR_BY_CONFIDENCE = MappingProxyType({"high": 1.0, "medium": 0.5, "low": 0.25})
+_PRIOR_BY_REPERTOIRE = MappingProxyType(
+    {Repertoire.COMMON: 1.0, Repertoire.OCCASIONAL: 0.3, Repertoire.RARE: 0.1}
+)
 
 
 @dataclass(frozen=True)
@@ -102,9 +105,9 @@ class ScoringParameters:
         Function weights on notes that move on and on notes that the line rests on.
     hearing
         Blur and noise of each kind of input.
-    prior_by_confidence
-        Prior weight of a mode by how well the sources agree on it: few agree on one that is seldom
-        played. It weighs little against a phrase, but breaks ties between near-twins.
+    prior_by_repertoire
+        Prior weight of a mode by how often the repertoire uses it: a listener expects a common mode
+        before a rare one. It weighs little against a phrase, but decides between near-twins.
     same_degree_cents
         Degrees closer than this are one degree.
     opening_margin_cents
@@ -153,7 +156,7 @@ class ScoringParameters:
     moving: FunctionWeights = FunctionWeights(1.0, 0.3, 0.25, 0.33, 1.5, 1.8, 1.5, 1.5, 1.4, 1.25)
     resting: FunctionWeights = FunctionWeights(1.0, 0.3, 0.5, 0.33, 3.0, 3.0, 1.3, 1.5, 1.3, 1.25)
     hearing: Mapping[InputKind, Hearing] = field(default_factory=lambda: _HEARING)
-    prior_by_confidence: Mapping[str, float] = field(default_factory=lambda: _PRIOR_BY_CONFIDENCE)
+    prior_by_repertoire: Mapping[Repertoire, float] = field(default_factory=lambda: _PRIOR_BY_REPERTOIRE)
     same_degree_cents: float = 1.6 * _COMMA
     opening_margin_cents: float = 1.0 * _COMMA
     below_limit_cents: float = 25.0 * _COMMA

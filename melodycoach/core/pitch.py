@@ -1,4 +1,4 @@
-"""Pitch: cents on the MIDI scale, tone systems, written names, perde names.
+"""Pitch: cents on the MIDI scale, tone systems, written names, and the names that a pack gives.
 
 Conventions
 -----------
@@ -184,7 +184,10 @@ class NamedPitch:
 
 @dataclass(frozen=True)
 class PitchNames:
-    """The names that a pack gives to pitches, beside the written ones of its tone system.
+    """The names and words that a pack gives: names of pitches, and the trade's own words.
+
+    Both stand beside what the program says by itself: the written names of the tone system, and
+    English terms such as ``dominant``.
 
     Parameters
     ----------
@@ -192,10 +195,13 @@ class PitchNames:
         The tone system that the units count in.
     named
         Pitches with a name; any order, at most one name for each pitch.
+    words
+        English terms, each with the trade's word for it; any order, each term at most once.
     """
 
     system: ToneSystem
     named: tuple[NamedPitch, ...] = ()
+    words: tuple[tuple[str, str], ...] = ()
 
     @cached_property
     def _by_units(self) -> dict[int, NamedPitch]:
@@ -204,6 +210,29 @@ class PitchNames:
     @cached_property
     def _by_folded(self) -> dict[str, NamedPitch]:
         return {fold_name(pitch.name): pitch for pitch in self.named}
+
+    @cached_property
+    def _word_by_term(self) -> dict[str, str]:
+        return dict(self.words)
+
+    def word(self, english: str) -> str:
+        """Give the trade's word for an English term, or the term itself where the pack has none.
+
+        >>> names = PitchNames(COMMAS_53, words=(("dominant", "güçlü"),))
+        >>> names.word("dominant"), names.word("final")
+        ('güçlü', 'final')
+        """
+        return self._word_by_term.get(english, english)
+
+    def beside(self, english: str) -> str:
+        """Give the trade's word in brackets, to stand behind the English one, or nothing.
+
+        >>> names = PitchNames(COMMAS_53, words=(("dominant", "güçlü"),))
+        >>> names.beside("dominant"), names.beside("final")
+        (' (güçlü)', '')
+        """
+        word = self._word_by_term.get(english)
+        return f" ({word})" if word else ""
 
     def find(self, text: str) -> NamedPitch | None:
         """Look a name up in any spelling, with or without diacritics; None if unknown."""

@@ -8,7 +8,6 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from melodycoach.core.function import trade_words
 from melodycoach.core.mode import StepKind
 
 if TYPE_CHECKING:
@@ -57,7 +56,6 @@ def step_label(
     str
         Such as ``half cadence on nevâ (güçlü)`` or ``leading tone (yeden): ırak before rast``.
     """
-    words = trade_words(names.system.divisions)
     final = mode.final_units if final_units is None else final_units
 
     def name(degree: int) -> str:
@@ -66,26 +64,27 @@ def step_label(
     first, last = step.degrees[0], step.degrees[-1]
     match step.kind:
         case StepKind.OPENING:
-            return f"opening{words.beside(words.course)}: {_travel(step, name(first), name(last))}"
+            return f"opening{names.beside('course')}: {_travel(step, name(first), name(last))}"
         case StepKind.HALF_CADENCE:
             is_dominant = last % names.system.divisions in {
                 d % names.system.divisions for d in mode.dominants
             }
-            gloss = words.beside(words.dominant) if is_dominant else ""
+            gloss = names.beside("dominant") if is_dominant else ""
             return f"half cadence on {name(last)}{gloss}{_way(step, mode, name)}"
         case StepKind.SUSPENDED_CADENCE:
-            return f"suspended cadence on {name(last)}{words.beside(words.suspended)}{_way(step, mode, name)}"
+            gloss = names.beside("suspended cadence")
+            return f"suspended cadence on {name(last)}{gloss}{_way(step, mode, name)}"
         case StepKind.LEADING_TONE:
             tone, target = _leading_pair(step)
-            return f"leading tone{words.beside(words.leading)}: {name(tone)} before {name(target)}"
+            return f"leading tone{names.beside('leading tone')}: {name(tone)} before {name(target)}"
         case StepKind.ALTERATION:
             return _alteration(step, mode, names.system.unit_cents, name)
         case StepKind.REGISTER:
-            return _register(step, mode, names.system.divisions, name)
+            return _register(step, mode, names, name)
         case StepKind.COLOUR_INTERVAL:
             return _interval(step, mode, names.system.unit_cents, name)
         case StepKind.FINAL_CADENCE:
-            return f"final cadence on {name(last)}{words.beside(words.final)}{_way(step, mode, name)}"
+            return f"final cadence on {name(last)}{names.beside('final')}{_way(step, mode, name)}"
 
 
 def _way(step: CharacteristicStep, mode: Mode, name: _Namer) -> str:
@@ -121,11 +120,11 @@ def _alteration(step: CharacteristicStep, mode: Mode, unit_cents: float, name: _
     return f"{name(usual)} gives way to {name(altered)} {way}"
 
 
-def _register(step: CharacteristicStep, mode: Mode, divisions: int, name: _Namer) -> str:
-    words = trade_words(divisions)
+def _register(step: CharacteristicStep, mode: Mode, names: PitchNames, name: _Namer) -> str:
+    divisions = names.system.divisions
     low, high = min(step.degrees), max(step.degrees)
     if low < 0 and abs(low) >= high - divisions:
-        return f"below the {words.final or 'final'}: down to {name(low)}"
+        return f"below the {names.word('final')}: down to {name(low)}"
     if high > divisions:
         return f"above the octave: up to {name(high)}"
     if low >= mode.dominants[0] if mode.dominants else low > divisions // 2:

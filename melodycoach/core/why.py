@@ -20,7 +20,7 @@ from melodycoach.core.evidence import (
     placed_final,
     tally,
 )
-from melodycoach.core.function import Function, function_of, trade_words
+from melodycoach.core.function import Function, function_of
 from melodycoach.core.keyboard import keyboard_note
 
 if TYPE_CHECKING:
@@ -148,7 +148,7 @@ class _Words:
         self.a, self.b = (model.modes[model.mode_index[h]] for h in (a, b))
         self.final_a, self.final_b = finals
         self.size = model.pack.system.divisions
-        self.trade = trade_words(self.size)
+        self.trade_word = model.pack.names.word
 
     def say(self, one: Evidence) -> str:
         """Give the sentence for one item, without its number."""
@@ -221,14 +221,14 @@ class _Words:
     def _phrase(self, function: Function, degree: int | None, mode: Mode, name: str) -> str:
         match function:
             case Function.FINAL if degree:
-                return f"the octave of the {self.trade.of(function)} of {name}"
+                return f"the octave of the {self.trade_word(function.value)} of {name}"
             case Function.FINAL | Function.LEADING:
-                return f"the {self.trade.of(function)} of {name}"
+                return f"the {self.trade_word(function.value)} of {name}"
             case Function.DOMINANT:
                 rank = _dominant_rank(mode, degree, self.size)
-                return f"the {'second ' if rank else ''}{self.trade.of(function)} of {name}"
+                return f"the {'second ' if rank else ''}{self.trade_word(function.value)} of {name}"
             case Function.SUSPENDED:
-                return f"{_article(self.trade.of(function))} of {name}"
+                return f"{_article(self.trade_word(function.value))} of {name}"
             case Function.FALLING:
                 return f"in {name} only going down"
             case Function.PASSING:

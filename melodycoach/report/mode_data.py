@@ -3,36 +3,21 @@
 Conventions
 -----------
 A *place* is a degree with its names: ``degree`` in units above the final, ``name`` (a perde, where
-the pack has one), ``written``. Everything here is made of ``str``, ``int``, ``float``, ``list``,
-``dict`` and None.
+the pack has one), ``written``. ``words`` holds English terms, each with the trade's word for it,
+where the pack has one. Everything here is made of ``str``, ``int``, ``float``, ``list``, ``dict``
+and None.
 """
 
 from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.core.function import trade_words
-from melodycoach.core.mode import Course
 from melodycoach.core.step_words import step_label
 
 if TYPE_CHECKING:
     from collections.abc import Iterable
 
     from melodycoach.core.mode import CharacteristicStep, Mode, ModePack
-
-COURSE_WORDS = {
-    53: {
-        Course.ASCENDING: "çıkıcı",
-        Course.ASCENDING_DESCENDING: "inici-çıkıcı",
-        Course.DESCENDING: "inici",
-    }
-}
-"""The trade's own words for a course, by the divisions of its octave."""
-
-
-def course_word(pack: ModePack, course: Course) -> str:
-    """Give the trade's own word for a course, or nothing."""
-    return COURSE_WORDS.get(pack.system.divisions, {}).get(course, "")
 
 
 def place(pack: ModePack, mode: Mode, degree: int) -> dict[str, Any]:
@@ -79,6 +64,7 @@ def modes_json(pack: ModePack) -> dict[str, Any]:
         "divisions": pack.system.divisions,
         "theory": pack.theory,
         "caution": pack.caution,
+        "words": dict(pack.names.words),
         "modes": [
             {
                 "id": mode.id,
@@ -87,9 +73,9 @@ def modes_json(pack: ModePack) -> dict[str, Any]:
                 "family": mode.family,
                 "final": place(pack, mode, 0),
                 "course": mode.course.value,
-                "course_word": course_word(pack, mode.course),
                 "dominants": _places(pack, mode, mode.dominants),
                 "confidence": mode.confidence,
+                "repertoire": mode.repertoire.value,
             }
             for mode in pack.modes
         ],
@@ -98,7 +84,6 @@ def modes_json(pack: ModePack) -> dict[str, Any]:
 
 def mode_json(pack: ModePack, mode: Mode) -> dict[str, Any]:
     """Give everything that a pack says of one mode."""
-    words = trade_words(pack.system.divisions)
     title_by_id = {source.id: source.title for source in pack.sources}
     name_by_id = {one.id: one.name for one in pack.modes}
     return {
@@ -109,19 +94,13 @@ def mode_json(pack: ModePack, mode: Mode) -> dict[str, Any]:
         "theory": pack.theory,
         "caution": pack.caution,
         "confidence": mode.confidence,
-        "words": {
-            "final": words.final,
-            "dominant": words.dominant,
-            "leading": words.leading,
-            "suspended": words.suspended,
-            "course": words.course,
-        },
+        "repertoire": mode.repertoire.value,
+        "words": dict(pack.names.words),
         "divisions": pack.system.divisions,
         "unit": pack.system.unit_name,
         "final": place(pack, mode, 0),
         "signature": [sign.sign for sign in mode.signature],
         "course": mode.course.value,
-        "course_word": course_word(pack, mode.course),
         "opening": _places(pack, mode, mode.opening),
         "rising": list(mode.rising),
         "falling": list(mode.falling),

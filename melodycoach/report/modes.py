@@ -9,8 +9,7 @@ from __future__ import annotations
 import textwrap
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.core.function import trade_words
-from melodycoach.core.mode import Need
+from melodycoach.core.mode import Need, Repertoire
 from melodycoach.report.mode_data import mode_json, modes_json
 
 if TYPE_CHECKING:
@@ -35,6 +34,12 @@ _CONFIDENCE = {
     "high": "high: the sources agree on what matters",
     "medium": "medium: the sources differ in places, or say little",
     "low": "low: little was found to check this against",
+}
+
+_HEARD = {
+    Repertoire.COMMON.value: "often heard",
+    Repertoire.OCCASIONAL.value: "heard at times",
+    Repertoire.RARE.value: "rarely heard",
 }
 
 _FACT_NAMES = {
@@ -64,16 +69,18 @@ def modes_text(pack: ModePack, columns: int = 80) -> str:
     data = modes_json(pack)
     lines = [f"{pack.name}: {len(pack.modes)} modes", ""]
     lines += _wrapped(f"Theory: {pack.theory}. {pack.caution}", width)
-    words = trade_words(pack.system.divisions)
-    heads = ("name", "id", "final", words.course or "course", words.dominant or "dominant")
-    sizes = [max(map(len, column)) for column in zip(heads, *map(_cells, data["modes"]), strict=True)]
+    word = pack.names.word
+    heads = ("name", "id", "final", word("course"), word("dominant"))
+    rows = {mode["id"]: _cells(mode, data["words"]) for mode in data["modes"]}
+    sizes = [max(map(len, column)) for column in zip(heads, *rows.values(), strict=True)]
     lines += ["", _row(heads, sizes, width)]
     for family, modes in _by_family(data["modes"]):
         lines += [
             "",
             _capital(family) or "Other modes",
-            *(_row(_cells(mode), sizes, width) for mode in modes),
+            *(_row(rows[mode["id"]], sizes, width) for mode in modes),
         ]
+    lines += _seldom_heard(data["modes"], width)
     lines += ["", *_wrapped("One mode in full: melodycoach modes NAME, in any spelling.", width)]
     return "\n".join(lines)
 
@@ -110,12 +117,23 @@ def _by_family(modes: Sequence[dict[str, Any]]) -> Iterator[tuple[str, list[dict
         yield family, [mode for mode in modes if mode["family"] == family]
 
 
-def _cells(mode: dict[str, Any]) -> tuple[str, ...]:
+def _seldom_heard(modes: Sequence[dict[str, Any]], width: int) -> list[str]:
+    """Name the modes that a listener does not expect; those that are not named are often heard."""
+    lines: list[str] = []
+    for repertoire in (Repertoire.OCCASIONAL.value, Repertoire.RARE.value):
+        names = [mode["name"] for mode in modes if mode["repertoire"] == repertoire]
+        if names:
+            text = f"{_capital(_HEARD[repertoire])} in the repertoire: {', '.join(names)}."
+            lines += ["", *_wrapped(text, width)]
+    return lines
+
+
+def _cells(mode: dict[str, Any], words: dict[str, str]) -> tuple[str, ...]:
     return (
         mode["name"],
         mode["id"].partition("/")[2],
         f"on {mode['final']['name']}",
-        mode["course_word"] or mode["course"],
+        words.get(mode["course"], mode["course"]),
         mode["dominants"][0]["name"],
     )
 
@@ -138,16 +156,20 @@ def _head(data: dict[str, Any], width: int) -> list[str]:
     home = (
         final["name"] if final["name"] == final["written"] else f"{final['name']}, written {final['written']}"
     )
-    course = f"{data['course']}{_beside(data['course_word'])}"
+
+    def gloss(term: str) -> str:
+        return _beside(term, words)
+
     rows = [
         ("family", data["family"]),
-        (f"final{_beside(words['final'])}", home),
+        ("in the repertoire", _HEARD[data["repertoire"]]),
+        (f"final{gloss('final')}", home),
         ("key signature", " ".join(data["signature"]) or "none"),
-        (f"course{_beside(words['course'])}", course),
+        (f"course{gloss('course')}", f"{data['course']}{gloss(data['course'])}"),
         ("opens and lives between", f"{low['name']} and {high['name']}"),
-        (f"dominant{_beside(words['dominant'])}", _names(data["dominants"], ", then ")),
-        (f"leading tone{_beside(words['leading'])}", _names(data["leading"]) or "none of its own"),
-        (f"suspended cadences{_beside(words['suspended'])}", _names(data["suspended"]) or "none of note"),
+        (f"dominant{gloss('dominant')}", _names(data["dominants"], ", then ")),
+        (f"leading tone{gloss('leading tone')}", _names(data["leading"]) or "none of its own"),
+        (f"suspended cadences{gloss('suspended cadence')}", _names(data["suspended"]) or "none of note"),
         ("genera", "; ".join(_genus(genus) for genus in data["genera"])),
     ]
     name = data["name"] + (f" ({', '.join(data['also'])})" if data["also"] else "")
@@ -186,14 +208,8 @@ def _tuning(data: dict[str, Any], width: int) -> list[str]:
 
 
 def _with_word(role: str, words: dict[str, str]) -> str:
-    key = {
-        "final": "final",
-        "dominant": "dominant",
-        "leading tone": "leading",
-        "suspended cadence": "suspended",
-    }
-    last_word = key.get(role.removeprefix("second ").removeprefix("third "), "")
-    return f"{role}{_beside(words.get(last_word, ''))}"
+    term = "dominant" if role.endswith(" dominant") else role
+    return f"{role}{_beside(term, words)}"
 
 
 def _steps(data: dict[str, Any], width: int) -> list[str]:
@@ -271,8 +287,8 @@ def _names(places: Iterable[dict[str, Any]], between: str = ", ") -> str:
     return between.join(one["name"] for one in places)
 
 
-def _beside(word: str) -> str:
-    return f" ({word})" if word else ""
+def _beside(term: str, words: dict[str, str]) -> str:
+    return f" ({words[term]})" if term in words else ""
 
 
 def _capital(text: str) -> str:

@@ -13,7 +13,7 @@ from bisect import bisect_left
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from melodycoach.screen.text import Line, cut, pad, pad_left, width
+from melodycoach.screen.text import Line, pad, pad_left, width
 
 if TYPE_CHECKING:
     from collections.abc import Mapping, Sequence
@@ -89,10 +89,7 @@ def _label(row: _Row, columns: int, signs: Signs) -> Line:
     room = columns - 2
     if room <= 0:
         return [("", " " * columns)]
-    left = room - width(row.name) - 1
-    function = cut(row.function, left, "") if left >= 5 and row.function else ""
-    if function and function != row.function:
-        function = cut(row.function, left, signs.more)
+    function = row.function if width(row.name) + 1 + width(row.function) <= room else ""
     if not function:
         return [(style, pad_left(row.name, room, signs.more)), ("class:faint", " " + signs.edge)]
     name = pad_left(row.name, room - width(function) - 1, signs.more)
@@ -192,7 +189,7 @@ def _plot(
     place_of_name = {row.name: place for place, row in enumerate(ladder)}
     free = 0
     column = 0
-    for note in notes:
+    for place, note in enumerate(notes):
         near = _nearest(heights, note.height)
         if near is not None and column < room:
             focused = focus is not None and note.item == focus
@@ -208,8 +205,9 @@ def _plot(
                 ruler[column] = _Cell(signs.off, "class:off")
             number = str(note.number)
             wanted = note.off_mode or note.number % 5 == 0 or note.number == 1
+            crowded = any(other.off_mode for other in notes[place + 1 : place + 1 + len(number) // slot + 1])
             at = column + 1 if note.off_mode else column
-            if wanted and at >= free and at + len(number) <= room:
+            if wanted and not crowded and at >= free and at + len(number) <= room:
                 ruler[at : at + len(number)] = [_Cell(digit, "class:faint") for digit in number]
                 free = at + len(number) + 1
         column += slot

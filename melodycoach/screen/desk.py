@@ -13,6 +13,7 @@ from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from melodycoach.screen import entry as typing
+from melodycoach.screen import entry_edit, entry_merge
 from melodycoach.screen import question as asking
 from melodycoach.screen.command import Fresh, Redo, ReplaceText, Undo
 from melodycoach.screen.draw import draw_help, help_lines, picture
@@ -89,7 +90,7 @@ class Desk:
         view = self.view = self._latest_view()
         if self.question is not None:
             self.question = asking.answer_arrived(self.question, view.handled, view.refusals)
-        self.entry = typing.arrived(self.entry, view.tokens, view.handled, view.refusals)
+        self.entry = entry_merge.arrived(self.entry, view.tokens, view.handled, view.refusals)
         self._hand_over()
 
     def drawn(self, columns: int, rows: int) -> Drawn:
@@ -156,17 +157,21 @@ class Desk:
 
     def type_text(self, text: str) -> None:
         """Type or paste text at the cursor of the entry."""
-        self.change_entry(lambda entry: typing.inserted(entry, text))
+        self.change_entry(lambda entry: entry_edit.inserted(entry, text))
 
     def change_entry(self, change: Callable[[Entry], Entry]) -> None:
-        """Put a changed entry in place of this one, and hand over what is finished in it."""
+        """Put a changed entry in place of this one, and hand over what is finished in it.
+
+        The newest view is taken in first, so that an answer need not wait for the next frame.
+        """
+        self.take_view()
         self.entry = change(self.entry)
         self._hand_over()
 
     def move_row(self, step: int) -> None:
         """Move the cursor one row of the entry up (-1) or down (1)."""
         cursor = moved_up_or_down(self.entry.text, self.entry.cursor, self._columns, step)
-        self.change_entry(lambda entry: typing.moved_to(entry, cursor))
+        self.change_entry(lambda entry: entry_edit.moved_to(entry, cursor))
 
     def undo(self) -> None:
         """Take back what is typed but not handed over; else the last change of the line."""

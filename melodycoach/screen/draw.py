@@ -139,7 +139,7 @@ def _attention(view: ViewState, columns: int, layout: Layout, signs: Signs) -> L
     """Say what wants to be noticed now: a change of mode, a note off the mode, else the standing words."""
     off = _fresh_off(view)
     if view.now or off is None:
-        return draw_now(view, columns, signs, theory=layout.status < 2)
+        return draw_now(view, columns, signs, theory=bool(view.line) and layout.status < 2)
     return [("class:off", cut(f"{signs.off} {off_words(off)}", columns, signs.more))]
 
 
@@ -187,17 +187,17 @@ def _line_title(view: ViewState, columns: int, signs: Signs) -> Line:
     return title_line(f"line {signs.dot} last: {last.name} {last.written}", columns, signs, off)
 
 
-def _contour(
-    view: ViewState, columns: int, rows: int, signs: Signs, focus: int | None, theory: bool = False
-) -> list[Line]:
-    """Draw the contour; before the first note, say how to begin."""
+def _contour(view: ViewState, columns: int, rows: int, signs: Signs, focus: int | None) -> list[Line]:
+    """Draw the contour; before the first note, say how to begin and whose theory it is."""
     if view.line:
         return draw_contour(view, columns, rows, signs, focus)
     names = [rung.name for rung in view.ladder if "final" in {rung.role, rung.function}]
     example = f" or {names[0]}" if names else ""
-    texts = [f"play, or type below: A4{example}, then a space"]
-    if theory:
-        texts.append(theory_words(view))
+    texts = [
+        f"play, or type below: A4{example}, then a space",
+        *([""] if rows >= 6 else []),
+        theory_words(view),
+    ]
     lines: list[Line] = [
         [("class:faint", f"  {row}")] for text in texts for row in (wrap(text, columns - 2) or [""])
     ]
@@ -224,7 +224,7 @@ def _stack(view: ViewState, columns: int, layout: Layout, signs: Signs, focus: i
             margin = name if place == 0 else ""
             label: Line = [("class:title", margin.ljust(layout.gutter))] if layout.gutter else []
             lines.append([*label, *line])
-    contour = _contour(view, columns, layout.line, signs, focus, theory=not layout.attention)
+    contour = _contour(view, columns, layout.line, signs, focus)
     return [*lines, *_filled(contour, layout.line)]
 
 

@@ -74,7 +74,9 @@ def draw_now(view: ViewState, columns: int, signs: Signs, theory: bool) -> Line:
 
 def theory_words(view: ViewState) -> str:
     """Join whose theory is shown and the caution that goes with it."""
-    return " ".join(part for part in (view.theory, view.caution) if part)
+    if view.theory and view.caution:
+        return f"{view.theory.rstrip('.')}. {view.caution}"
+    return view.theory or view.caution
 
 
 def draw_leanings(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line]:
@@ -142,7 +144,9 @@ def split_owed(view: ViewState) -> tuple[list[OwedRow], list[OwedRow]]:
 
 
 def owed_title(view: ViewState, signs: Signs) -> tuple[str, str]:
-    """Give heading and right end of the area of owed steps."""
+    """Give heading and right end of the area of owed steps; before the first note there is no mode."""
+    if not (view.n_notes or view.is_target):
+        return "owed", ""
     heard = sum(1 for row in view.owed if row.heard_at is not None)
     aim = " (your aim)" if view.is_target else ""
     name = f" {signs.dot} {view.in_view}{aim}" if view.in_view else ""

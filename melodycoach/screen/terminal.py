@@ -26,7 +26,7 @@ from prompt_toolkit.output.color_depth import ColorDepth
 from prompt_toolkit.output.defaults import create_output
 from prompt_toolkit.styles import Style
 
-from melodycoach.screen import entry as typing
+from melodycoach.screen import entry_edit
 from melodycoach.screen import question as asking
 from melodycoach.screen.command import Quit
 from melodycoach.screen.desk import Desk
@@ -288,16 +288,16 @@ class _Keys:
     def _bind_entry(self) -> None:
         desk = self._desk
         changes: tuple[tuple[Callable[[Entry], Entry], tuple[str, ...]], ...] = (
-            (typing.erased_before, ("backspace",)),
-            (typing.erased_after, ("delete",)),
-            (typing.erased_word, ("c-w", "escape backspace")),
-            (typing.moved_left, ("left",)),
-            (typing.moved_right, ("right",)),
-            (typing.moved_word_left, ("c-left",)),
-            (typing.moved_word_right, ("c-right",)),
-            (typing.moved_to_start, ("home", "c-home", "c-a")),
-            (typing.moved_to_end, ("end", "c-end", "c-e")),
-            (typing.confirmed, ("enter", "c-j")),
+            (entry_edit.erased_before, ("backspace",)),
+            (entry_edit.erased_after, ("delete",)),
+            (entry_edit.erased_word, ("c-w", "escape backspace")),
+            (entry_edit.moved_left, ("left",)),
+            (entry_edit.moved_right, ("right",)),
+            (entry_edit.moved_word_left, ("c-left",)),
+            (entry_edit.moved_word_right, ("c-right",)),
+            (entry_edit.moved_to_start, ("home", "c-home", "c-a")),
+            (entry_edit.moved_to_end, ("end", "c-end", "c-e")),
+            (entry_edit.confirmed, ("enter", "c-j")),
         )
         for change, keys in changes:
             self._bind(self._editing, partial(desk.change_entry, change), *keys)

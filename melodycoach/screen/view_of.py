@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING
 
 from melodycoach.core.event import PitchReading
 from melodycoach.core.evidence import Tally, placed_final, tally
-from melodycoach.core.function import Function, function_of, trade_words
+from melodycoach.core.function import Function, function_of
 from melodycoach.core.keyboard import keyboard_note
 from melodycoach.core.note import InputKind, Mark, Note
 from melodycoach.core.offmode import off_mode, off_mode_words
@@ -279,7 +279,6 @@ def _line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[Li
 
 def _ladder(mode: Mode, final_units: int, names: PitchNames) -> tuple[Rung, ...]:
     """Give the degrees of the mode in view as rungs, lowest first."""
-    words = trade_words(names.system.divisions)
     rungs = []
     for degree in mode.degrees:
         if degree in mode.passing:
@@ -290,7 +289,7 @@ def _ladder(mode: Mode, final_units: int, names: PitchNames) -> tuple[Rung, ...]
             Rung(
                 height=height,
                 name=names.name(names.system.units_to_cents(height)),
-                function=words.of(function) if function in _FUNCTIONS_ON_LADDER else "",
+                function=names.word(function.value) if function in _FUNCTIONS_ON_LADDER else "",
             )
         )
     return tuple(rungs)

@@ -20,6 +20,7 @@ from melodycoach.core.mode import (
     ModePack,
     Need,
     Neighbour,
+    Repertoire,
     Source,
     StepKind,
 )
@@ -211,7 +212,11 @@ def _pack(data: Mapping[str, Any]) -> ModePack:
         id=head["id"],
         name=head["name"],
         system=system,
-        names=PitchNames(system, tuple(_perde(one, system) for one in data.get("perde", ()))),
+        names=PitchNames(
+            system,
+            tuple(_perde(one, system) for one in data.get("perde", ())),
+            tuple(data.get("words", {}).items()),
+        ),
         theory=head["theory"],
         caution=head["caution"],
         modes=tuple(_mode(one, head["id"], system, families) for one in data["mode"]),
@@ -253,6 +258,7 @@ def _mode(item: Mapping[str, Any], pack_id: str, system: ToneSystem, families: M
         family=families.get(item.get("family", ""), ""),
         sources=MappingProxyType(sources),
         confidence=item.get("confidence", "medium"),
+        repertoire=Repertoire(item.get("repertoire", Repertoire.COMMON)),
     )
 
 

@@ -14,7 +14,8 @@ from dataclasses import dataclass
 from enum import IntEnum
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.core.mode import Course, Need, StepKind
+from melodycoach.core.function import Function
+from melodycoach.core.mode import Course, Need, Repertoire, StepKind
 from melodycoach.core.pitch import COMMAS_53, TONE_SYSTEMS, fold_name
 from melodycoach.errors import nearest_names
 from melodycoach.sources import pack_checks as checks
@@ -27,9 +28,16 @@ CONFIDENCES = ("high", "medium", "low")
 
 FACTS = (
     "rising", "falling", "below", "above", "passing", "played", "dominants", "leading", "suspended",
-    "course", "opening", "signature", "genera", "steps", "neighbours",
+    "course", "opening", "signature", "genera", "steps", "neighbours", "repertoire",
 )  # fmt: skip
 """What a mode's sources may be given for."""
+
+WORDS = (
+    *(one.value for one in (Function.FINAL, Function.DOMINANT, Function.LEADING, Function.SUSPENDED)),
+    "course",
+    *(one.value for one in Course),
+)
+"""The English terms that a pack may give the trade's own word for: those that the program shows."""
 
 _LONGEST_LABEL = 40
 
@@ -159,6 +167,7 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
     "pack file": (
         *_must("a table", "pack"),
         *_must("a list of tables", "mode"),
+        *_may("a table", "words"),
         *_may("a list of tables", "perde", "source", "family"),
         _range("mode", checks.shorter_than(1), "no mode, expected at least one"),
     ),
@@ -169,6 +178,7 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
         _range("id", checks.not_an_id, "id is {0!r}, expected small letters a-z, digits and single dashes"),
         _range("tone_system", checks.not_one_of(TONE_SYSTEMS), "tone_system is {0}; {1}"),
     ),
+    "words": (*_may("text", *WORDS), *_shown(*WORDS)),
     "perde": (
         *_must("text", "name", "note"),
         *_shown("name"),
@@ -182,7 +192,7 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
         *_must("text", "id", "name", "final", "course"),
         *_must("a list of whole numbers", "rising", "dominants", "opening"),
         *_must("a list of tables", "step"),
-        *_may("text", "family", "confidence"),
+        *_may("text", "family", "confidence", "repertoire"),
         *_may("a list of texts", "also", "signature"),
         *_may("a list of whole numbers", "falling", "below", "above", "passing", "leading", "suspended"),
         *_may("a whole number", "closes", "falling_closes"),
@@ -198,6 +208,7 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
         _range("final", checks.unreadable_note, "final is {0!r}, expected a written pitch such as 'F#4'"),
         _range("course", checks.not_one_of(Course), "course is {0!r}; {1}"),
         _range("confidence", checks.not_one_of(CONFIDENCES), "confidence is {0!r}; {1}"),
+        _range("repertoire", checks.not_one_of(Repertoire), "repertoire is {0!r}; {1}"),
         _range("signature", checks.unreadable_sign, "signature has {0!r}, expected a sign such as 'B-1'"),
         _range("closes", checks.far_from_octave, "closes is {0}, expected within {1} of the octave ({2})"),
         _range("falling_closes", checks.far_from_octave, "falling_closes is {0}, expected within {1} of {2}"),
@@ -253,7 +264,7 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
 }
 
 _CHILDREN: Mapping[str, tuple[str, ...]] = {
-    "pack file": ("pack", "perde", "source", "family", "mode"),
+    "pack file": ("pack", "words", "perde", "source", "family", "mode"),
     "mode": ("genera", "step", "neighbour", "sources"),
 }
 

@@ -11,7 +11,6 @@ from melodycoach.core.function import (
     key_of,
     nearest_degree,
     tolerance_units,
-    trade_words,
 )
 from melodycoach.core.mode import Course, Mode
 from melodycoach.core.note import InputKind
@@ -153,16 +152,3 @@ def test_an_octave_that_is_a_dominant_is_no_final() -> None:
     upper = mode(dominants=(53, 31))
     assert function_of(upper, 53, 53) is Function.DOMINANT
     assert function_of(upper, 0, 53) is Function.FINAL
-
-
-def test_makam_has_words_of_its_own_and_semitones_have_none() -> None:
-    # karar, güçlü, asma karar, yeden, seyir: common practice
-    words = trade_words(53)
-    assert [words.of(f) for f in (Function.FINAL, Function.SUSPENDED, Function.PASSING)] == [
-        "karar",
-        "asma karar",
-        "passing colour",
-    ]
-    assert words.beside(words.leading) == " (yeden)"
-    assert trade_words(12).of(Function.FINAL) == "final"
-    assert trade_words(12).beside("") == ""

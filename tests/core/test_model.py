@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from melodycoach.core.event import PitchReading
-from melodycoach.core.mode import Course, Mode, ModePack
+from melodycoach.core.mode import Course, Mode, ModePack, Repertoire
 from melodycoach.core.model import build_model, register_columns
 from melodycoach.core.ngram import Counts, Token, count_tokens
 from melodycoach.core.note import InputKind
@@ -39,11 +39,11 @@ def test_with_any_pitch_every_mode_stands_on_every_comma_of_the_octave() -> None
     assert model.tables(InputKind.TYPED).register is None
 
 
-def test_a_mode_on_which_few_sources_agree_has_the_smaller_prior() -> None:
-    unsure = replace(THREE[0], id="makam/unsure", confidence="low")
-    model = build_model(PACK, (*THREE, unsure), PitchReading.ANY)
+def test_a_rare_mode_has_the_smaller_prior() -> None:
+    rare = replace(THREE[0], id="makam/rare", repertoire=Repertoire.RARE)
+    model = build_model(PACK, (*THREE, rare), PitchReading.ANY)
     by_mode = np.exp(model.log_prior).reshape(-1, 4).sum(axis=0)
-    assert by_mode.tolist() == pytest.approx([4 / 13, 4 / 13, 4 / 13, 1 / 13])
+    assert by_mode.tolist() == pytest.approx([1 / 3.1, 1 / 3.1, 1 / 3.1, 0.1 / 3.1])
 
 
 def test_what_does_not_go_together_is_refused() -> None:

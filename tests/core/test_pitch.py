@@ -233,6 +233,35 @@ def test_a_named_pitch_is_found_by_its_place():
     assert SMALL.at(7) is None
 
 
+def test_the_word_of_the_trade_stands_in_the_place_of_the_english_one_or_beside_it():
+    # karar, güçlü, yeden, asma karar, seyir, çıkıcı, inici: common practice
+    names = load_pack("makam").names
+    words = ["final", "dominant", "leading tone", "suspended cadence", "course", "ascending", "descending"]
+    assert [names.word(english) for english in words] == [
+        "karar",
+        "güçlü",
+        "yeden",
+        "asma karar",
+        "seyir",
+        "çıkıcı",
+        "inici",
+    ]
+    assert names.word("ascending-descending") == "inici-çıkıcı"
+    assert names.beside("leading tone") == " (yeden)"
+
+
+def test_a_term_without_a_word_of_the_trade_is_said_in_english_alone():
+    # the words belong to the pack: the tone system alone brings none
+    assert PitchNames(COMMAS_53).word("dominant") == "dominant"
+    assert PitchNames(COMMAS_53).beside("dominant") == ""
+    half = PitchNames(COMMAS_53, words=(("dominant", "güçlü"),))
+    assert (half.word("dominant"), half.beside("final")) == ("güçlü", "")
+
+
+def test_names_and_words_can_be_hashed():
+    assert hash(load_pack("makam").names) == hash(load_pack("makam").names)
+
+
 def test_every_perde_of_the_makam_pack_is_written_and_named_both_ways():
     names = load_pack("makam").names
     assert len(names.named) >= 60

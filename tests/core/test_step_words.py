@@ -3,7 +3,7 @@
 import pytest
 
 from melodycoach.core.mode import CharacteristicStep, Mode, Need, StepKind
-from melodycoach.core.pitch import SEMITONES_12, PitchNames
+from melodycoach.core.pitch import COMMAS_53, SEMITONES_12, NamedPitch, PitchNames
 from melodycoach.core.step_words import step_label
 from melodycoach.sources.pack_file import load_pack
 
@@ -59,6 +59,23 @@ def test_a_mode_on_another_final_gets_the_names_of_that_place() -> None:
     half = CharacteristicStep("s", KIND.HALF_CADENCE, Need.CORE, (13, 22))
     # 22 commas over rast (9 under A4) are 13 over A4: çargâh
     assert step_label(half, ussak, PACK.names, final_units=-9) == "half cadence on çargâh (güçlü)"
+
+
+@pytest.mark.parametrize(
+    ("kind", "degrees", "words"),
+    [
+        (KIND.HALF_CADENCE, (13, 22), "half cadence on tower (beacon)"),
+        (KIND.FINAL_CADENCE, (8, 0), "final cadence on A4"),
+        (KIND.REGISTER, (0, -9), "below the final: down to G4"),
+    ],
+)
+def test_the_words_are_those_of_the_pack_not_of_its_tone_system(
+    kind: StepKind, degrees: tuple[int, ...], words: str
+) -> None:
+    tower = NamedPitch("tower", 22, COMMAS_53.spell(22))
+    names = PitchNames(COMMAS_53, (tower,), (("dominant", "beacon"),))
+    step = CharacteristicStep("s", kind, Need.CORE, degrees)
+    assert step_label(step, PACK.find("ussak"), names) == words
 
 
 def test_semitones_are_named_in_plain_english() -> None:

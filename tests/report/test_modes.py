@@ -7,7 +7,7 @@ from pathlib import Path
 
 import pytest
 
-from melodycoach.core.mode import ModePack
+from melodycoach.core.mode import ModePack, Repertoire
 from melodycoach.report.modes import mode_json, mode_text, modes_json, modes_text
 from melodycoach.sources.pack_file import load_pack, read_pack
 
@@ -129,6 +129,43 @@ def test_a_third_dominant_is_counted() -> None:
     assert "third dominant (güçlü)" in mode_text(MAKAM, mode, 80)
 
 
+@pytest.mark.parametrize(
+    ("repertoire", "says"),
+    [
+        (Repertoire.COMMON, "often heard"),
+        (Repertoire.OCCASIONAL, "heard at times"),
+        (Repertoire.RARE, "rarely heard"),
+    ],
+)
+def test_how_often_the_repertoire_uses_a_mode_is_said_in_words(repertoire: Repertoire, says: str) -> None:
+    mode = replace(MAKAM.find("rast"), repertoire=repertoire)
+    pack = replace(MAKAM, modes=(mode,))
+    assert f"in the repertoire {says}" in squeezed(mode_text(MAKAM, mode, 80))
+    listed = f"{says[:1].upper()}{says[1:]} in the repertoire: Rast." in modes_text(pack, 80)
+    assert listed is (repertoire is not Repertoire.COMMON)
+    assert mode_json(MAKAM, mode)["repertoire"] == repertoire.value
+    assert [one["repertoire"] for one in modes_json(pack)["modes"]] == [repertoire.value]
+
+
+# --- words
+
+
+def test_a_pack_of_commas_without_words_is_told_in_english_alone() -> None:
+    pack = replace(MAKAM, names=replace(MAKAM.names, words=()))
+    for text in (modes_text(pack, 120), mode_text(pack, pack.find("huseyni"), 80)):
+        for word in ("karar", "güçlü", "yeden", "seyir", "inici", "çıkıcı"):
+            assert word not in text
+    assert modes_json(pack)["words"] == mode_json(pack, pack.modes[0])["words"] == {}
+
+
+def test_json_gives_the_words_of_the_pack_by_their_english_terms() -> None:
+    # the words: common practice
+    words = modes_json(MAKAM)["words"]
+    assert words == mode_json(MAKAM, MAKAM.find("rast"))["words"]
+    assert words["dominant"] == "güçlü"
+    assert words["leading tone"] == "yeden"
+
+
 # --- a pack of another tone system, with the fewest keys
 
 
@@ -161,7 +198,7 @@ def test_json_names_places_by_degree_perde_and_written_pitch() -> None:
     data = mode_json(MAKAM, MAKAM.find("huseyni"))
     assert data["final"] == {"degree": 0, "name": "dügâh", "written": "A4"}
     assert data["dominants"] == [{"degree": 31, "name": "hüseynî", "written": "E5"}]
-    assert data["course_word"] == "inici-çıkıcı"
+    assert data["words"][data["course"]] == "inici-çıkıcı"
     second = next(one for one in data["degrees"] if one["degree"] == 8)
     assert (second["cents"], second["written"]) == (181.1, "B4-1")  # 8 * 1200 / 53 = 181.13
     final = next(one for one in data["degrees"] if one["degree"] == 0)

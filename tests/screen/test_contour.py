@@ -97,10 +97,17 @@ def test_a_narrow_ladder_keeps_names_and_drops_functions(views: Mapping[str, Vie
     assert any(line.strip().startswith("hüseynî ┤") for line in lines)
 
 
-def test_a_long_function_is_shortened_beside_its_name(views: Mapping[str, ViewState]) -> None:
+def test_a_function_that_does_not_fit_beside_its_name_is_left_out(views: Mapping[str, ViewState]) -> None:
     ladder = (Rung(0, "acemaşîran", "suspended cadence"), Rung(9, "rast", "final"))
     view = replace(views["decided"], ladder=ladder, line=(note(1, 0, "acemaşîran"),))
-    assert "suspe" in "".join(drawn(view, 100, 3))
+    text = "\n".join(drawn(view, 60, 3))
+    assert "susp" not in text
+    assert "final rast ┤" in text
+
+
+def test_notes_off_the_mode_in_a_row_do_not_write_over_each_other(views: Mapping[str, ViewState]) -> None:
+    notes = tuple(note(number, 8, "segâh", off_mode="not in it") for number in range(21, 24))
+    assert drawn(small(views["decided"], *notes), 40, 6)[-1].split() == ["✗", "✗", "✗23"]
 
 
 def test_no_room_and_no_notes_draw_nothing_much(views: Mapping[str, ViewState]) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import sys
 import time
 from dataclasses import replace
 from pathlib import Path
@@ -12,6 +13,7 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 from melodycoach.screen import entry as typing
+from melodycoach.screen import entry_edit, entry_merge
 from melodycoach.screen import question as asking
 from melodycoach.screen.draw import draw, draw_help, picture
 from melodycoach.screen.entry import Entry, entry_of
@@ -44,12 +46,12 @@ def text_of(view: ViewState, columns: int, rows: int, *more: object, ascii_only:
 
 def with_refused_word(view: ViewState) -> Entry:
     """Give the entry in which a word was typed that is no note."""
-    entry = typing.inserted(entry_of(view.tokens), "H5 ")
+    entry = entry_edit.inserted(entry_of(view.tokens), "H5 ")
     edit = typing.due(entry)
     assert edit is not None
     sentence = "entry: column 1: 'H5' is no note; did you mean 'A5'?"
     refusals = (Refusal(1, sentence, ("H5",)),)
-    return typing.arrived(typing.handed_over(entry, edit, 1), view.tokens, 1, refusals)
+    return entry_merge.arrived(typing.handed_over(entry, edit, 1), view.tokens, 1, refusals)
 
 
 def asked() -> Question:
@@ -174,7 +176,7 @@ def test_the_note_under_the_cursor_of_the_entry_is_shown_in_the_contour(
     views: dict[str, ViewState],
 ) -> None:
     view = views["long"]
-    entry = typing.moved_to_start(entry_of(view.tokens))
+    entry = entry_edit.moved_to_start(entry_of(view.tokens))
     lines = draw(view, 80, 24, entry)
     assert any("class:note.focus" in style for line in lines for style, _ in line)
     assert " 1 " in plain_text(lines[-5])
@@ -183,7 +185,7 @@ def test_the_note_under_the_cursor_of_the_entry_is_shown_in_the_contour(
 
 def test_the_cursor_stands_behind_what_is_typed(views: dict[str, ViewState]) -> None:
     view = views["undecided"]
-    drawn = picture(view, 80, 24, typing.inserted(entry_of(view.tokens), "G4"))
+    drawn = picture(view, 80, 24, entry_edit.inserted(entry_of(view.tokens), "G4"))
     assert plain_text(drawn.lines[drawn.row])[: drawn.column] == "› D5 E5 D5 C5:2 , G4"
 
 
@@ -261,7 +263,7 @@ QUESTIONS = st.none() | st.builds(
 def test_any_view_fills_any_size_exactly(
     view: ViewState, columns: int, rows: int, question: Question | None, typed: str, ascii_only: bool
 ) -> None:
-    entry = typing.inserted(entry_of(view.tokens), typed)
+    entry = entry_edit.inserted(entry_of(view.tokens), typed)
     drawn = picture(view, columns, rows, entry, question, ascii_only)
     assert len(drawn.lines) == rows
     assert [line_width(line) for line in drawn.lines] == [columns] * rows
@@ -307,4 +309,5 @@ def test_the_largest_usual_screen_is_drawn_in_five_milliseconds(views: dict[str,
         start_s = time.perf_counter()
         draw(view, 120, 40)
         times_s.append(time.perf_counter() - start_s)
-    assert min(times_s) < 0.005
+    slowed_down = 4 if sys.gettrace() else 1  # by the measuring of coverage
+    assert min(times_s) < 0.005 * slowed_down

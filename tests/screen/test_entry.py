@@ -10,6 +10,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from melodycoach.screen import entry as typing
+from melodycoach.screen import entry_edit, entry_merge
 from melodycoach.screen.entry import Edit, Entry, entry_of
 from melodycoach.screen.view import Refusal
 
@@ -73,7 +74,7 @@ class Line:
         return typing.awaiting(entry, self.number)
 
     def answer(self, entry: Entry) -> Entry:
-        return self.send(typing.arrived(entry, self.tokens, self.handled, self.refusals))
+        return self.send(entry_merge.arrived(entry, self.tokens, self.handled, self.refusals))
 
     def settle(self, entry: Entry) -> Entry:
         for _ in range(100):
@@ -87,13 +88,13 @@ class Line:
 def type_keys(line: Line, entry: Entry, keys: str) -> Entry:
     """Press keys one by one: ``<`` is backspace, ``[`` and ``]`` are left and right, ``$`` is Enter."""
     moves = {
-        "<": typing.erased_before,
-        "[": typing.moved_left,
-        "]": typing.moved_right,
-        "$": typing.confirmed,
+        "<": entry_edit.erased_before,
+        "[": entry_edit.moved_left,
+        "]": entry_edit.moved_right,
+        "$": entry_edit.confirmed,
     }
     for key in keys:
-        entry = moves[key](entry) if key in moves else typing.inserted(entry, key)
+        entry = moves[key](entry) if key in moves else entry_edit.inserted(entry, key)
         entry = line.send(entry)
     return entry
 
@@ -170,7 +171,7 @@ def test_the_cursor_at_the_end_stays_behind_played_notes() -> None:
 
 def test_the_cursor_in_the_middle_stays_where_it_is_while_notes_are_played() -> None:
     line = Line(("A4", "B4", "C5"))
-    entry = typing.moved_to(entry_of(line.tokens), 4)
+    entry = entry_edit.moved_to(entry_of(line.tokens), 4)
     line.play("D5")
     entry = line.answer(entry)
     assert (entry.text, entry.cursor) == ("A4 B4 C5 D5 ", 4)
@@ -178,7 +179,7 @@ def test_the_cursor_in_the_middle_stays_where_it_is_while_notes_are_played() -> 
 
 def test_retyping_a_word_in_the_middle_replaces_its_item_when_the_cursor_leaves_it() -> None:
     line = Line(("A4", "B4", "C5"))
-    entry = typing.moved_to(entry_of(line.tokens), 5)
+    entry = entry_edit.moved_to(entry_of(line.tokens), 5)
     entry = type_keys(line, entry, "-1")
     assert line.edits == []
     entry = line.settle(type_keys(line, entry, "]"))
@@ -195,7 +196,7 @@ def test_deleting_a_word_takes_its_item_away_at_once() -> None:
 
 def test_a_deleted_word_can_be_typed_anew_in_its_place() -> None:
     line = Line(("A4", "B4", "C5"))
-    entry = typing.moved_to(entry_of(line.tokens), 5)
+    entry = entry_edit.moved_to(entry_of(line.tokens), 5)
     entry = line.settle(type_keys(line, entry, "<<"))
     assert (line.tokens, entry.text) == (("A4", "C5"), "A4  C5 ")
     entry = line.settle(type_keys(line, entry, "G4 "))
@@ -204,7 +205,7 @@ def test_a_deleted_word_can_be_typed_anew_in_its_place() -> None:
 
 def test_a_word_typed_back_to_what_it_was_changes_nothing() -> None:
     line = Line(("A4", "B4-1"))
-    entry = typing.moved_to(entry_of(line.tokens), 7)
+    entry = entry_edit.moved_to(entry_of(line.tokens), 7)
     entry = type_keys(line, entry, "<<-1 ")
     assert line.edits == []
     assert not typing.has_pending(entry)
@@ -212,14 +213,14 @@ def test_a_word_typed_back_to_what_it_was_changes_nothing() -> None:
 
 def test_one_word_split_in_two_becomes_two_items() -> None:
     line = Line(("A4B4",))
-    entry = typing.moved_to(entry_of(line.tokens), 2)
+    entry = entry_edit.moved_to(entry_of(line.tokens), 2)
     entry = line.settle(type_keys(line, entry, " $"))
     assert (line.tokens, entry.items) == (("A4", "B4"), (0, 1))
 
 
 def test_two_words_joined_stand_for_both_items_until_they_are_parted() -> None:
     line = Line(("A4", "B4"))
-    entry = type_keys(line, typing.moved_to(entry_of(line.tokens), 3), "<")
+    entry = type_keys(line, entry_edit.moved_to(entry_of(line.tokens), 3), "<")
     assert (entry.text, entry.items, line.edits) == ("A4B4 ", (None,), [])
     entry = type_keys(line, entry, " ")
     assert (entry.items, line.edits) == ((0, 1), [])
@@ -244,7 +245,7 @@ def test_notes_behind_a_refused_word_are_taken_all_the_same() -> None:
 def test_a_refused_word_that_is_mended_lands_in_its_place() -> None:
     line = Line()
     entry = line.settle(type_keys(line, entry_of(()), "A4 x5 B4 "))
-    entry = typing.moved_to(entry, 4)
+    entry = entry_edit.moved_to(entry, 4)
     entry = line.settle(type_keys(line, entry, "<G]$"))
     assert (line.tokens, entry.items) == (("A4", "G5", "B4"), (0, 1, 2))
     assert typing.complaint(entry) == ""
@@ -262,7 +263,7 @@ def test_enter_tries_a_refused_word_once_more() -> None:
 
 def test_a_refused_word_in_place_of_an_item_leaves_the_line_as_it_was() -> None:
     line = Line(("A4", "B4", "C5"))
-    entry = typing.moved_to(entry_of(line.tokens), 4)
+    entry = entry_edit.moved_to(entry_of(line.tokens), 4)
     entry = line.settle(type_keys(line, entry, "x$"))
     assert line.tokens == ("A4", "B4", "C5")
     assert (entry.text, entry.items) == ("A4 Bx4 C5 ", (0, None, 2))
@@ -271,18 +272,20 @@ def test_a_refused_word_in_place_of_an_item_leaves_the_line_as_it_was() -> None:
 
 
 def test_a_refusal_without_words_marks_the_whole_edit() -> None:
-    entry = typing.inserted(entry_of(()), "A4 B4 ")
+    entry = entry_edit.inserted(entry_of(()), "A4 B4 ")
     edit = typing.due(entry)
     assert edit is not None
-    entry = typing.arrived(typing.handed_over(entry, edit, 1), (), 1, (Refusal(1, "why"),))
+    entry = entry_merge.arrived(typing.handed_over(entry, edit, 1), (), 1, (Refusal(1, "why"),))
     assert [span.state for span in typing.spans(entry)] == ["unreadable", "unreadable"]
 
 
 def test_a_refused_deletion_shows_the_tokens_again() -> None:
-    entry = typing.erased_before(typing.erased_before(typing.erased_before(entry_of(("A4", "B4")))))
+    entry = entry_edit.erased_before(
+        entry_edit.erased_before(entry_edit.erased_before(entry_of(("A4", "B4"))))
+    )
     edit = typing.due(entry)
     assert edit == Edit(1, 2, (), ("B4",), 1)
-    entry = typing.arrived(typing.handed_over(entry, edit, 1), ("A4", "B4"), 1, (Refusal(1, "no"),))
+    entry = entry_merge.arrived(typing.handed_over(entry, edit, 1), ("A4", "B4"), 1, (Refusal(1, "no"),))
     assert entry.text.split() == ["A4", "B4"]
     assert typing.due(entry) is None
 
@@ -321,68 +324,76 @@ def test_a_refusal_is_seen_although_undo_was_pressed_before_it_came() -> None:
 
 
 def test_pending_words_can_be_taken_back_and_brought_again() -> None:
-    entry = typing.inserted(entry_of(("A4",)), "B4")
+    entry = entry_edit.inserted(entry_of(("A4",)), "B4")
     plain = typing.taken_back(entry)
     assert (plain.text, typing.has_pending(plain)) == ("A4 ", False)
     assert typing.brought_again(plain) == entry
-    other = typing.arrived(plain, ("A4", "C5"), 0)
+    other = entry_merge.arrived(plain, ("A4", "C5"), 0)
     assert typing.brought_again(other) is None
     assert typing.brought_again(entry) is None
 
 
 def test_typed_line_ends_and_control_characters_become_spaces_or_nothing() -> None:
-    assert typing.inserted(entry_of(()), "A4\nB4\t\x1bC5").text == "A4 B4 C5"
+    assert entry_edit.inserted(entry_of(()), "A4\nB4\t\x1bC5").text == "A4 B4 C5"
 
 
 @pytest.mark.parametrize(
     ("move", "cursor"),
     [
-        (typing.moved_left, 4),
-        (typing.moved_right, 6),
-        (typing.moved_word_left, 3),
-        (typing.moved_word_right, 7),
-        (typing.moved_to_start, 0),
-        (typing.moved_to_end, 8),
+        (entry_edit.moved_left, 4),
+        (entry_edit.moved_right, 6),
+        (entry_edit.moved_word_left, 3),
+        (entry_edit.moved_word_right, 7),
+        (entry_edit.moved_to_start, 0),
+        (entry_edit.moved_to_end, 8),
     ],
 )
 def test_the_cursor_moves(move: Callable[[Entry], Entry], cursor: int) -> None:
-    assert move(typing.moved_to(entry_of(("A4", "B4-1")), 5)).cursor == cursor
+    assert move(entry_edit.moved_to(entry_of(("A4", "B4-1")), 5)).cursor == cursor
 
 
 def test_the_cursor_stops_at_both_ends() -> None:
-    entry = typing.moved_to_start(entry_of(("A4",)))
-    assert typing.moved_left(entry) == entry
-    assert typing.moved_word_left(entry) == entry
-    assert typing.erased_before(entry) == entry
-    assert typing.erased_word(entry) == entry
-    end = typing.moved_to_end(entry)
-    assert typing.moved_right(end) == end
-    assert typing.moved_word_right(end) == end
-    assert typing.erased_after(end) == end
+    entry = entry_edit.moved_to_start(entry_of(("A4",)))
+    assert entry_edit.moved_left(entry) == entry
+    assert entry_edit.moved_word_left(entry) == entry
+    assert entry_edit.erased_before(entry) == entry
+    assert entry_edit.erased_word(entry) == entry
+    end = entry_edit.moved_to_end(entry)
+    assert entry_edit.moved_right(end) == end
+    assert entry_edit.moved_word_right(end) == end
+    assert entry_edit.erased_after(end) == end
 
 
 def test_a_letter_and_the_marks_upon_it_are_one_step() -> None:
-    entry = typing.inserted(entry_of(()), "du\u0308g")
-    left = typing.moved_left(typing.moved_left(entry))
+    entry = entry_edit.inserted(entry_of(()), "du\u0308g")
+    left = entry_edit.moved_left(entry_edit.moved_left(entry))
     assert left.cursor == 1
-    assert typing.moved_right(left).cursor == 3
-    assert typing.erased_after(left).text == "dg"
-    assert typing.erased_before(typing.moved_left(entry)).text == "dg"
+    assert entry_edit.moved_right(left).cursor == 3
+    assert entry_edit.erased_after(left).text == "dg"
+    assert entry_edit.erased_before(entry_edit.moved_left(entry)).text == "dg"
 
 
 def test_erasing_a_word_goes_back_to_its_start() -> None:
-    assert typing.erased_word(entry_of(("A4", "B4-1"))).text == "A4 "
+    assert entry_edit.erased_word(entry_of(("A4", "B4-1"))).text == "A4 "
 
 
 def test_the_item_under_the_cursor_is_known() -> None:
     entry = entry_of(("A4", "B4"))
-    assert [typing.item_at(typing.moved_to(entry, place)) for place in range(7)] == [0, 0, 0, 1, 1, 1, None]
+    assert [typing.item_at(entry_edit.moved_to(entry, place)) for place in range(7)] == [
+        0,
+        0,
+        0,
+        1,
+        1,
+        1,
+        None,
+    ]
 
 
 def test_the_whole_line_can_be_exchanged_under_the_entry() -> None:
-    entry = typing.arrived(entry_of(("A4", "B4", "C5")), ("G4", "F4", "E4"), 0)
+    entry = entry_merge.arrived(entry_of(("A4", "B4", "C5")), ("G4", "F4", "E4"), 0)
     assert (entry.text, entry.items) == ("G4 F4 E4 ", (0, 1, 2))
-    assert typing.arrived(entry, (), 0).text.strip() == ""
+    assert entry_merge.arrived(entry, (), 0).text.strip() == ""
 
 
 # -------------------------------------------------------------------------------------- laws
@@ -412,7 +423,7 @@ def act(line: Line, entry: Entry, action: tuple[str, str]) -> Entry:
         case ("undo", _):
             return line.undo(entry)
         case ("move", place):
-            return line.send(typing.moved_to(entry, int(place)))
+            return line.send(entry_edit.moved_to(entry, int(place)))
     return entry
 
 
@@ -425,7 +436,7 @@ def test_text_and_line_agree_once_everything_is_answered(
     for action in actions:
         entry = act(line, entry, action)
         check(entry)
-    entry = line.settle(line.send(typing.confirmed(line.settle(entry))))
+    entry = line.settle(line.send(entry_edit.confirmed(line.settle(entry))))
     check(entry)
     assert entry.base == line.tokens
     assert all(span.state != "pending" for span in typing.spans(entry))
@@ -455,7 +466,7 @@ def test_nothing_typed_or_played_is_lost_and_each_keeps_its_order(moments: list[
             entry = line.answer(entry)
         else:
             typed.append(moment)
-            entry = type_keys(line, typing.moved_to_end(entry), moment + " ")
+            entry = type_keys(line, entry_edit.moved_to_end(entry), moment + " ")
         check(entry)
     entry = line.settle(entry)
     words = entry.text.split()
@@ -483,7 +494,7 @@ def test_words_that_cannot_be_read_stay_whatever_happens_to_the_line(moments: li
             case "answer":
                 entry = line.answer(entry)
             case _:
-                entry = type_keys(line, typing.moved_to_end(entry), moment + " ")
+                entry = type_keys(line, entry_edit.moved_to_end(entry), moment + " ")
         check(entry)
     entry = line.settle(entry)
     wrong = [word for word in entry.text.split() if not readable(word)]
@@ -504,7 +515,7 @@ def test_an_edit_inside_the_line_and_played_notes_commute(
 
     def edit(line: Line, entry: Entry) -> Entry:
         end = [span.hi for span in typing.spans(entry)][word]
-        return line.settle(type_keys(line, typing.moved_to(entry, end), keys))
+        return line.settle(type_keys(line, entry_edit.moved_to(entry, end), keys))
 
     def play(line: Line, entry: Entry) -> Entry:
         for token in played:
@@ -523,8 +534,8 @@ def test_an_edit_inside_the_line_and_played_notes_commute(
 
 @given(st.text(max_size=30), st.integers(0, 30), st.integers(0, 30), st.text(max_size=10))
 def test_any_text_can_be_typed_anywhere(text: str, one: int, other: int, new: str) -> None:
-    entry = typing.inserted(entry_of(("A4", "B4")), text)
+    entry = entry_edit.inserted(entry_of(("A4", "B4")), text)
     lo, hi = sorted((min(one, len(entry.text)), min(other, len(entry.text))))
-    entry = typing.edited(entry, lo, hi, new)
+    entry = entry_edit.edited(entry, lo, hi, new)
     check(entry)
     assert "\n" not in entry.text

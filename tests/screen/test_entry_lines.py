@@ -8,7 +8,7 @@ from itertools import pairwise
 from hypothesis import given
 from hypothesis import strategies as st
 
-from melodycoach.screen import entry as typing
+from melodycoach.screen import entry_edit
 from melodycoach.screen import question as asking
 from melodycoach.screen.entry import entry_of
 from melodycoach.screen.entry_lines import (
@@ -62,19 +62,19 @@ def test_the_rows_round_the_cursor_are_shown_and_the_margin_tells_of_others() ->
     end = draw_entry(entry, 10, 2, UNICODE)
     assert [plain_text(line) for line in end.lines] == ["… C5 D5:2 ", "  E5 "]
     assert (end.row, end.column) == (1, 5)
-    start = draw_entry(typing.moved_to_start(entry), 10, 2, UNICODE)
+    start = draw_entry(entry_edit.moved_to_start(entry), 10, 2, UNICODE)
     assert [plain_text(line) for line in start.lines] == ["› A4 B4-1 ", "… C5 D5:2 "]
     assert (start.row, start.column) == (0, 2)
 
 
 def test_pending_words_are_underlined() -> None:
-    entry = typing.inserted(entry_of(("A4",)), "C5")
+    entry = entry_edit.inserted(entry_of(("A4",)), "C5")
     line = draw_entry(entry, 20, 1, UNICODE).lines[0]
     assert ("class:entry.pending", "C5") in line
 
 
 def test_a_pending_word_broken_over_rows_is_underlined_on_each() -> None:
-    entry = typing.inserted(entry_of(()), "sultanîyegâh")
+    entry = entry_edit.inserted(entry_of(()), "sultanîyegâh")
     lines = draw_entry(entry, 8, 3, UNICODE).lines
     assert [line[-2] for line in lines] == [
         ("class:entry.pending", "sultan"),
@@ -126,8 +126,8 @@ def test_rows_cover_the_text_and_each_fits(text: str, columns: int) -> None:
 
 @given(st.text(st.sampled_from("A4 B-1â"), max_size=60), st.integers(1, 30), st.integers(1, 5), st.data())
 def test_the_cursor_is_always_on_the_screen(text: str, columns: int, rows: int, data: st.DataObject) -> None:
-    entry = typing.inserted(entry_of(("A4", "B4")), text)
-    entry = typing.moved_to(entry, data.draw(st.integers(0, len(entry.text))))
+    entry = entry_edit.inserted(entry_of(("A4", "B4")), text)
+    entry = entry_edit.moved_to(entry, data.draw(st.integers(0, len(entry.text))))
     drawn = draw_entry(entry, columns, rows, UNICODE)
     assert 0 <= drawn.row < len(drawn.lines) <= rows
     assert 0 <= drawn.column < columns

@@ -15,6 +15,7 @@ from melodycoach.screen.panels import (
     draw_why,
     gain_words,
     owed_title,
+    theory_words,
     title_line,
     why_title,
 )
@@ -146,7 +147,7 @@ def test_a_need_that_the_pack_makes_up_gets_a_heading_too(views: Mapping[str, Vi
 def test_titles_name_the_mode_the_aim_and_the_rival(views: Mapping[str, ViewState]) -> None:
     assert owed_title(views["decided"], UNICODE) == ("owed · Hüseynî", "3 of 8 heard")
     assert owed_title(views["target"], UNICODE)[0] == "owed · Sultânîyegâh (your aim)"
-    assert owed_title(replace(views["nothing"], owed=(), in_view=""), UNICODE) == ("owed", "")
+    assert owed_title(views["nothing"], UNICODE) == ("owed", "")
     assert why_title(views["decided"]) == "why Hüseynî, not Muhayyer"
     assert why_title(views["nothing"]) == "why"
 
@@ -190,6 +191,12 @@ def test_the_status_says_input_tuning_log_and_theory_as_room_allows(views: Mappi
     )
     assert two.startswith("Arel-Ezgi-Uzdilek theory")
     assert texts(draw_status(view, 80, 3, UNICODE))[2].startswith("log: ")
+
+
+def test_theory_and_caution_are_two_sentences(views: Mapping[str, ViewState]) -> None:
+    view = replace(views["decided"], theory="AEU theory", caution="schools differ")
+    assert theory_words(view) == "AEU theory. schools differ"
+    assert theory_words(replace(view, theory="")) == "schools differ"
 
 
 def test_keys_are_shown_as_far_as_they_fit_and_only_when_they_do_something(

@@ -11,7 +11,7 @@ from pathlib import Path
 
 import pytest
 
-from melodycoach.core.mode import Course, Mode, ModePack, Need, StepKind
+from melodycoach.core.mode import Course, Mode, ModePack, Need, Repertoire, StepKind
 from melodycoach.core.pitch import LETTERS, fold_name
 from melodycoach.sources.pack_file import SHIPPED, read_pack
 
@@ -281,7 +281,22 @@ def test_segah_huzzam_and_mustear_lead_into_segah_from_kurdi() -> None:
         assert name(mode(slug), mode(slug).leading[0]) == "kürdî"
 
 
+def test_the_makams_that_everybody_learns_are_common_and_the_pack_knows_rare_ones() -> None:
+    # from memory: no count of the repertoire was at hand
+    for slug in ("rast", "ussak", "hicaz", "huseyni", "segah", "nihavend", "saba", "kurdilihicazkar"):
+        assert mode(slug).repertoire is Repertoire.COMMON
+    for slug in ("arazbar", "nisabur", "sazkar"):
+        assert mode(slug).repertoire is Repertoire.RARE
+    assert mode("evcara").repertoire is Repertoire.OCCASIONAL
+
+
 # --- the pack against itself
+
+
+def test_each_mode_says_how_common_it_is_and_that_this_is_from_memory() -> None:
+    for table in tomllib.loads(FILE.read_text(encoding="utf-8"))["mode"]:
+        assert table["repertoire"] == mode(table["id"]).repertoire
+        assert table["sources"]["repertoire"] == ["memory"]
 
 
 def test_the_pack_has_all_the_modes_that_are_measured_and_many_more() -> None:

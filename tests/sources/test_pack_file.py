@@ -13,6 +13,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from melodycoach.core.mode import Course, Repertoire
 from melodycoach.core.pitch import COMMAS_53, SEMITONES_12
 from melodycoach.errors import MelodycoachError, PackError, StorageError, UnknownNameError
 from melodycoach.sources import pack_rules
@@ -265,6 +266,17 @@ def test_the_manual_explains_every_key_and_shows_the_real_words() -> None:
 
 def test_the_words_of_the_rules_name_all_facts_that_sources_may_be_given_for() -> None:
     assert {rule.key for rule in RULES["sources"]} == set(pack_rules.FACTS)
+
+
+def test_the_words_that_a_pack_may_give_are_those_for_functions_and_courses() -> None:
+    terms = {"final", "dominant", "leading tone", "suspended cadence", "course", *Course}
+    assert {rule.key for rule in RULES["words"]} == set(pack_rules.WORDS) == terms
+
+
+def test_a_pack_without_words_or_repertoire_is_english_and_common(tmp_path: Path) -> None:
+    pack = read_pack(write(tmp_path / "least.toml"))
+    assert pack.names.words == ()
+    assert pack.modes[0].repertoire is Repertoire.COMMON
 
 
 # --- finding
