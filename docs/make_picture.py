@@ -1,9 +1,10 @@
 """Draw the picture of the README from the real screen: ``python docs/make_picture.py``.
 
-The demo is played through the live path up to a moment of its last part, and the screen of that
+The demo is played through the live path up to a moment of its third part, and the screen of that
 moment is written as SVG, cell by cell.
 """
 
+import re
 from html import escape
 from pathlib import Path
 
@@ -17,7 +18,7 @@ from melodycoach.sources.pack_file import load_pack
 
 PICTURE = Path(__file__).with_name("screen.svg")
 COLUMNS, ROWS = 120, 40
-MOMENT_S = 40.0
+MOMENT_S = 34.0
 CELL_WIDTH, CELL_HEIGHT = 8.4, 18
 PAPER, INK = "#16181d", "#d8dbe2"
 COLOURS = {
@@ -42,10 +43,10 @@ def main() -> None:
     width, height = COLUMNS * CELL_WIDTH + 24, ROWS * CELL_HEIGHT + 24
     PICTURE.write_text(
         f'<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 {width:.0f} {height}" role="img" '
-        f'aria-label="The screen of melodycoach in the last part of its demo">\n'
+        f'aria-label="The screen of melodycoach in the third part of its demo">\n'
         f'<rect width="100%" height="100%" rx="8" fill="{PAPER}"/>\n'
         f'<g font-family="DejaVu Sans Mono, Menlo, Consolas, monospace" font-size="14" fill="{INK}" '
-        f'xml:space="preserve">\n' + "\n".join(rows) + "\n</g>\n</svg>\n",
+        ">\n" + "\n".join(rows) + "\n</g>\n</svg>\n",
         encoding="utf-8",
     )
 
@@ -61,17 +62,17 @@ class Moment:
 
 
 def svg_row(line: list[tuple[str, str]], row: int) -> str:
-    """Write one line; each run of text keeps to its cells, whatever the font measures."""
-    runs, column = [], 0
+    """Write one line; each word keeps to its cells, whatever the font measures."""
+    words, column = [], 0
     for style, text in line:
-        if text.strip():
-            x, y = 12 + column * CELL_WIDTH, 26 + row * CELL_HEIGHT
-            runs.append(
-                f'<text x="{x:.1f}" y="{y}" textLength="{len(text) * CELL_WIDTH:.1f}"{paint(style)}>'
-                f"{escape(text)}</text>"
+        for word in re.finditer(r"\S+", text):
+            x, y = 12 + (column + word.start()) * CELL_WIDTH, 26 + row * CELL_HEIGHT
+            length = len(word[0]) * CELL_WIDTH
+            words.append(
+                f'<text x="{x:.1f}" y="{y}" textLength="{length:.1f}"{paint(style)}>{escape(word[0])}</text>'
             )
         column += len(text)
-    return "".join(runs)
+    return "".join(words)
 
 
 def paint(style: str) -> str:

@@ -58,8 +58,8 @@ STAGES = (
     ),
     Stage(
         "the line turns to Hicaz on the same karar: watch the change being noticed",
-        "D5 E5 D5 C#5 Bb4+1 A4:2 Bb4+1 C#5 D5:3 , E5 D5 C#5 D5 C#5 Bb4+1 A4:2 , "
-        "C#5 D5 E5 D5 C#5 Bb4+1 A4:2 G4 A4:3 .",
+        "D5 E5 D5 C#5 Bb4+1 A4:2 Bb4+1 C#5 D5:3 , D5 E5 F#5 G5 F5 E5 D5:3 , "
+        "D5 C#5 Bb4+1 C#5 D5:2 C#5 Bb4+1 A4:2 G4 A4:3 .",
     ),
 )
 HAND_OVER = "the demo is over and the line is yours: play, type, undo, or make a fresh start"

@@ -84,18 +84,14 @@ def tuning_sentence(tracker: PitchTracker) -> str:
     """Say which tuning a keyboard is believed to have, and why.
 
     >>> tuning_sentence(PitchTracker())
-    'plain twelve keys (no bend or tuning has been received): a key stands for every perde near it'
+    'plain keys (no bend was sent): each stands for every perde near it'
     """
     tunings = tracker.tunings()
     if not tunings:
-        return "plain twelve keys (no bend or tuning has been received): a key stands for every perde near it"
-    newest = max(tunings, key=lambda tuning: abs(tuning.bend_cents) + abs(tuning.tuning_cents))
-    reason = "sent by the keyboard" if newest.range_sent else "MIDI's default, none was sent"
-    return (
-        f"bends are read on channel {newest.channel}: "
-        f"now {newest.bend_cents + newest.tuning_cents:+.0f} cents, "
-        f"range ±{newest.range_cents / 100:g} semitones ({reason})"
-    )
+        return "plain keys (no bend was sent): each stands for every perde near it"
+    bent = max(tunings, key=lambda tuning: abs(tuning.bend_cents) + abs(tuning.tuning_cents))
+    reason = "sent by the keyboard" if bent.range_sent else "none was sent: MIDI's default"
+    return f"bends read on channel {bent.channel}, range ±{bent.range_cents / 100:g} semitones ({reason})"
 
 
 class DemoKeyboard:

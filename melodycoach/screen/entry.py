@@ -10,7 +10,8 @@ any more, are one *gap*: what was typed, in place of what was taken away.
 Words are handed over as soon as the cursor touches none of them (a space does that), or on Enter.
 One edit at a time is under way; until it is answered its words count as if they had been taken.
 A refused word stays in the text, is never lost, and is not handed over again until it changes.
-`entry_edit` holds what keys do to an entry, `entry_merge` what arrives from the session. Every function gives a new `Entry`; nothing is changed in place.
+`entry_edit` holds what keys do to an entry, `entry_merge` what arrives from the session. Every function
+gives a new `Entry`; nothing is changed in place.
 """
 
 from __future__ import annotations
