@@ -241,7 +241,7 @@ def _choices(coach: Coach) -> Callable[[str], tuple[str, ...]]:
             case "final":
                 return ("written", "any", *(pitch.name for pitch in session.pack.names.named))
             case "port":
-                return tuple(port.name for port in list_ports().inputs)
+                return coach.inputs()
             case _:
                 return ()
 

@@ -107,6 +107,9 @@ class Player(Protocol):
     def tuning_line(self) -> str:
         """Say in a sentence which tuning is believed, and why."""
 
+    def inputs(self) -> tuple[str, ...]:
+        """Name the inputs that can be listened to; any thread may ask."""
+
     def choose(self, name: str) -> None:
         """Listen to the input of this name, or to a part of it."""
 
@@ -165,6 +168,10 @@ class Coach:
         """The pitch names of the pack in use."""
         return self.session.pack.names
 
+    def inputs(self) -> tuple[str, ...]:
+        """Name the inputs that can be listened to; any thread may ask."""
+        return self._player.inputs()
+
     def send(self, command: Command) -> None:
         """Ask for something; any thread may. It is done at the next turn."""
         self._commands.put(command)
@@ -222,12 +229,14 @@ class Coach:
         try:
             self._obey(command)
         except MelodycoachError as error:
-            words: tuple[str, ...] = ()
-            if isinstance(command, ReplaceText) and isinstance(error, NoteTextError):
-                faults = find_faults(command.text, self.names, with_headers=False)
-                words = tuple(fault.token for fault in faults)
+            words = self._unreadable(command.text) if isinstance(command, ReplaceText) else ()
             self._warning = str(error)
             self._refusals.append(Refusal(command.number, str(error), words))
+
+    def _unreadable(self, text: str) -> tuple[str, ...]:
+        """Give the words of a typed text that cannot be taken."""
+        faults = find_faults(text, self.names, with_headers=False)
+        return (*(fault.token for fault in faults), *_comments(text))
 
     def _obey(self, command: Command) -> None:
         now_s = self._clock()
@@ -262,6 +271,11 @@ class Coach:
     def _replace_text(self, command: ReplaceText, now_s: float) -> None:
         n_items = len(self.session.line.items)
         start, stop = min(command.start, n_items), min(command.stop, n_items)
+        if comments := _comments(command.text):
+            raise NoteTextError(
+                f"entry: found {comments[0]!r}, but # before a note begins a comment, which the live line "
+                "does not keep; a sharp stands behind its letter: F#5"
+            )
         items = read_tokens(command.text, self.names, now_s, self._tempo)
         self.take(LineEdited(now_s, start, max(start, stop), items))
 
@@ -366,6 +380,10 @@ class Coach:
         fresh = (item_token(item, self.names, self._tempo) for item in items[kept:])
         self._written = (items, (*tokens[:kept], *fresh))
         return self._written[1]
+
+
+def _comments(text: str) -> tuple[str, ...]:
+    return tuple(word for word in text.split() if word.startswith("#"))
 
 
 def entry_items(line: Line) -> tuple[Item, ...]:

@@ -41,13 +41,12 @@ class Keyboard:
 
     def poll(self, now_s: float) -> Sequence[Event]:
         """Give what has been played since the last call."""
-        played = self.port.poll()
         events: list[Event] = []
+        for message, at_s in self.port.poll():
+            events += self._tracker.decode(message, at_s)
         if self.port.n_openings != self._n_openings or self.port.status.state is not PortState.OPEN:
             events += self._tracker.start_over(now_s)  # no note-off comes from a port that has gone
             self._n_openings = self.port.n_openings
-        for message, at_s in played:
-            events += self._tracker.decode(message, at_s)
         self._has_played = self._has_played or bool(events)
         return events
 
@@ -66,6 +65,10 @@ class Keyboard:
     def tuning_line(self) -> str:
         """Say which tuning is believed, and why."""
         return tuning_sentence(self._tracker)
+
+    def inputs(self) -> tuple[str, ...]:
+        """Name the inputs that can be listened to."""
+        return tuple(port.name for port in self.port.inputs)
 
     def choose(self, name: str) -> None:
         """Listen to another input from now on."""
@@ -129,6 +132,10 @@ class DemoKeyboard:
         """Say which tuning is believed, and why."""
         return tuning_sentence(self._tracker)
 
+    def inputs(self) -> tuple[str, ...]:
+        """Name the inputs that can be listened to."""
+        return self._keyboard.inputs()
+
     def choose(self, name: str) -> None:
         """Choose the player's keyboard."""
         self._keyboard.choose(name)
@@ -176,6 +183,10 @@ class Replay:
     def tuning_line(self) -> str:
         """Say that pitches are as recorded."""
         return "pitches as they were recorded"
+
+    def inputs(self) -> tuple[str, ...]:
+        """Name none: a replay listens to nothing."""
+        return ()
 
     def choose(self, name: str) -> None:
         """Refuse: a replay listens to nothing.

@@ -56,6 +56,9 @@ class Hands:
     def tuning_line(self) -> str:
         return "plain keys"
 
+    def inputs(self) -> tuple[str, ...]:
+        return ()
+
     def choose(self, name: str) -> None:
         self.chosen.append(name)
 
@@ -289,3 +292,10 @@ def test_a_played_line_is_saved_at_its_own_pace(
     path = tmp_path / "line.txt"
     asked(coach, Save(str(path)))
     assert path.read_text(encoding="utf-8") == "tempo: 120\n\nA4~ A4~ A4~ A4~ A4~ A4~ .\n"
+
+
+def test_a_comment_typed_into_the_live_line_is_refused_and_not_swallowed(coach: Coach) -> None:
+    view = asked(coach, ReplaceText(0, 0, "E5 #5 D5", 3))
+    assert view.tokens == ()
+    assert view.refusals[0].words == ("#5",)
+    assert "a sharp stands behind its letter: F#5" in view.status.warning

@@ -34,6 +34,9 @@ class Playing:
     def tuning_line(self) -> str:
         return ""
 
+    def inputs(self) -> tuple[str, ...]:
+        return ()
+
     def choose(self, name: str) -> None:
         raise AssertionError(name)
 

@@ -73,8 +73,8 @@ class Rung:
     """One step of the ladder beside the contour.
 
     ``function`` is what it does in the mode in view, in the words of the trade, or empty. ``role``
-    is the same for the drawing: ``final``, ``dominant`` or empty; where it is not given, the
-    function is taken for it.
+    is the same for the drawing: ``final``, ``dominant`` or any other word; where it is not given,
+    the function is taken for it.
     """
 
     height: int

@@ -284,12 +284,14 @@ def _ladder(mode: Mode, final_units: int, names: PitchNames) -> tuple[Rung, ...]
         if degree in mode.passing:
             continue
         function = function_of(mode, degree, names.system.divisions)
+        leads = degree == 0 or degree in mode.dominants  # their octaves get no guide line
         height = final_units + degree
         rungs.append(
             Rung(
                 height=height,
                 name=names.name(names.system.units_to_cents(height)),
                 function=names.word(function.value) if function in _FUNCTIONS_ON_LADDER else "",
+                role=function.value if leads else "degree",
             )
         )
     return tuple(rungs)

@@ -194,6 +194,7 @@ class LivePort:
         self._status = PortStatus(PortState.ABSENT, wanted=wanted)
         self._port: PortName | None = None  # the one that is open, or that is waited for
         self._input: MidiInput | None = None
+        self._inputs: tuple[PortName, ...] = ()
         self._watch_at_s: float | None = None
         self._empty_at_s = clock()
         self._last_at_s: float | None = None
@@ -202,6 +203,11 @@ class LivePort:
     def status(self) -> PortStatus:
         """What the port is doing now; compare with the last one to see that it changed."""
         return self._status
+
+    @property
+    def inputs(self) -> tuple[PortName, ...]:
+        """The inputs that there were when the list was last read; any thread may look."""
+        return self._inputs
 
     def poll(self) -> list[tuple[bytes, float]]:
         """Give the messages since the last call, oldest first, each with its time; watch the port.
@@ -265,7 +271,7 @@ class LivePort:
         return stamped
 
     def _watch(self) -> None:
-        ports = self._system.inputs()
+        ports = self._inputs = self._system.inputs()
         if self._input is not None:
             if self._port in ports:
                 return
