@@ -114,6 +114,10 @@ def _apart(positions: FloatArray, degree: float, size: int) -> FloatArray:
     return np.asarray((positions - degree + size / 2) % size - size / 2, dtype=np.float64)
 
 
+_NARROWEST = 1e-6
+"""A blur of less than this, in units, is none."""
+
+
 def circular_blur(positions: FloatArray, sigma: float, size: int) -> FloatArray:
     """Spread positions over the units of an octave by a Gaussian that wraps around.
 
@@ -132,7 +136,7 @@ def circular_blur(positions: FloatArray, sigma: float, size: int) -> FloatArray:
         Each row sums to 1.
     """
     apart = (np.arange(size)[None, :] - positions[:, None] + size / 2) % size - size / 2
-    bell = np.exp(-0.5 * (apart / sigma) ** 2) + 1e-300
+    bell = np.exp(-0.5 * (apart / max(sigma, _NARROWEST)) ** 2) + 1e-300
     return np.asarray(bell / bell.sum(axis=1, keepdims=True), dtype=np.float64)
 
 
