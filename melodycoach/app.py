@@ -7,6 +7,7 @@ thread does both. Either way the terminal is restored and the log complete, howe
 from __future__ import annotations
 
 import contextlib
+import io
 import signal
 import sys
 import threading
@@ -24,20 +25,21 @@ from melodycoach.coach import TURN_S, Clock, Coach, Player, read_final
 from melodycoach.core.event import PitchReading
 from melodycoach.core.session import begin
 from melodycoach.demo import PACK as DEMO_PACK
-from melodycoach.errors import MelodycoachError, PortError
+from melodycoach.errors import EventLogError, MelodycoachError, PortError
 from melodycoach.players import DemoKeyboard, Keyboard, Replay
 from melodycoach.screen.plain import plain_line
 from melodycoach.sources.event_json import LogHeader
 from melodycoach.sources.event_log import EventLog, log_path, read_event_log
 from melodycoach.sources.midi_port import PortState, find_port
 from melodycoach.sources.midi_system import list_ports, quiet_stderr
-from melodycoach.sources.pack_file import load_pack
+from melodycoach.sources.pack_file import is_pack_file, load_pack
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
 
     from melodycoach.core.session import SessionState
     from melodycoach.screen.view import ViewState
+    from melodycoach.sources.event_log import RecordedLog
 
 HURRIED = 400.0
 """How much faster than real time a hurried demo or replay runs."""
@@ -100,7 +102,7 @@ def listen(settings: Settings, full_screen: bool, say: Callable[[str], None]) ->
     if full_screen:
         coach = Coach(session, player, clock, log)
         _open_first_file(coach, settings)
-        return _run_full_screen(coach)
+        return _run_full_screen(coach, player, clock)
     printer = _Printer(say)
     coach = Coach(session, player, clock, log, on_note=printer.note)
     printer.begin(coach)
@@ -110,42 +112,60 @@ def listen(settings: Settings, full_screen: bool, say: Callable[[str], None]) ->
 
 def _prepare(settings: Settings, clock: Clock) -> tuple[SessionState, Player, EventLog | None]:
     """Read everything that a session needs, and refuse early what cannot be."""
-    recorded = read_event_log(settings.replay) if settings.replay else None
-    pack = load_pack(recorded.header.pack_id if recorded else settings.pack, user_pack_dir())
+    if settings.replay is not None:
+        recorded = read_event_log(settings.replay)
+        return _recorded_beginning(recorded, settings), Replay(recorded, settings.replay), None
+    pack = load_pack(settings.pack, user_pack_dir())
     reading, final_cents = PitchReading.WRITTEN, None
     if settings.any_pitch:
         reading = PitchReading.ANY
     elif settings.final is not None:
         reading, final_cents = read_final(settings.final, pack.names)
     only = tuple(mode.id for mode in pack.restrict(settings.only)) if settings.only else ()
-    target = settings.target
-    if recorded is not None:
-        kept = recorded.header.settings
-        only = tuple(kept.get("only", ()))
-        reading = PitchReading(kept.get("reading", PitchReading.WRITTEN))
-        final_cents, target = kept.get("final_cents"), kept.get("target")
-    session = begin(pack, only, reading, final_cents, target)
-    if recorded is not None and settings.replay is not None:
-        return session, Replay(recorded, settings.replay), None
+    session = begin(pack, only, reading, final_cents, settings.target)
     if settings.port is not None:
         ports = list_ports()
         if ports.problem:
             raise PortError(f"port {settings.port!r}: {ports.problem}")
         find_port(ports.inputs, settings.port)
-    player: Player = Keyboard(clock, settings.port or "")
-    if settings.demo:
-        assert isinstance(player, Keyboard)
-        player = DemoKeyboard(pack.names, player)
-    return session, player, _open_log(session) if settings.log else None
+    keyboard = Keyboard(clock, settings.port or "")
+    player: Player = DemoKeyboard(pack.names, keyboard) if settings.demo else keyboard
+    return session, player, _open_log(session, settings) if settings.log else None
 
 
-def _open_log(session: SessionState) -> EventLog:
+def _recorded_beginning(recorded: RecordedLog, settings: Settings) -> SessionState:
+    """Begin as a recorded session began. Its pack may have moved since: another ``--pack`` is looked at."""
+    kept, pack_id = recorded.header.settings, recorded.header.pack_id
+    asked = settings.pack != DEMO_PACK
+    pack = load_pack(settings.pack if asked else str(kept.get("pack", pack_id)), user_pack_dir())
+    if pack.id != pack_id:
+        raise EventLogError(
+            f"{settings.replay}: recorded with pack {pack_id!r}, found {pack.id!r}; name its file with --pack"
+        )
+    only, reading = kept.get("only", []), kept.get("reading", PitchReading.WRITTEN)
+    final_cents, target = kept.get("final_cents"), kept.get("target")
+    sound = (
+        isinstance(only, list)
+        and all(isinstance(mode_id, str) for mode_id in only)
+        and reading in list(PitchReading)
+        and (isinstance(final_cents, int | float) if reading == PitchReading.FINAL else final_cents is None)
+        and (target is None or isinstance(target, str))
+    )
+    if not sound:
+        raise EventLogError(
+            f"{settings.replay}: line 1: found settings {dict(kept)!r}, expected those of a session"
+        )
+    return begin(pack, tuple(only), PitchReading(reading), final_cents, target)
+
+
+def _open_log(session: SessionState, settings: Settings) -> EventLog:
     started = datetime.now().astimezone()
     kept: dict[str, Any] = {
         "only": list(session.only),
         "reading": session.reading.value,
         "final_cents": session.final_cents,
         "target": session.target.id if session.target else None,
+        "pack": str(Path(settings.pack).absolute()) if is_pack_file(settings.pack) else settings.pack,
     }
     header = LogHeader(__version__, started, session.pack.id, kept)
     return EventLog(log_path(session_log_dir(), started), header)
@@ -163,10 +183,10 @@ def _open_first_file(coach: Coach, settings: Settings) -> None:
 # --- full screen -------------------------------------------------------------------------------
 
 
-def _run_full_screen(coach: Coach) -> int:
+def _run_full_screen(coach: Coach, player: Player, clock: Clock) -> int:
     from melodycoach.screen.terminal import run_screen
 
-    runner = _Runner(coach)
+    runner = _Runner(coach, player, clock)
     sys.setswitchinterval(SWITCH_INTERVAL_S)
     with quiet_stderr(driver_log_path()):
         runner.start()
@@ -180,9 +200,11 @@ def _run_full_screen(coach: Coach) -> int:
 class _Runner(threading.Thread):
     """The thread that owns the coach."""
 
-    def __init__(self, coach: Coach) -> None:
+    def __init__(self, coach: Coach, player: Player, clock: Clock) -> None:
         super().__init__(name="coach", daemon=True)
         self._coach = coach
+        self._player = player
+        self._clock = clock
         self._fault: Exception | None = None
         self._refresh: Callable[[], None] = lambda: None
         self._stopping = threading.Event()
@@ -203,6 +225,8 @@ class _Runner(threading.Thread):
             while not self._stopping.is_set():
                 if self._coach.turn():
                     self._refresh()
+                if self._player.is_over(self._clock()):
+                    self._clock.slow_down()  # whoever plays on is not hurried
                 self._stopping.wait(TURN_S)
         except Exception as fault:  # noqa: BLE001  (raised again in the thread of the screen)
             self._fault = fault
@@ -237,7 +261,7 @@ def _choices(coach: Coach) -> Callable[[str], tuple[str, ...]]:
         session = coach.session
         match kind:
             case "target" | "only":
-                return tuple(mode.slug for mode in session.pack.modes)
+                return tuple(mode.name for mode in session.pack.modes)
             case "final":
                 return ("written", "any", *(pitch.name for pitch in session.pack.names.named))
             case "port":
@@ -315,7 +339,9 @@ def _may_still_play(player: Player) -> bool:
 
 
 def _read_lines(typed: SimpleQueue[str | None]) -> None:
-    with contextlib.suppress(OSError, ValueError, AttributeError):  # closed, or never there
+    if isinstance(sys.stdin, io.TextIOWrapper):
+        sys.stdin.reconfigure(errors="replace")  # a byte that is no text spoils its word, not the rest
+    with contextlib.suppress(OSError, ValueError, TypeError):  # closed, or never there
         for line in sys.stdin:
             typed.put(line)
     typed.put(None)

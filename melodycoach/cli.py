@@ -6,6 +6,7 @@ Nothing heavy is imported before the arguments are understood, so that ``--help`
 from __future__ import annotations
 
 import argparse
+import io
 import json
 import os
 import sys
@@ -37,14 +38,15 @@ examples:
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run the program and give its exit code: 0 done, 1 the answer is no, 2 bad usage or input."""
+    if isinstance(sys.stdout, io.TextIOWrapper):
+        sys.stdout.reconfigure(errors="replace")  # a letter that a terminal lacks is no reason to stop
     words = list(sys.argv[1:] if argv is None else argv)
     parser, commands = _parser()
     if not words or words[0] not in (*commands, "-h", "--help", "--version"):
         words.insert(0, DEFAULT_COMMAND)
     options = parser.parse_args(words)
-    run: Callable[[argparse.Namespace], int] = options.run
     try:
-        return run(options)
+        return _run(options)
     except MelodycoachError as error:
         if options.debug:
             raise
@@ -57,6 +59,13 @@ def main(argv: Sequence[str] | None = None) -> int:
     except BrokenPipeError:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())  # nobody reads on: say no more
         return DONE
+
+
+def _run(options: argparse.Namespace) -> int:
+    run: Callable[[argparse.Namespace], int] = options.run
+    code = run(options)
+    sys.stdout.flush()  # so that a reader who has gone is noticed here and not at the exit
+    return code
 
 
 def _parser() -> tuple[argparse.ArgumentParser, Sequence[str]]:
@@ -203,7 +212,26 @@ def _modes(options: argparse.Namespace) -> int:
         _print_result(options.json, mode_json(pack, mode), lambda: mode_text(pack, mode, _columns()))
     else:
         _print_result(options.json, modes_json(pack), lambda: modes_text(pack, _columns()))
+        _name_other_packs(options.pack, options.json)
     return DONE
+
+
+def _name_other_packs(in_use: str, as_json: bool) -> None:
+    """Say which packs there are beside the one that was listed, and which of them are damaged."""
+    from melodycoach.app import user_pack_dir
+    from melodycoach.core.pitch import fold_name
+    from melodycoach.sources.pack_file import find_packs, list_packs
+
+    folder = user_pack_dir()
+    if {fold_name(name) for name in find_packs(folder)} <= {fold_name(in_use)}:
+        return
+    for entry in list_packs(folder):
+        if entry.pack is None:
+            count = "1 fault" if len(entry.faults) == 1 else f"{len(entry.faults)} faults"
+            says = f"pack {entry.name!r} cannot be used, {count}; see melodycoach modes --check {entry.path}"
+            print(f"melodycoach: {says}", file=sys.stderr)
+        elif not as_json and fold_name(entry.name) != fold_name(in_use):
+            print(f"Another pack: {entry.pack.name}: melodycoach modes --pack {entry.name}")
 
 
 def _add_ports(commands: Any) -> None:
@@ -313,9 +341,15 @@ def _names(text: str) -> tuple[str, ...]:
 
 def _pack(name: str) -> ModePack:
     from melodycoach.app import user_pack_dir
-    from melodycoach.sources.pack_file import load_pack
+    from melodycoach.core.pitch import fold_name
+    from melodycoach.sources.pack_file import load_pack, shadowed_packs
 
-    return load_pack(name, user_pack_dir())
+    pack = load_pack(name, user_pack_dir())
+    for own, path in shadowed_packs(user_pack_dir()).items():
+        if fold_name(own) == fold_name(name):
+            says = f"{path} is used in place of the pack {own!r} that comes with the program"
+            print(f"melodycoach: {says}", file=sys.stderr)
+    return pack
 
 
 def _columns() -> int:

@@ -73,6 +73,10 @@ TURN_S = 0.001
 
 REFUSALS_KEPT = 8
 
+COMMENT_REFUSED = (
+    "{!r} begins a comment, which the live line does not keep; a sharp stands behind its letter: F#5"
+)
+
 SLOWEST_BPM, FASTEST_BPM = 30.0, 300.0
 """Bounds of the tempo that a played line is saved with."""
 
@@ -90,7 +94,9 @@ class Clock:
         return self._offset_s + (time.monotonic() - self._began_s) * self._speed
 
     def slow_down(self) -> None:
-        """Go on in real time from now."""
+        """Go on in real time from now; in real time already, do nothing."""
+        if self._speed == 1.0:
+            return
         self._offset_s = self()
         self._began_s, self._speed = time.monotonic(), 1.0
 
@@ -155,6 +161,7 @@ class Coach:
         self._tempo = float(DEFAULT_TEMPO)
         self._headers = Headers()
         self._warning = log.fault or "" if log else ""
+        self._notice = ""
         self._handled = 0
         self._refusals: deque[Refusal] = deque(maxlen=REFUSALS_KEPT)
         self._ticked_s = 0.0
@@ -197,10 +204,10 @@ class Coach:
             self._tell(event)  # the note that this one ends, before the new one is heard
         ends_a_note = isinstance(event, NoteOff) and event.voice == self.session.sounding
         self.session = apply(self.session, event)
-        if ends_a_note or isinstance(event, LineEdited):
-            self._tell(event)
         if self._log is not None and (fault := self._log.append(event)):
             self._warning = fault
+        if ends_a_note or isinstance(event, LineEdited):
+            self._tell(event)  # last: whoever is told may end the program
 
     def _tell(self, event: Event) -> None:
         if self._on_note is not None:
@@ -225,18 +232,15 @@ class Coach:
 
     def _carry_out(self, command: Command) -> None:
         self._handled = max(self._handled, command.number)
-        self._warning = ""
+        self._warning = self._notice = ""
         try:
             self._obey(command)
         except MelodycoachError as error:
-            words = self._unreadable(command.text) if isinstance(command, ReplaceText) else ()
-            self._warning = str(error)
-            self._refusals.append(Refusal(command.number, str(error), words))
+            self._refuse(command.number, str(error))
 
-    def _unreadable(self, text: str) -> tuple[str, ...]:
-        """Give the words of a typed text that cannot be taken."""
-        faults = find_faults(text, self.names, with_headers=False)
-        return (*(fault.token for fault in faults), *_comments(text))
+    def _refuse(self, number: int, sentence: str, words: tuple[str, ...] = ()) -> None:
+        self._warning = sentence
+        self._refusals.append(Refusal(number, sentence, words))
 
     def _obey(self, command: Command) -> None:
         now_s = self._clock()
@@ -271,13 +275,17 @@ class Coach:
     def _replace_text(self, command: ReplaceText, now_s: float) -> None:
         n_items = len(self.session.line.items)
         start, stop = min(command.start, n_items), min(command.stop, n_items)
-        if comments := _comments(command.text):
-            raise NoteTextError(
-                f"entry: found {comments[0]!r}, but # before a note begins a comment, which the live line "
-                "does not keep; a sharp stands behind its letter: F#5"
-            )
-        items = read_tokens(command.text, self.names, now_s, self._tempo)
-        self.take(LineEdited(now_s, start, max(start, stop), items))
+        comments = tuple(word for word in command.text.split() if word.startswith("#"))
+        faults = find_faults(command.text, self.names, with_headers=False)
+        if comments:
+            self._refuse(command.number, COMMENT_REFUSED.format(comments[0]), comments)
+        elif faults:
+            more = f" (and {len(faults) - 1} more)" if len(faults) > 1 else ""
+            words = tuple(fault.token for fault in faults)
+            self._refuse(command.number, f"{faults[0].sentence}{more}", words)
+        else:
+            items = read_tokens(command.text, self.names, now_s, self._tempo)
+            self.take(LineEdited(now_s, start, max(start, stop), items))
 
     def append_text(self, text: str) -> None:
         """Put typed text behind the line, note by note; each note goes to ``on_note``.
@@ -306,7 +314,7 @@ class Coach:
             raise StorageError(
                 f"{path}: {error.strerror}; the line is still here, save it elsewhere"
             ) from error
-        self._warning = f"saved as {path}"
+        self._notice = f"saved as {path}"
 
     def open_text(self, path: Path) -> None:
         """Put the line of a note-text file in place of this one.
@@ -343,6 +351,7 @@ class Coach:
             self.session.model,
             self.session.target,
             self._warning,
+            self._notice,
             self._handled,
             len(self._refusals),
             self._player.input_line(now_s),
@@ -365,6 +374,7 @@ class Coach:
             tuning_line=self._player.tuning_line(),
             log_line=log_line,
             warning=self._warning,
+            notice=self._notice,
         )
         view = self._view_maker.view_of(self.session, status, self._tokens())
         return replace(view, handled=self._handled, refusals=tuple(self._refusals))
@@ -380,10 +390,6 @@ class Coach:
         fresh = (item_token(item, self.names, self._tempo) for item in items[kept:])
         self._written = (items, (*tokens[:kept], *fresh))
         return self._written[1]
-
-
-def _comments(text: str) -> tuple[str, ...]:
-    return tuple(word for word in text.split() if word.startswith("#"))
 
 
 def entry_items(line: Line) -> tuple[Item, ...]:

@@ -10,6 +10,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from melodycoach.core.note import Mark, Note
+from melodycoach.core.pitch import KEY_CENTS, key_of
 from melodycoach.sources.note_text import read_tokens
 
 if TYPE_CHECKING:
@@ -127,8 +128,8 @@ def note_messages(pitch_cents: float, at_s: float, length_s: float) -> list[tupl
     >>> [message.hex(" ") for message, _ in note_messages(7150.0, 0.0, 1.0)]
     ['e0 00 30', '90 48 48', '80 48 00']
     """
-    key = int(pitch_cents / 100 + 0.5)
-    bend = round((pitch_cents - 100 * key) / _BEND_RANGE_CENTS * 8192) + 8192
+    key = key_of(pitch_cents)
+    bend = round((pitch_cents - KEY_CENTS * key) / _BEND_RANGE_CENTS * 8192) + 8192
     return [
         (bytes((0xE0, bend & 0x7F, bend >> 7)), at_s),
         (bytes((0x90, key, _VELOCITY)), at_s),

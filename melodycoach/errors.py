@@ -84,3 +84,17 @@ def nearest_names(wanted: str, known: Iterable[str], count: int = 3) -> str:
         return "did you mean " + " or ".join(repr(name) for name in close) + "?"
     shown = ", ".join(names[:12])
     return f"known: {shown}" + (", …" if len(names) > 12 else "")
+
+
+def system_reason(error: OSError) -> str:
+    """Give what the system says of a failure, to stand inside a sentence."""
+    return (error.strerror or str(error)).lower()
+
+
+def shorten(text: str, longest: int = 40) -> str:
+    """Cut a text that was found, so that it leaves room for the sentence about it.
+
+    >>> shorten("a mistyped word", 10)
+    'a mistype…'
+    """
+    return text if len(text) <= longest else text[: longest - 1] + "…"

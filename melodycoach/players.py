@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from melodycoach.core.event import Event
     from melodycoach.core.pitch import PitchNames
     from melodycoach.sources.event_log import RecordedLog
+    from melodycoach.sources.midi_system import MidiSystem
 
 
 class Keyboard:
@@ -31,10 +32,14 @@ class Keyboard:
         Seconds from the start of the session.
     wanted
         Name of the input, or a part of it; empty: the only one there is.
+    system
+        Where ports come from; by default the machine's.
     """
 
-    def __init__(self, clock: Callable[[], float], wanted: str = "") -> None:
-        self.port = LivePort(clock, wanted)
+    def __init__(
+        self, clock: Callable[[], float], wanted: str = "", system: MidiSystem | None = None
+    ) -> None:
+        self.port = LivePort(clock, wanted, system)
         self._tracker = PitchTracker()
         self._has_played = False
         self._n_openings = 0
@@ -112,12 +117,14 @@ class DemoKeyboard:
         self._demo = DemoPlayer(names)
         self._tracker = PitchTracker(port_number=1)
         self._keyboard = keyboard
+        self._handed_over = False
 
     def poll(self, now_s: float) -> Sequence[Event]:
         """Give what the demo, and after it the player, has played since the last call."""
         played = self._demo.poll(now_s)
         events = [event for message, at_s in played for event in self._tracker.decode(message, at_s)]
-        if self._demo.is_over(now_s):
+        self._handed_over = self._demo.is_over(now_s)
+        if self._handed_over:
             events += self._keyboard.poll(now_s)
         return events
 
@@ -129,8 +136,8 @@ class DemoKeyboard:
         return f"{says}; {self._keyboard.input_line(now_s)}"
 
     def tuning_line(self) -> str:
-        """Say which tuning is believed, and why."""
-        return tuning_sentence(self._tracker)
+        """Say which tuning is believed of the one that plays now, and why."""
+        return self._keyboard.tuning_line() if self._handed_over else tuning_sentence(self._tracker)
 
     def inputs(self) -> tuple[str, ...]:
         """Name the inputs that can be listened to."""

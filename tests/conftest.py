@@ -11,6 +11,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 import pytest
+from hypothesis import settings
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
@@ -19,6 +20,10 @@ if TYPE_CHECKING:
 
 KEYBOARD = Path(__file__).with_name("keyboard.py")
 DEADLINE_S = 10.0
+
+# A slow machine is no fault; in CI the same examples every time, so that a failure is about the change.
+settings.register_profile("melodycoach", deadline=None, derandomize=bool(os.environ.get("CI")))
+settings.load_profile("melodycoach")
 
 
 class JackServer:

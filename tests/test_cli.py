@@ -1,13 +1,27 @@
 """The command line: exit codes, messages, JSON, and what the help says."""
 
+from __future__ import annotations
+
+import io
 import json
+import os
+import re
+import runpy
 import subprocess
 import sys
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import pytest
 
+from melodycoach.app import Settings, user_pack_dir
 from melodycoach.cli import main
+from melodycoach.errors import UnknownModeError
+from melodycoach.sources.midi_system import PortList
+from melodycoach.sources.pack_file import SHIPPED
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
 
 PACKAGE_ROOT = Path(__file__).resolve().parent.parent
 
@@ -196,3 +210,214 @@ def test_evaluate_prints_figures_as_json(tmp_path: Path, capsys: pytest.CaptureF
         == set(figures["ece"])
     )
     assert "2" in printed.err
+
+
+def test_the_package_runs_as_a_program(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.setattr(sys, "argv", ["melodycoach", "modes", "rast"])
+    with pytest.raises(SystemExit) as ended:
+        runpy.run_module("melodycoach", run_name="__main__")
+    assert ended.value.code == 0
+    assert "Rast" in capsys.readouterr().out
+
+
+class Asked:
+    """Stands in for the live session: keeps what it was asked for."""
+
+    def __init__(self, monkeypatch: pytest.MonkeyPatch, raises: BaseException | None = None) -> None:
+        self._raises = raises
+        monkeypatch.setattr("melodycoach.app.listen", self)
+
+    def __call__(self, settings: Settings, full_screen: bool, say: Callable[[str], None]) -> int:
+        self.settings, self.full_screen = settings, full_screen
+        say("something")
+        if self._raises is not None:
+            raise self._raises
+        return 0
+
+
+def test_what_is_typed_on_the_command_line_is_asked_of_the_session(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    asked = Asked(monkeypatch)
+    assert main(["line.txt", "--only", "rast, ,hicaz", "--target", "rast", "--any-pitch", "--no-log"]) == 0
+    assert asked.settings == Settings(
+        only=("rast", "hicaz"), target="rast", any_pitch=True, log=False, open_file=Path("line.txt")
+    )
+    assert not asked.full_screen  # nobody looks at a terminal
+    assert main(["listen", "--replay", "old.jsonl", "--fast", "--final", "A4", "--port", "Keys"]) == 0
+    assert asked.settings == Settings(replay=Path("old.jsonl"), fast=True, final="A4", port="Keys")
+    assert main(["demo", "--fast", "--port", "Keys"]) == 0
+    assert asked.settings == Settings(demo=True, fast=True, port="Keys")
+    assert capsys.readouterr().out == "something\n" * 3
+
+
+class Terminal(io.StringIO):
+    def isatty(self) -> bool:
+        return True
+
+
+def test_the_full_screen_is_for_terminals_and_plain_wins(monkeypatch: pytest.MonkeyPatch) -> None:
+    asked = Asked(monkeypatch)
+    monkeypatch.setattr(sys, "stdin", Terminal())
+    monkeypatch.setattr(sys, "stdout", Terminal())
+    assert main([]) == 0
+    assert asked.full_screen
+    assert main(["--plain"]) == 0
+    assert not asked.full_screen
+    monkeypatch.setattr(sys, "stdin", io.StringIO())
+    assert main([]) == 0
+    assert not asked.full_screen
+
+
+def test_an_interrupt_has_the_exit_code_of_one(monkeypatch: pytest.MonkeyPatch) -> None:
+    Asked(monkeypatch, KeyboardInterrupt())
+    assert main([]) == 130
+
+
+def test_when_nobody_reads_on_the_program_ends_without_a_word(
+    monkeypatch: pytest.MonkeyPatch, tmp_path: Path
+) -> None:
+    Asked(monkeypatch, BrokenPipeError())
+    with (tmp_path / "out").open("w", encoding="utf-8") as out:
+        monkeypatch.setattr(sys, "stdout", out)
+        assert main([]) == 0
+        print("to nobody", file=out, flush=True)
+    assert (tmp_path / "out").read_text(encoding="utf-8") == "something\n"
+
+
+@pytest.mark.parametrize("arguments", [("modes", "hicaz"), ("modes", "--json"), ("--plain", "--no-log")])
+def test_a_reader_who_has_gone_is_no_error(arguments: tuple[str, ...]) -> None:
+    reading, writing = os.pipe()
+    os.close(reading)
+    environment = {key: value for key, value in os.environ.items() if key != "PYTHONUNBUFFERED"}
+    ran = subprocess.run(
+        [sys.executable, "-m", "melodycoach", *arguments],
+        input=b"A4\n",
+        stdout=writing,
+        stderr=subprocess.PIPE,
+        env=environment,
+        timeout=60,
+        check=False,
+    )
+    os.close(writing)
+    assert (ran.returncode, ran.stderr) == (0, b"")
+
+
+def test_a_letter_that_the_output_cannot_write_is_no_reason_to_stop(monkeypatch: pytest.MonkeyPatch) -> None:
+    raw = io.BytesIO()
+    monkeypatch.setattr(sys, "stdout", io.TextIOWrapper(raw, encoding="ascii"))
+    assert main(["modes", "karcigar"]) == 0
+    assert b"Karc??ar" in raw.getvalue()
+
+
+def test_a_pack_that_can_be_used_is_said_to_be(capsys: pytest.CaptureFixture[str]) -> None:
+    path = PACKAGE_ROOT / "melodycoach" / "mode_packs" / "makam.toml"
+    assert main(["modes", "--check", str(path)]) == 0
+    assert capsys.readouterr().out.startswith(f"{path}: pack 'makam' with ")
+
+
+def own_packs(tmp_path: Path, **texts: str) -> Path:
+    """Put packs into the player's own folder, by name."""
+    folder = user_pack_dir()
+    assert tmp_path in folder.parents
+    folder.mkdir(parents=True)
+    for name, text in texts.items():
+        (folder / f"{name}.toml").write_text(text, encoding="utf-8")
+    return folder
+
+
+def makam_text(**changes: str) -> str:
+    text = (SHIPPED / "makam.toml").read_text(encoding="utf-8")
+    for key, value in changes.items():
+        text = re.sub(rf'^{key} = ".*"$', f'{key} = "{value}"', text, count=1, flags=re.MULTILINE)
+    return text
+
+
+@pytest.mark.parametrize("arguments", [[], ["--json"], ["rast"], ["--pack", "MAKAM"]])
+def test_a_pack_of_the_players_own_that_stands_in_for_a_shipped_one_is_named(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], arguments: list[str]
+) -> None:
+    folder = own_packs(tmp_path, makam=makam_text(name="Makams of my own"))
+    assert main(["modes", *arguments]) == 0
+    printed = capsys.readouterr()
+    assert printed.err == (
+        f"melodycoach: {folder / 'makam.toml'} is used in place of the pack 'makam' "
+        "that comes with the program\n"
+    )
+    assert "Another pack" not in printed.out
+
+
+def test_a_shipped_pack_alone_is_listed_with_nothing_beside_it(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["modes"]) == 0
+    printed = capsys.readouterr()
+    assert printed.err == ""
+    assert printed.out.rstrip().endswith("melodycoach modes NAME, in any spelling.")
+
+
+def test_other_packs_are_named_and_damaged_ones_reported_when_modes_are_listed(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    folder = own_packs(tmp_path, mine=makam_text(id="mine", name="Mine"), bad="[pack", worse="[pack]\n")
+    assert main(["modes"]) == 0
+    printed = capsys.readouterr()
+    assert printed.out.endswith("\nAnother pack: Mine: melodycoach modes --pack mine\n")
+    first, second = printed.err.splitlines()
+    assert first == (
+        "melodycoach: pack 'bad' cannot be used, 1 fault; "
+        f"see melodycoach modes --check {folder / 'bad.toml'}"
+    )
+    assert second.startswith("melodycoach: pack 'worse' cannot be used, ")
+    assert second.endswith(f" faults; see melodycoach modes --check {folder / 'worse.toml'}")
+    assert main(["modes", "--pack", "mine"]) == 0
+    assert "Another pack: Turkish makam: melodycoach modes --pack makam" in capsys.readouterr().out
+
+
+def test_json_stays_json_beside_other_packs(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    own_packs(tmp_path, mine=makam_text(id="mine"), bad="[pack")
+    assert main(["modes", "--json"]) == 0
+    printed = capsys.readouterr()
+    assert json.loads(printed.out)["modes"]
+    assert "'bad' cannot be used" in printed.err
+
+
+def test_ports_are_listed_for_people_and_for_programs(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.setattr("melodycoach.app.list_ports", lambda: PortList((), (), "no MIDI: none at all"))
+    assert main(["ports"]) == 0
+    assert "no MIDI: none at all" in capsys.readouterr().out
+    assert main(["ports", "--json"]) == 0
+    assert json.loads(capsys.readouterr().out)["problem"] == "no MIDI: none at all"
+
+
+def test_a_long_evaluation_says_on_a_terminal_how_far_it_has_come(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    path = tmp_path / "lines.jsonl"
+    notes = [[0.4 * n, 0.35, cents] for n, cents in enumerate((7400, 7300, 7000, 6900) * 3)]
+    record = {"id": "a", "group": "a", "mode": "makam/hicaz", "final": 6900, "notes": notes}
+    path.write_text("not json\n" + json.dumps(record) + "\n", encoding="utf-8")
+    terminal = Terminal()
+    monkeypatch.setattr(sys, "stderr", terminal)
+    assert main(["evaluate", str(path), "--only", "hicaz,rast"]) == 0
+    said = terminal.getvalue()
+    assert said.endswith("\r\033[K")  # nothing is left on the line
+    assert "\rmelodycoach" not in said
+    assert f"\033[Kmelodycoach: {path}" in said or "\033[Kmelodycoach: " in said
+    assert "hicaz" in capsys.readouterr().out.casefold()
+
+
+@pytest.mark.parametrize("count", ["-1", "100001"])
+def test_a_count_has_bounds(count: str, capsys: pytest.CaptureFixture[str]) -> None:
+    with pytest.raises(SystemExit) as ended:
+        main(["evaluate", "a", f"--seams={count}"])
+    assert ended.value.code == 2
+    assert f"'{count}' is not a number from 0 to 100000" in capsys.readouterr().err
+
+
+def test_debug_lets_an_error_through(capsys: pytest.CaptureFixture[str]) -> None:
+    with pytest.raises(UnknownModeError):
+        main(["modes", "nothing-such", "--debug"])
+    assert capsys.readouterr().err == ""

@@ -171,7 +171,7 @@ def test_a_final_that_is_no_single_pitch_is_refused(text: str) -> None:
 def test_a_saved_line_opens_again_as_it_was(coach: Coach, tmp_path: Path) -> None:
     path = tmp_path / "new" / "line.txt"
     asked(coach, SetTarget("rast"), ReplaceText(0, 0, "G4 A4 B4-1:2 , C5 ."))
-    assert asked(coach, Save(str(path))).status.warning == f"saved as {path}"
+    assert asked(coach, Save(str(path))).status.notice == f"saved as {path}"
     asked(coach, Fresh(), SetTarget(None))
     view = asked(coach, Open(str(path)))
     assert view.tokens == ("G4", "A4", "B4-1:2", ",", "C5", ".")

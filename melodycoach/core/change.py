@@ -35,10 +35,11 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from melodycoach.core.arrays import sealed
+
 if TYPE_CHECKING:
-    from melodycoach.core.ngram import IntArray
+    from melodycoach.core.arrays import FloatArray, IntArray
     from melodycoach.core.parameters import ScoringParameters
-    from melodycoach.core.theory import FloatArray
 
 NONE = -1
 
@@ -78,9 +79,7 @@ class ChangeState:
 def start_change(log_prior: FloatArray) -> ChangeState:
     """Give the filter's state before the first note."""
     gain, risen_from = np.zeros(len(log_prior)), np.ones(len(log_prior), dtype=np.int64)
-    for array in (gain, risen_from):
-        array.setflags(write=False)
-    return ChangeState(log_prior, gain, risen_from)
+    return ChangeState(log_prior, sealed(gain), sealed(risen_from))
 
 
 def change_threshold(n_hypotheses: int, parameters: ScoringParameters) -> float:
@@ -113,7 +112,6 @@ def _first(state: ChangeState, nats: FloatArray, n_modes: int, parameters: Scori
     log_belief = np.log(belief) + nats
     log_belief -= log_belief.max()
     log_belief -= np.log(np.exp(log_belief).sum())
-    log_belief.setflags(write=False)
     by_mode = np.exp(log_belief).reshape(-1, n_modes).sum(axis=0)
     leader = int(by_mode.argmax())
     holder = leader if by_mode[leader] >= parameters.announce_at else NONE
@@ -121,7 +119,7 @@ def _first(state: ChangeState, nats: FloatArray, n_modes: int, parameters: Scori
     announced = NONE
     if holder != NONE and held >= parameters.announce_notes:
         announced = int(log_belief.reshape(-1, n_modes)[:, holder].argmax()) * n_modes + holder
-    return replace(state, log_belief=log_belief, holder=holder, held_notes=held, announced=announced)
+    return replace(state, log_belief=sealed(log_belief), holder=holder, held_notes=held, announced=announced)
 
 
 def _next(
@@ -141,12 +139,10 @@ def _next(
                 changed_at, seam_at = n_notes, int(risen_from[best])
             announced = best
             gain = np.zeros(len(gain))
-    for array in (gain, risen_from):
-        array.setflags(write=False)
     return replace(
         state,
-        gain=gain,
-        risen_from=risen_from,
+        gain=sealed(gain),
+        risen_from=sealed(risen_from),
         announced=announced,
         changed_at=changed_at,
         seam_at=seam_at,

@@ -12,7 +12,7 @@ or rest alike; its *register* part goes to the group of notes that lie alike in 
 the two modes open and mostly live. What the first `OPENING_NOTES` notes say is told as one item
 when the two modes open in different places and the line has opened in the place that it favours.
 
-A `Tally` holds the sums without the temper. It goes on from an earlier one, so a long line costs
+A `Balance` holds the sums without the temper. It goes on from an earlier one, so a long line costs
 no more than a short one; that memory never changes an answer.
 """
 
@@ -25,20 +25,25 @@ from typing import TYPE_CHECKING, NamedTuple
 import numpy as np
 
 from melodycoach.core.event import PitchReading
-from melodycoach.core.function import find_degree, key_of
+from melodycoach.core.function import find_degree
 from melodycoach.core.model import register_columns
 from melodycoach.core.note import InputKind
+from melodycoach.core.pitch import key_of
 from melodycoach.core.scorer import closing, note_weight, temper
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
+    from melodycoach.core.mode import Mode
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.note import Heard
     from melodycoach.core.scorer import ScorerState
 
 OPENING_NOTES = 4
 """The opening of a line: so many notes."""
+
+OPENING_MARGIN_UNITS = 1
+"""A note so little outside the region where a mode opens counts as inside."""
 
 NUMBERS_KEPT = 12
 """An item of evidence names at most so many of its notes, the newest."""
@@ -131,7 +136,7 @@ class _Place(NamedTuple):
 
 
 @dataclass(frozen=True, eq=False, slots=True)
-class Tally:
+class Balance:
     """Untempered evidence of the notes so far, for one hypothesis against another.
 
     ``finals`` says where the two stand, in units from A4: see `placed_final`.
@@ -144,18 +149,18 @@ class Tally:
     state: ScorerState
     sums: dict[_Key, _Sum]
     first: tuple[_First, ...]
-    before: Tally | None = field(repr=False)
+    before: Balance | None = field(repr=False)
     _places: dict[tuple[int, InputKind], _Place] = field(repr=False)
 
 
-def tally(
+def balance(
     model: ScoringModel,
     states: Sequence[ScorerState],
     heard: Sequence[Heard],
     a: int,
     b: int,
-    earlier: Tally | None = None,
-) -> Tally:
+    earlier: Balance | None = None,
+) -> Balance:
     """Add up what the notes of a line say for hypothesis ``a`` against ``b``.
 
     Parameters
@@ -169,7 +174,7 @@ def tally(
     a, b
         Two hypotheses.
     earlier
-        A tally made before. Where it is of the same two and of a beginning of the same line, or of
+        A balance made before. Where it is of the same two and of a beginning of the same line, or of
         one that differs in its last note alone, only the new notes are looked at.
     """
     known = earlier if earlier is not None and (earlier.a, earlier.b) == (a, b) else None
@@ -179,7 +184,7 @@ def tally(
         known = known.before
     if known is None or not known.state.n_notes:
         finals = placed_final(model, a, heard), placed_final(model, b, heard)
-        known = Tally(model, a, b, finals, states[0], {}, (), None, {})
+        known = Balance(model, a, b, finals, states[0], {}, (), None, {})
     if known.state.n_notes == len(heard):
         return known
     if len(heard) - known.state.n_notes > 1:
@@ -187,11 +192,11 @@ def tally(
     return _extended(known, states, heard, len(heard))
 
 
-def _is_beginning(known: Tally, states: Sequence[ScorerState]) -> bool:
+def _is_beginning(known: Balance, states: Sequence[ScorerState]) -> bool:
     return known.state.n_notes < len(states) and states[known.state.n_notes] is known.state
 
 
-def _extended(known: Tally, states: Sequence[ScorerState], heard: Sequence[Heard], until: int) -> Tally:
+def _extended(known: Balance, states: Sequence[ScorerState], heard: Sequence[Heard], until: int) -> Balance:
     model, a, b = known.model, known.a, known.b
     first = list(known.first)
     nats: dict[_Key, float] = {}
@@ -222,10 +227,10 @@ def _extended(known: Tally, states: Sequence[ScorerState], heard: Sequence[Heard
         kept = (*so_far.numbers, *new_numbers)[-NUMBERS_KEPT:]
         sums[key] = _Sum(total, so_far.n_notes + len(new_numbers), kept)
     before = replace(known, before=None)
-    return Tally(model, a, b, known.finals, states[until], sums, tuple(first), before, known._places)
+    return Balance(model, a, b, known.finals, states[until], sums, tuple(first), before, known._places)
 
 
-def _place(known: Tally, note: Heard) -> _Place:
+def _place(known: Balance, note: Heard) -> _Place:
     """Say what a pitch means for both hypotheses; each place is worked out once."""
     model, system = known.model, known.model.pack.system
     plain = note.kind is InputKind.KEYS
@@ -239,10 +244,9 @@ def _place(known: Tally, note: Heard) -> _Place:
     degrees: list[int | None] = []
     inside: list[bool] = []
     for hypothesis, final in zip((known.a, known.b), known.finals, strict=True):
-        mode = model.modes[model.mode_index[hypothesis]]
+        mode = model.mode_of(hypothesis)
         degrees.append(find_degree(mode, final, cents, note.kind, system))
-        low, high = mode.opening
-        inside.append(low - 1 <= units_heard - final <= high + 1)
+        inside.append(_in_opening(mode, units_heard - final))
     register_nats = 0.0
     tables = model.tables(note.kind)
     if tables.register is not None:
@@ -270,7 +274,7 @@ def placed_final(model: ScoringModel, hypothesis: int, heard: Sequence[Heard]) -
     final = int(model.final_units[hypothesis])
     if model.reading is not PitchReading.ANY or not heard:
         return final
-    mode, system = model.modes[model.mode_index[hypothesis]], model.pack.system
+    mode, system = model.mode_of(hypothesis), model.pack.system
     middle = final + sum(mode.opening) / 2
     octaves = round((system.cents_to_units(heard[0].pitch_cents) - middle) / system.divisions)
     return int(final + octaves * system.divisions)
@@ -282,14 +286,14 @@ def evidence(
     heard: Sequence[Heard],
     a: int,
     b: int,
-    earlier: Tally | None = None,
+    earlier: Balance | None = None,
 ) -> tuple[Evidence, ...]:
     """Give every reason for hypothesis ``a`` against ``b``, the strongest first.
 
     Parameters
     ----------
     model, states, heard, a, b, earlier
-        As for `tally`.
+        As for `balance`.
 
     Returns
     -------
@@ -297,28 +301,28 @@ def evidence(
         By falling size of ``nats``, for and against together. They add up to
         ``log_odds(model, states[-1], a, b)``.
     """
-    return evidence_of_tally(tally(model, states, heard, a, b, earlier), heard)
+    return evidence_of_balance(balance(model, states, heard, a, b, earlier), heard)
 
 
-def evidence_of_tally(counted: Tally, heard: Sequence[Heard]) -> tuple[Evidence, ...]:
-    """Give what `evidence` does, from a tally of the whole line."""
-    model, a, b, state = counted.model, counted.a, counted.b, counted.state
+def evidence_of_balance(weighed: Balance, heard: Sequence[Heard]) -> tuple[Evidence, ...]:
+    """Give what `evidence` does, from a balance of the whole line."""
+    model, a, b, state = weighed.model, weighed.a, weighed.b, weighed.state
     power = temper(model, state)
     found: list[Evidence] = []
-    sums = dict(counted.sums)
-    opening = _opening(counted)
+    sums = dict(weighed.sums)
+    opening = _opening(weighed)
     if opening is not None:
         found.append(
             Evidence(
                 Factor.OPENING,
                 power * opening,
-                len(counted.first),
-                tuple(range(1, len(counted.first) + 1)),
-                counted.first[0].degree,
+                len(weighed.first),
+                tuple(range(1, len(weighed.first) + 1)),
+                weighed.first[0].degree,
             )
         )
     else:
-        for number, note in enumerate(counted.first, start=1):
+        for number, note in enumerate(weighed.first, start=1):
             sums[note.degree] = _earlier(sums.get(note.degree), note.degree_nats, number)
             if note.register_nats:
                 sums[note.register] = _earlier(sums.get(note.register), note.register_nats, number)
@@ -330,7 +334,7 @@ def evidence_of_tally(counted: Tally, heard: Sequence[Heard]) -> tuple[Evidence,
         found.append(reason)
     ended = closing(model, state)
     if ended[a] != ended[b]:
-        place = _place(counted, heard[-1])
+        place = _place(weighed, heard[-1])
         nats = power * float(ended[a] - ended[b])
         found.append(Evidence(Factor.CLOSING, nats, 1, (len(heard),), degree=place.resting))
     prior = float(model.log_prior[a] - model.log_prior[b])
@@ -347,12 +351,12 @@ def _earlier(total: _Sum | None, nats: float, number: int) -> _Sum:
     return _Sum(total.nats + nats, total.n_notes + 1, numbers)
 
 
-def _opening(counted: Tally) -> float | None:
+def _opening(weighed: Balance) -> float | None:
     """Give what the opening notes say, where that is for the mode that opens where they lie."""
-    if not counted.first or counted.model.reading is PitchReading.ANY:
+    if not weighed.first or weighed.model.reading is PitchReading.ANY:
         return None
-    lean = opening_lean(counted.model, counted.a, counted.b, [note.units for note in counted.first])
-    nats = sum(note.degree_nats + note.register_nats for note in counted.first)
+    lean = opening_lean(weighed.model, weighed.a, weighed.b, [note.units for note in weighed.first])
+    nats = sum(note.degree_nats + note.register_nats for note in weighed.first)
     return nats if lean * nats > 0 else None
 
 
@@ -361,6 +365,11 @@ def opening_lean(model: ScoringModel, a: int, b: int, units: Sequence[float]) ->
     middle = float(np.median(units))
     sides = []
     for hypothesis in (a, b):
-        low, high = model.modes[model.mode_index[hypothesis]].opening
-        sides.append(low - 1 <= middle - model.final_units[hypothesis] <= high + 1)
+        above_final = middle - float(model.final_units[hypothesis])
+        sides.append(_in_opening(model.mode_of(hypothesis), above_final))
     return int(sides[0]) - int(sides[1])
+
+
+def _in_opening(mode: Mode, above_final: float) -> bool:
+    low, high = mode.opening
+    return low - OPENING_MARGIN_UNITS <= above_final <= high + OPENING_MARGIN_UNITS

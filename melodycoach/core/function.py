@@ -19,7 +19,7 @@ from math import floor, inf
 from typing import TYPE_CHECKING
 
 from melodycoach.core.note import InputKind
-from melodycoach.core.pitch import A4_CENTS
+from melodycoach.core.pitch import COMMA_CENTS, KEY_CENTS, key_of
 
 if TYPE_CHECKING:
     from typing import TypeAlias
@@ -29,12 +29,8 @@ if TYPE_CHECKING:
 
     _Places: TypeAlias = tuple[tuple[int, float], ...]
 
-COMMA_CENTS = 1200 / 53
-
 TOLERANCE_COMMAS = {InputKind.TYPED: 1.5, InputKind.TUNED: 1.5, InputKind.RECORDED: 2.0}
 """How far a pitch may lie from the degree that it stands for; plain keys are compared as keys."""
-
-KEY_CENTS = 100
 
 
 class Function(StrEnum):
@@ -49,15 +45,6 @@ class Function(StrEnum):
     OPENING = "opening region"
     DEGREE = "degree"
     OUTSIDE = "not in the mode"
-
-
-def key_of(cents: float) -> int:
-    """Give the number of the key of a plain keyboard that is nearest to a pitch.
-
-    >>> key_of(6900), key_of(6949.9), key_of(6950)
-    (69, 69, 70)
-    """
-    return floor(cents / KEY_CENTS + 0.5)
 
 
 def tolerance_units(kind: InputKind, system: ToneSystem) -> float:
@@ -104,13 +91,11 @@ def find_degree(
         places = tuple(
             place
             for place in places
-            if any(key_of(A4_CENTS + (final_units + at) * system.unit_cents) == key for at in place)
+            if any(key_of(system.units_to_cents(final_units + at)) == key for at in place)
         )
-        return (
-            min(places, key=lambda place: (place[0] in mode.passing, _distance(place, units)))[0]
-            if places
-            else None
-        )
+        if not places:
+            return None
+        return min(places, key=lambda place: (place[0] in mode.passing, _distance(place, units)))[0]
     degree, away = _nearest(places, units)
     return degree if away <= tolerance_units(kind, system) else None
 

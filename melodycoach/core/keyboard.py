@@ -21,15 +21,15 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from melodycoach.core.function import KEY_CENTS, find_degree
+from melodycoach.core.function import find_degree
 from melodycoach.core.note import InputKind
-from melodycoach.core.pitch import A4_CENTS
+from melodycoach.core.pitch import A4_CENTS, KEY_CENTS, KEY_NAMES
 
 if TYPE_CHECKING:
+    from melodycoach.core.arrays import FloatArray
     from melodycoach.core.model import ScoringModel
-    from melodycoach.core.theory import FloatArray
 
-KEYS = 12
+KEYS = len(KEY_NAMES)
 
 TUNING_SHARE = 0.7
 """When the keys keep less than this share of the divergence, the difference is mainly tuning."""
@@ -39,8 +39,6 @@ TWINS_NATS = 0.15
 
 CLOSE_NATS = 0.3
 """Two modes that are further apart over the keys need no tuning to be told apart."""
-
-_KEY_NAMES = ("C", "C#", "D", "Eb", "E", "F", "F#", "G", "G#", "A", "Bb", "B")
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,7 +95,7 @@ def keyboard_note(model: ScoringModel, a: int, b: int) -> str:
     apart = divergence(model, a, b)
     if apart.keys >= CLOSE_NATS or model.pack.system.divisions <= KEYS:
         return ""
-    names = [model.modes[model.mode_index[h]].name for h in (a, b)]
+    names = [model.mode_of(h).name for h in (a, b)]
     pair = " and ".join(names)
     is_tuning = apart.keys < TUNING_SHARE * apart.fine
     if apart.keys >= TWINS_NATS:
@@ -116,11 +114,10 @@ def _hidden(model: ScoringModel, key: int, a: int, b: int) -> str:
     cents = A4_CENTS + KEY_CENTS * ((key - 7) % KEYS - 2)  # in the octave over G4
     named: list[str] = []
     for hypothesis in (a, b):
-        mode, final = model.modes[model.mode_index[hypothesis]], int(model.final_units[hypothesis])
+        mode, final = model.mode_of(hypothesis), int(model.final_units[hypothesis])
         degree = find_degree(mode, final, cents, InputKind.KEYS, system)
-        at = system.cents_to_units(cents) if degree is None else final + degree
-        named.append(names.name(system.units_to_cents(at)))
-    name = _KEY_NAMES[key]
+        named.append(names.name(cents) if degree is None else names.name_at(final + degree))
+    name = KEY_NAMES[key]
     if named[0] == named[1]:
         return f"the {name} key hides how {named[0]} is tuned"
     return f"the {name} key is both {named[0]} and {named[1]}"
@@ -131,12 +128,9 @@ def function_difference(model: ScoringModel, a: int, b: int) -> str:
 
     Looked for in this order: the final, the first dominant, the opening region.
     """
-    names, system = model.pack.names, model.pack.system
-    modes = [model.modes[model.mode_index[h]] for h in (a, b)]
+    name = model.pack.names.name_at
+    modes = [model.mode_of(h) for h in (a, b)]
     finals = [int(model.final_units[h]) for h in (a, b)]
-
-    def name(units: int) -> str:
-        return names.name(system.units_to_cents(units))
 
     if finals[0] != finals[1]:
         return f"the final, {name(finals[0])} or {name(finals[1])}"

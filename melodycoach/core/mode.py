@@ -58,6 +58,14 @@ class Need(StrEnum):
     COLOUR = "colour"
 
 
+class Confidence(StrEnum):
+    """How well the sources of a definition agree."""
+
+    HIGH = "high"
+    MEDIUM = "medium"
+    LOW = "low"
+
+
 @dataclass(frozen=True, slots=True)
 class Genus:
     """A tetrachord, pentachord or trichord: its name, where it stands, when it is used."""
@@ -124,7 +132,7 @@ class Mode:
     sources
         Fact to the ids of the sources in the pack that state it.
     confidence
-        ``high``, ``medium`` or ``low``: how well the sources agree.
+        How well the sources agree.
     repertoire
         How often the trade's repertoire uses it.
     """
@@ -150,7 +158,7 @@ class Mode:
     also: tuple[str, ...] = ()
     family: str = ""
     sources: Mapping[str, tuple[str, ...]] = field(default_factory=dict)
-    confidence: str = "medium"
+    confidence: Confidence = Confidence.MEDIUM
     repertoire: Repertoire = Repertoire.COMMON
 
     @property

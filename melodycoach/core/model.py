@@ -20,10 +20,12 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from melodycoach.core.arrays import sealed
 from melodycoach.core.event import PitchReading
 from melodycoach.core.ngram import Counts, NgramTable, build_table, snap_to_scale
 from melodycoach.core.note import InputKind
 from melodycoach.core.parameters import ScoringParameters
+from melodycoach.core.pitch import KEY_CENTS
 from melodycoach.core.theory import (
     FoldedScale,
     circular_blur,
@@ -36,12 +38,8 @@ from melodycoach.core.theory import (
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
+    from melodycoach.core.arrays import FloatArray, IntArray
     from melodycoach.core.mode import Mode, ModePack
-    from melodycoach.core.ngram import IntArray
-    from melodycoach.core.theory import FloatArray
-
-HALF_KEY_CENTS = 50.0
-"""A key of a twelve-key keyboard stands for pitches this far around its own."""
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -109,6 +107,10 @@ class ScoringModel:
         """How many modes compete."""
         return len(self.modes)
 
+    def mode_of(self, hypothesis: int) -> Mode:
+        """Give the mode of a hypothesis."""
+        return self.modes[int(self.mode_index[hypothesis])]
+
     def tables(self, kind: InputKind) -> HearingTables:
         """Give the tables for a kind of input; they are built the first time."""
         known = self._tables.get(kind)
@@ -128,7 +130,7 @@ class ScoringModel:
         units = system.cents_to_units(pitch_cents) - self.final_shift
         if kind is not InputKind.KEYS:
             return np.array([round(units)], dtype=np.int64), np.ones(1)
-        half = HALF_KEY_CENTS / system.unit_cents
+        half = KEY_CENTS / 2 / system.unit_cents
         near = np.arange(int(np.floor(units - half)), int(np.ceil(units + half)) + 1)
         share = np.clip(half + 0.5 - abs(near - units), 0.0, 1.0)
         return near[share > 0], share[share > 0]
@@ -186,18 +188,16 @@ def build_model(
     weight = np.array([parameters.prior_by_repertoire[mode.repertoire] for mode in modes])
     log_prior = np.log(np.broadcast_to(weight / weight.sum() / len(finals), finals.shape)).reshape(-1)
     final_units = finals.reshape(-1)
-    for array in (mode_index, final_units, log_prior):
-        array.setflags(write=False)
     return ScoringModel(
         pack,
         tuple(modes),
         reading,
         parameters,
         min(order or counts.order, counts.order),
-        mode_index,
-        final_units,
+        sealed(mode_index),
+        sealed(final_units),
         shift,
-        log_prior,
+        sealed(log_prior),
         tuple(fold_scale(mode, parameters, system) for mode in modes),
         counts,
     )
@@ -222,7 +222,7 @@ def _build_tables(model: ScoringModel, kind: InputKind) -> HearingTables:
     register = None
     if model.reading is not PitchReading.ANY:
         rows = [register_distribution(mode, hearing, parameters, system) for mode in model.modes]
-        register = np.stack(rows)
+        register = sealed(np.stack(rows))
     sigma = hearing.blur_cents / system.unit_cents
     reach = int(np.ceil(3 * sigma))
     bell = np.exp(-0.5 * (np.arange(-reach, reach + 1) / sigma) ** 2)
@@ -231,10 +231,9 @@ def _build_tables(model: ScoringModel, kind: InputKind) -> HearingTables:
     near_final = circular_blur(np.zeros(1), sigma, system.divisions)[0]
     near_final = (1 - noise) * near_final + noise / system.divisions
     closing = parameters.closing_final * near_final + (1 - parameters.closing_final) * theory[:, 1]
-    for array in (theory, register, closing, bell):
-        if array is not None:
-            array.setflags(write=False)
-    return HearingTables(theory, grams, closing, register, hearing.register_power, bell)
+    return HearingTables(
+        sealed(theory), grams, sealed(closing), register, hearing.register_power, sealed(bell)
+    )
 
 
 def register_columns(model: ScoringModel, units: IntArray) -> IntArray:

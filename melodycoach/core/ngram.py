@@ -29,17 +29,16 @@ from typing import TYPE_CHECKING, TypeAlias
 
 import numpy as np
 
-from melodycoach.core.theory import MOVING, RESTING, circular_blur
+from melodycoach.core.arrays import sealed
+from melodycoach.core.theory import MOVING, RESTING, apart, circular_blur
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping, Sequence
 
-    from numpy.typing import NDArray
-
-    from melodycoach.core.theory import FloatArray, FoldedScale
+    from melodycoach.core.arrays import FloatArray, IntArray
+    from melodycoach.core.theory import FoldedScale
 
 Context: TypeAlias = tuple[int, ...]
-IntArray: TypeAlias = "NDArray[np.int64]"
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,12 +96,12 @@ def snap_to_scale(scale: FoldedScale, near_units: float, divisions: int) -> IntA
     -------
     int64, shape (divisions,)
     """
-    units = np.arange(divisions)
+    units = np.arange(divisions, dtype=np.float64)
     written = np.concatenate([scale.book, scale.book])
     places = np.concatenate([scale.book, scale.played])
-    apart = abs((units[:, None] - places[None, :] + divisions / 2) % divisions - divisions / 2)
-    nearest = apart.argmin(axis=1)
-    snapped = np.where(apart.min(axis=1) <= near_units, written[nearest].round(), units)
+    away = abs(apart(units[:, None], places[None, :], divisions))
+    nearest = away.argmin(axis=1)
+    snapped = np.where(away.min(axis=1) <= near_units, written[nearest].round(), units)
     return np.asarray(snapped, dtype=np.int64) % divisions
 
 
@@ -144,14 +143,7 @@ def count_tokens(
                 row = after.setdefault(context[-length:], np.zeros(divisions))
                 row[token.unit] += token.weight
             context = (*context, int(snap[token.unit]))[-(order - 1) :] if order > 1 else ()
-    return ModeCounts(
-        _sealed(single), MappingProxyType({c: _sealed(r) for c, r in after.items()}), n_melodies
-    )
-
-
-def _sealed(array: FloatArray) -> FloatArray:
-    array.setflags(write=False)
-    return array
+    return ModeCounts(sealed(single), MappingProxyType({c: sealed(r) for c, r in after.items()}), n_melodies)
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -238,9 +230,8 @@ def build_table(
         indices.append(MappingProxyType(index))
     probability = np.ascontiguousarray(np.stack(rows, axis=1))
     next_row = np.stack(jumps)
-    for array in (probability, next_row):
-        array.setflags(write=False)
-    return NgramTable(probability, np.array(roots, dtype=np.int64), next_row, tuple(indices))
+    root = np.array(roots, dtype=np.int64)
+    return NgramTable(sealed(probability), sealed(root), sealed(next_row), tuple(indices))
 
 
 def _first_order(prior: FloatArray, single: FloatArray, mass: float) -> FloatArray:

@@ -24,10 +24,10 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
-from melodycoach.core.function import key_of, tolerance_units
+from melodycoach.core.function import tolerance_units
 from melodycoach.core.mode import StepKind
 from melodycoach.core.note import InputKind
-from melodycoach.core.pitch import A4_CENTS
+from melodycoach.core.pitch import key_of
 
 if TYPE_CHECKING:
     from melodycoach.core.mode import CharacteristicStep, Mode
@@ -144,7 +144,7 @@ def start_track(mode: Mode, final_units: int, system: ToneSystem) -> StepTrack:
             ends_at.append(place == len(step.degrees) - 1)
 
     def key(degree: float) -> int:
-        return key_of(A4_CENTS + (final_units + degree) * system.unit_cents)
+        return key_of(system.units_to_cents(final_units + degree))
 
     targets = tuple(
         _Target(

@@ -21,9 +21,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from melodycoach.core.note import Heard, InputKind
 from melodycoach.core.owed import follow, start_track
-from melodycoach.core.ranking import MOVING_S, RESTING_S, rank_owed
+from melodycoach.core.ranking import rank_owed, step_note
 from melodycoach.core.scorer import advance, leading, log_posterior, start
 
 if TYPE_CHECKING:
@@ -31,6 +30,7 @@ if TYPE_CHECKING:
 
     from melodycoach.core.mode import Mode
     from melodycoach.core.model import ScoringModel
+    from melodycoach.core.note import Heard, InputKind
     from melodycoach.core.scorer import ScorerState
 
 TRIAL_NOTES = 20
@@ -67,7 +67,7 @@ def try_owed(model: ScoringModel, notes: Sequence[Heard], hypothesis: int) -> Ow
     OwedTrial or None
         None when the mode owes nothing.
     """
-    mode = model.modes[model.mode_index[hypothesis]]
+    mode = model.mode_of(hypothesis)
     final_units = int(model.final_units[hypothesis])
     state = start(model)
     track = start_track(mode, final_units, model.pack.system)
@@ -85,7 +85,7 @@ def try_owed(model: ScoringModel, notes: Sequence[Heard], hypothesis: int) -> Ow
     pitches = ranked[0].pitches_cents
     after = state
     for place, pitch in enumerate(pitches, 1):
-        after = advance(model, after, _note(pitch, kind, place == len(pitches)))
+        after = advance(model, after, step_note(pitch, kind, is_last=place == len(pitches)))
     step_nats = mode_log_odds(model, after, hypothesis) - before
     scale = walk_scale(mode)
     units = model.pack.system.cents_to_units(notes[-1].pitch_cents) - final_units
@@ -122,16 +122,10 @@ def _walks(
     ends: list[tuple[float, ScorerState]] = []
     for there in ways:
         pitch = model.pack.system.units_to_cents(final_units + scale[there])
-        moved = advance(model, state, _note(pitch, kind, left == 1))
+        moved = advance(model, state, step_note(pitch, kind, is_last=left == 1))
         for share, end in _walks(model, moved, scale, final_units, there, left - 1, kind):
             ends.append((share / len(ways), end))
     return ends
-
-
-def _note(pitch_cents: float, kind: InputKind, last: bool) -> Heard:
-    if kind is InputKind.KEYS:
-        pitch_cents = 100.0 * round(pitch_cents / 100)
-    return Heard(pitch_cents, kind, RESTING_S if last else MOVING_S, rests=last, closes=False)
 
 
 def mode_log_odds(model: ScoringModel, state: ScorerState, hypothesis: int) -> float:

@@ -20,6 +20,7 @@ from typing import TYPE_CHECKING
 
 from melodycoach.core.mode import Repertoire
 from melodycoach.core.note import InputKind
+from melodycoach.core.pitch import COMMA_CENTS
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -79,14 +80,12 @@ class Hearing:
     change_power: float
 
 
-_COMMA = 1200 / 53
-
 _HEARING = MappingProxyType(
     {
-        InputKind.TYPED: Hearing(0.45 * _COMMA, 0.12, 0.8, 0.15, 2.5),
-        InputKind.KEYS: Hearing(0.45 * _COMMA, 0.12, 0.5, 0.15, 2.5),
-        InputKind.TUNED: Hearing(0.60 * _COMMA, 0.12, 0.5, 0.15, 2.5),
-        InputKind.RECORDED: Hearing(1.10 * _COMMA, 0.25, 0.0, 0.10, 1.5),
+        InputKind.TYPED: Hearing(0.45 * COMMA_CENTS, 0.12, 0.8, 0.15, 2.5),
+        InputKind.KEYS: Hearing(0.45 * COMMA_CENTS, 0.12, 0.5, 0.15, 2.5),
+        InputKind.TUNED: Hearing(0.60 * COMMA_CENTS, 0.12, 0.5, 0.15, 2.5),
+        InputKind.RECORDED: Hearing(1.10 * COMMA_CENTS, 0.25, 0.0, 0.10, 1.5),
     }
 )
 
@@ -157,9 +156,9 @@ class ScoringParameters:
     resting: FunctionWeights = FunctionWeights(1.0, 0.3, 0.5, 0.33, 3.0, 3.0, 1.3, 1.5, 1.3, 1.25)
     hearing: Mapping[InputKind, Hearing] = field(default_factory=lambda: _HEARING)
     prior_by_repertoire: Mapping[Repertoire, float] = field(default_factory=lambda: _PRIOR_BY_REPERTOIRE)
-    same_degree_cents: float = 1.6 * _COMMA
-    opening_margin_cents: float = 1.0 * _COMMA
-    below_limit_cents: float = 25.0 * _COMMA
+    same_degree_cents: float = 1.6 * COMMA_CENTS
+    opening_margin_cents: float = 1.0 * COMMA_CENTS
+    below_limit_cents: float = 25.0 * COMMA_CENTS
     length_power: float = 0.75
     longest_s: float = 1.0
     memory_mass: float = 50.0
@@ -188,4 +187,4 @@ class ScoringParameters:
     among_most: int = 4
     prior_mass: tuple[float, ...] = (1000.0, 40.0, 40.0)
     counts_power: float = 1.4
-    counts_blur_cents: float = 0.9 * _COMMA
+    counts_blur_cents: float = 0.9 * COMMA_CENTS

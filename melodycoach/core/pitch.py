@@ -20,11 +20,15 @@ from __future__ import annotations
 import unicodedata
 from dataclasses import dataclass
 from functools import cached_property
+from math import floor
 
 A4_CENTS = 6900.0
 OCTAVE_CENTS = 1200.0
+COMMA_CENTS = OCTAVE_CENTS / 53
+KEY_CENTS = 100.0  # from one key of a plain keyboard to the next
 LOWEST_CENTS, HIGHEST_CENTS = 0.0, 12700.0  # keys 0 and 127 of MIDI
 LETTERS = "CDEFGAB"
+KEY_NAMES = ("C", "C#", "D", "Eb", "E", "F", "F#", "G", "G#", "A", "Bb", "B")
 
 _DOTLESS = str.maketrans({"ı": "i", "İ": "i", "ğ": "g", "Ğ": "g", "ş": "s", "Ş": "s"})
 
@@ -39,6 +43,25 @@ def fold_name(text: str) -> str:
     """
     spread = unicodedata.normalize("NFKD", text.translate(_DOTLESS))
     return "".join(c for c in spread.lower() if c.isascii() and c.isalnum())
+
+
+def key_of(cents: float) -> int:
+    """Give the number of the key of a plain keyboard that is nearest to a pitch.
+
+    >>> key_of(6900), key_of(6949.9), key_of(6950)
+    (69, 69, 70)
+    """
+    return floor(cents / KEY_CENTS + 0.5)
+
+
+def key_name(cents: float) -> str:
+    """Name the key of a plain keyboard nearest to a pitch.
+
+    >>> key_name(7104.0), key_name(7400.0)
+    ('B4', 'D5')
+    """
+    octave, place = divmod(key_of(cents), len(KEY_NAMES))
+    return f"{KEY_NAMES[place]}{octave - 1}"
 
 
 @dataclass(frozen=True, slots=True)
@@ -254,6 +277,9 @@ class PitchNames:
 
     def name(self, cents: float) -> str:
         """Name a pitch for people: its nearest perde, or its nearest written name."""
-        units = round(self.system.cents_to_units(cents))
+        return self.name_at(round(self.system.cents_to_units(cents)))
+
+    def name_at(self, units: int) -> str:
+        """Name the pitch that lies so many units above A4, as `name` does."""
         named = self._by_units.get(units)
         return named.name if named else str(self.system.spell(units))

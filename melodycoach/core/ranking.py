@@ -21,15 +21,16 @@ import numpy as np
 from melodycoach.core.mode import Need, StepKind
 from melodycoach.core.note import Heard, InputKind
 from melodycoach.core.owed import AS_WRITTEN
+from melodycoach.core.pitch import KEY_CENTS, key_of
 from melodycoach.core.scorer import advance, temper
 
 if TYPE_CHECKING:
+    from melodycoach.core.arrays import FloatArray
     from melodycoach.core.mode import CharacteristicStep, Mode
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.owed import StepTrack
     from melodycoach.core.pitch import ToneSystem
     from melodycoach.core.scorer import ScorerState
-    from melodycoach.core.theory import FloatArray
 
 MOVING_S = 0.3
 """Length of the moving notes of a step that is tried out."""
@@ -175,13 +176,14 @@ def _play(
     for n, pitch in enumerate(pitches[:-1], start=1):
         known = tried.get(pitches[:n])
         if known is None:
-            known = advance(model, state, _heard(pitch, kind, MOVING_S, False))
+            known = advance(model, state, step_note(pitch, kind, is_last=False))
             tried[pitches[:n]] = known
         state = known
-    return advance(model, state, _heard(pitches[-1], kind, RESTING_S, True))
+    return advance(model, state, step_note(pitches[-1], kind, is_last=True))
 
 
-def _heard(pitch_cents: float, kind: InputKind, length_s: float, rests: bool) -> Heard:
+def step_note(pitch_cents: float, kind: InputKind, *, is_last: bool) -> Heard:
+    """Give one note of a step that is tried out: the last one rests; a plain keyboard plays its keys."""
     if kind is InputKind.KEYS:
-        pitch_cents = 100.0 * round(pitch_cents / 100)
-    return Heard(pitch_cents, kind, length_s, rests, closes=False)
+        pitch_cents = KEY_CENTS * key_of(pitch_cents)
+    return Heard(pitch_cents, kind, RESTING_S if is_last else MOVING_S, rests=is_last, closes=False)

@@ -22,17 +22,16 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from melodycoach.core.arrays import sealed
 from melodycoach.core.change import NONE, ChangeState, advance_change, start_change
 from melodycoach.core.model import register_columns
 from melodycoach.core.theory import MOVING, RESTING
 from melodycoach.errors import ImpossibleEvidenceError
 
 if TYPE_CHECKING:
+    from melodycoach.core.arrays import FloatArray, IntArray
     from melodycoach.core.model import ScoringModel
-    from melodycoach.core.ngram import IntArray
     from melodycoach.core.note import Heard, InputKind
-    from melodycoach.core.theory import FloatArray
-
 
 MEMORY_OCTAVES, MEMORY_OCTAVES_BELOW = 12, 6
 """Compass of a line's memory: more than MIDI has; pitches beyond it count as its ends."""
@@ -125,9 +124,8 @@ def start(model: ScoringModel) -> ScorerState:
         grams = model.tables(next(iter(model.parameters.hearing))).grams
         assert grams is not None
         context = grams.root[model.mode_index]
-    for array in (loglik, memory, context):
-        array.setflags(write=False)
-    return ScorerState(loglik, 0.0, 0, context, memory, (), start_change(model.log_prior))
+    change = start_change(model.log_prior)
+    return ScorerState(sealed(loglik), 0.0, 0, sealed(context), sealed(memory), (), change)
 
 
 def note_weight(model: ScoringModel, heard: Heard) -> float:
@@ -141,15 +139,13 @@ def advance(model: ScoringModel, state: ScorerState, heard: Heard) -> ScorerStat
     weight = note_weight(model, heard)
     units, shares = model.shares(heard.pitch_cents, heard.kind)
     fresh, evidence, context = _score(model, state, heard, weight, units, shares)
-    loglik = state.loglik + evidence.total
-    memory = _remember(model, state.memory, heard.kind, units, weight * shares / shares.sum())
-    for array in (loglik, memory, context):
-        array.setflags(write=False)
+    loglik = sealed(state.loglik + evidence.total)
+    memory = sealed(_remember(model, state.memory, heard.kind, units, weight * shares / shares.sum()))
     n_notes = state.n_notes + 1
     latest = (*state.latest, heard)[-model.parameters.closing_notes :]
     fresh *= model.parameters.hearing[heard.kind].change_power
     change = advance_change(state.change, fresh, model.n_modes, n_notes, model.parameters)
-    return ScorerState(loglik, state.weight + weight, n_notes, context, memory, latest, change)
+    return ScorerState(loglik, state.weight + weight, n_notes, sealed(context), memory, latest, change)
 
 
 def evidence_of(model: ScoringModel, state: ScorerState, heard: Heard) -> NoteEvidence:

@@ -19,6 +19,7 @@ from statistics import median
 from typing import TYPE_CHECKING
 
 from melodycoach.core.scorer import advance, announced, start
+from melodycoach.core.tally import share
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Sequence
@@ -137,31 +138,27 @@ class SeamFigures:
     @property
     def noticed(self) -> float:
         """Share of seams that were noticed."""
-        return _share(self.n_noticed, self.n_seams)
+        return share(self.n_noticed, self.n_seams)
 
     @property
     def right_before(self) -> float:
         """Share of seams at which the first mode was announced."""
-        return _share(self.n_right_before, self.n_seams)
+        return share(self.n_right_before, self.n_seams)
 
     @property
     def named(self) -> float:
         """Share of second modes named, where the first one had been."""
-        return _share(self.n_named, self.n_right_before)
+        return share(self.n_named, self.n_right_before)
 
     @property
     def noticed_by_chance(self) -> float:
         """Share of lines without a seam that would have been called noticed."""
-        return _share(self.n_changed_late, self.n_excerpts)
+        return share(self.n_changed_late, self.n_excerpts)
 
     @property
     def false_alarms_per_100(self) -> float:
         """Changes announced in 100 notes without a seam."""
-        return 100 * _share(self.n_false_alarms, self.n_excerpt_notes)
-
-
-def _share(part: int, whole: int) -> float:
-    return part / whole if whole else math.nan
+        return 100 * share(self.n_false_alarms, self.n_excerpt_notes)
 
 
 def seam_figures(

@@ -13,7 +13,7 @@ A silence of `BREATH_GAP_S` is written as a breath, one of `PHRASE_GAP_S` as the
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 from melodycoach.core.event import (
@@ -33,7 +33,6 @@ from melodycoach.core.event import (
 )
 from melodycoach.core.model import build_model
 from melodycoach.core.note import PACE_NOTES, Heard, Item, Mark, Note, hear
-from melodycoach.core.parameters import ScoringParameters
 from melodycoach.core.scorer import ScorerState, advance, start
 
 if TYPE_CHECKING:
@@ -41,6 +40,7 @@ if TYPE_CHECKING:
 
     from melodycoach.core.mode import Mode, ModePack
     from melodycoach.core.model import ScoringModel
+    from melodycoach.core.parameters import ScoringParameters
 
 BREATH_GAP_S = 1.0
 """A silence of at least so long between played notes is a breath."""
@@ -133,11 +133,11 @@ class SessionState:
     Parameters
     ----------
     pack, model
-        The modes, and how those that compete are scored.
+        The modes, and how those that compete are scored; the model knows how the final is read.
     only
         Ids of the modes that compete; empty: all of the pack.
-    reading, final_cents
-        What is known of the final.
+    final_cents
+        The final that the player has given, or None.
     target
         The mode that the player aims at, or None.
     line
@@ -156,9 +156,7 @@ class SessionState:
     pack: ModePack
     model: ScoringModel
     line: Line
-    parameters: ScoringParameters = field(default_factory=ScoringParameters)
     only: tuple[str, ...] = ()
-    reading: PitchReading = PitchReading.WRITTEN
     final_cents: float | None = None
     target: Mode | None = None
     sounding: int | None = None
@@ -166,6 +164,11 @@ class SessionState:
     now_s: float = 0.0
     past: tuple[tuple[Item, ...], ...] = ()
     future: tuple[tuple[Item, ...], ...] = ()
+
+    @property
+    def reading(self) -> PitchReading:
+        """What is known of the final."""
+        return self.model.reading
 
 
 def begin(
@@ -183,17 +186,9 @@ def begin(
     UnknownModeError
         ``only`` or ``target`` names a mode that the pack does not have.
     """
-    parameters = parameters or ScoringParameters()
     model = build_model(pack, pack.restrict(only), reading, final_cents, parameters)
     return SessionState(
-        pack,
-        model,
-        empty_line(model),
-        parameters,
-        only,
-        reading,
-        final_cents,
-        pack.find(target) if target else None,
+        pack, model, empty_line(model), only, final_cents, pack.find(target) if target else None
     )
 
 
@@ -317,6 +312,6 @@ def _rebuilt(
 ) -> SessionState:
     """Score the line again with other hypotheses."""
     modes = session.pack.restrict(only)
-    model = build_model(session.pack, modes, reading, final_cents, session.parameters)
+    model = build_model(session.pack, modes, reading, final_cents, session.model.parameters)
     line = rewrite(model, empty_line(model), session.line.items)
-    return replace(session, model=model, only=only, reading=reading, final_cents=final_cents, line=line)
+    return replace(session, model=model, only=only, final_cents=final_cents, line=line)

@@ -59,7 +59,7 @@ def step_label(
     final = mode.final_units if final_units is None else final_units
 
     def name(degree: int) -> str:
-        return names.name(names.system.units_to_cents(final + degree))
+        return names.name_at(final + degree)
 
     first, last = step.degrees[0], step.degrees[-1]
     match step.kind:

@@ -24,15 +24,16 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, TypeAlias
+from typing import TYPE_CHECKING
 
 import numpy as np
+
+from melodycoach.core.arrays import sealed
 
 if TYPE_CHECKING:
     from collections.abc import Iterable
 
-FloatArray: TypeAlias = np.ndarray[tuple[int, ...], np.dtype[np.float64]]
-IntArray: TypeAlias = np.ndarray[tuple[int, ...], np.dtype[np.int64]]
+    from melodycoach.core.arrays import FloatArray, IntArray
 
 N_BINS = 10
 """Bins of the reliability table, of equal width from 0 to 1."""
@@ -124,7 +125,7 @@ class Tally:
     @property
     def accuracy(self) -> float:
         """Share of melodies whose likeliest mode is the label."""
-        return _share(int(np.trace(self.confusion)), self.n)
+        return share(int(np.trace(self.confusion)), self.n)
 
     @property
     def accuracy_error(self) -> float:
@@ -140,37 +141,37 @@ class Tally:
     def calibration_error(self) -> float:
         """Expected calibration error of the likeliest mode's probability."""
         gaps = np.abs(self.bin_right - self.bin_probability)  # count · |share right - mean probability|
-        return _share(float(gaps.sum()), self.n)
+        return share(float(gaps.sum()), self.n)
 
     @property
     def listed(self) -> float:
         """Share of melodies whose label is among the `LISTED` likeliest modes."""
-        return _share(self.n_listed, self.n)
+        return share(self.n_listed, self.n)
 
     @property
     def undecided(self) -> float:
         """Share of melodies for which no mode was named."""
-        return _share(self.n - self.n_decided, self.n)
+        return share(self.n - self.n_decided, self.n)
 
     @property
     def decided_accuracy(self) -> float:
         """Share of right answers among the melodies for which a mode was named."""
-        return _share(self.n_decided_right, self.n_decided)
+        return share(self.n_decided_right, self.n_decided)
 
     @property
     def log_loss(self) -> float:
         """Mean of -ln(probability of the label), in nats."""
-        return _share(self.loss_nats, self.n)
+        return share(self.loss_nats, self.n)
 
     @property
     def final_found(self) -> float:
         """Share of found finals among those that were asked for."""
-        return _share(self.n_finals_found, self.n_finals)
+        return share(self.n_finals_found, self.n_finals)
 
     @property
     def both_found(self) -> float:
         """Share of melodies with both mode and final right among the finals asked for."""
-        return _share(self.n_both_found, self.n_finals)
+        return share(self.n_both_found, self.n_finals)
 
     @property
     def reliability(self) -> tuple[ReliabilityBin, ...]:
@@ -180,8 +181,8 @@ class Tally:
                 k / N_BINS,
                 (k + 1) / N_BINS,
                 int(count),
-                _share(float(self.bin_probability[k]), int(count)),
-                _share(float(self.bin_right[k]), int(count)),
+                share(float(self.bin_probability[k]), int(count)),
+                share(float(self.bin_right[k]), int(count)),
             )
             for k, count in enumerate(self.bin_count)
         )
@@ -219,7 +220,8 @@ class ConfusedPair:
         return self.first_as_second + self.second_as_first
 
 
-def _share(part: float, whole: int) -> float:
+def share(part: float, whole: int) -> float:
+    """Give how much of a whole a part is; a share of nothing is NaN."""
     return part / whole if whole else math.nan
 
 
@@ -316,13 +318,11 @@ class _Counts:
         self.loss_nats -= math.log(max(guessed.label_probability, LEAST_PROBABILITY))
 
     def tally(self) -> Tally:
-        for array in (self.confusion, self.bin_count, self.bin_right, self.bin_probability):
-            array.setflags(write=False)
         return Tally(
-            self.confusion,
-            self.bin_count,
-            self.bin_right,
-            self.bin_probability,
+            sealed(self.confusion),
+            sealed(self.bin_count),
+            sealed(self.bin_right),
+            sealed(self.bin_probability),
             self.n_listed,
             self.n_decided,
             self.n_decided_right,

@@ -15,26 +15,28 @@ docs/mathematics.md, "From a definition to probabilities".
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, TypeAlias
+from typing import TYPE_CHECKING
 
 import numpy as np
+
+from melodycoach.core.arrays import sealed
 
 if TYPE_CHECKING:
     from collections.abc import Iterable
 
-    from numpy.typing import NDArray
-
+    from melodycoach.core.arrays import FloatArray
     from melodycoach.core.mode import Mode
     from melodycoach.core.parameters import FunctionWeights, Hearing, ScoringParameters
     from melodycoach.core.pitch import ToneSystem
-
-FloatArray: TypeAlias = "NDArray[np.float64]"
 
 MOVING, RESTING = 0, 1
 """Rows of every table that tells moving from resting notes."""
 
 OCTAVES_BELOW, OCTAVES_ABOVE = 1, 2
 """Compass of the register around the final; pitches beyond it count as its ends."""
+
+_TINY = 1e-300
+"""Stands in for a bell that has vanished to 0, so that nothing is divided by 0."""
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -77,14 +79,14 @@ def fold_scale(mode: Mode, parameters: ScoringParameters, system: ToneSystem) ->
     for kind, group in groups:
         for degree in group:
             folded = degree % size
-            if not degrees or abs(_apart(np.array(degrees), folded, size)).min() >= near:
+            if not degrees or abs(apart(np.array(degrees), folded, size)).min() >= near:
                 degrees.append(folded)
                 base.append(kind)
     book = np.array(degrees, dtype=np.float64)
     played = book + np.array([deviation.get(int(degree), 0.0) for degree in degrees])
 
     def nearest(degree: float) -> int:
-        return int(abs(_apart(book, degree % size, size)).argmin())
+        return int(abs(apart(book, degree % size, size)).argmin())
 
     final = nearest(0)
     dominants = list(dict.fromkeys(nearest(degree) for degree in mode.dominants))
@@ -106,11 +108,16 @@ def fold_scale(mode: Mode, parameters: ScoringParameters, system: ToneSystem) ->
         weight[opening] *= weights.opening
         return np.asarray(weight / weight.sum(), dtype=np.float64)
 
-    return FoldedScale(book, played, np.stack([weigh(parameters.moving), weigh(parameters.resting)]))
+    weight = np.stack([weigh(parameters.moving), weigh(parameters.resting)])
+    return FoldedScale(sealed(book), sealed(played), sealed(weight))
 
 
-def _apart(positions: FloatArray, degree: float, size: int) -> FloatArray:
-    """Signed circular distance from a degree to each position, in (-size/2, size/2]."""
+def apart(positions: FloatArray, degree: FloatArray | float, size: int) -> FloatArray:
+    """Give the signed way round the octave from a degree to each position, in [-size/2, size/2).
+
+    >>> apart(np.array([1.0, 30.0]), 52.0, 53).tolist()
+    [2.0, -22.0]
+    """
     return np.asarray((positions - degree + size / 2) % size - size / 2, dtype=np.float64)
 
 
@@ -135,8 +142,8 @@ def circular_blur(positions: FloatArray, sigma: float, size: int) -> FloatArray:
     float64, shape (n, size)
         Each row sums to 1.
     """
-    apart = (np.arange(size)[None, :] - positions[:, None] + size / 2) % size - size / 2
-    bell = np.exp(-0.5 * (apart / max(sigma, _NARROWEST)) ** 2) + 1e-300
+    away = apart(np.arange(size, dtype=np.float64)[None, :], positions[:, None], size)
+    bell = np.exp(-0.5 * (away / max(sigma, _NARROWEST)) ** 2) + _TINY
     return np.asarray(bell / bell.sum(axis=1, keepdims=True), dtype=np.float64)
 
 
@@ -193,7 +200,7 @@ def register_distribution(
             weight *= parameters.register_decay ** (over.index(degree) + 1)
         place = degree + (1 - hearing.book_share) * deviation.get(degree % octave, 0.0)
         bell = np.exp(-0.5 * ((units - place) / sigma) ** 2)
-        total += weight * bell / max(bell.sum(), 1e-300)
+        total += weight * bell / max(bell.sum(), _TINY)
     total /= total.sum()
     return np.asarray(
         (1 - parameters.register_noise) * total + parameters.register_noise / len(units), dtype=np.float64

@@ -11,17 +11,14 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from melodycoach.core.evidence import (
+    Balance,
     DegreeKey,
     Evidence,
     Factor,
-    Tally,
-    evidence,
-    evidence_of_tally,
-    placed_final,
-    tally,
+    balance,
+    evidence_of_balance,
 )
 from melodycoach.core.function import Function, function_of
-from melodycoach.core.keyboard import keyboard_note
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -30,20 +27,6 @@ if TYPE_CHECKING:
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.note import Heard
     from melodycoach.core.scorer import ScorerState
-
-__all__ = [
-    "Evidence",
-    "Factor",
-    "Reason",
-    "Tally",
-    "evidence",
-    "keyboard_note",
-    "opening_place",
-    "placed_final",
-    "reasons",
-    "reasons_of_tally",
-    "tally",
-]
 
 LEAST_NATS = 0.1
 """Reasons that weigh less are not told."""
@@ -88,14 +71,14 @@ def reasons(
     a: int,
     b: int,
     count: int = 8,
-    earlier: Tally | None = None,
+    earlier: Balance | None = None,
 ) -> tuple[Reason, ...]:
     """Say what speaks most for hypothesis ``a`` against ``b``, and what most against it.
 
     Parameters
     ----------
     model, states, heard, a, b, earlier
-        As for `melodycoach.core.evidence.tally`.
+        As for `melodycoach.core.evidence.balance`.
     count
         At most so many reasons in all. At least a quarter of them is kept for those against, if
         there are any.
@@ -105,17 +88,17 @@ def reasons(
     tuple of Reason
         Those for ``a``, the strongest first, then those for ``b``, the strongest first.
     """
-    return reasons_of_tally(tally(model, states, heard, a, b, earlier), heard, count)
+    return reasons_of_balance(balance(model, states, heard, a, b, earlier), heard, count)
 
 
-def reasons_of_tally(counted: Tally, heard: Sequence[Heard], count: int = 8) -> tuple[Reason, ...]:
-    """Give what `reasons` does, from a tally of the whole line."""
-    told = [one for one in evidence_of_tally(counted, heard) if abs(one.nats) >= LEAST_NATS]
+def reasons_of_balance(weighed: Balance, heard: Sequence[Heard], count: int = 8) -> tuple[Reason, ...]:
+    """Give what `reasons` does, from a balance of the whole line."""
+    told = [one for one in evidence_of_balance(weighed, heard) if abs(one.nats) >= LEAST_NATS]
     pro = [one for one in told if one.nats > 0]
     contra = [one for one in told if one.nats < 0]
     kept = min(len(contra), max(count // 4, count - len(pro)))
     shown = [*pro[: count - kept], *contra[:kept]]
-    words = _Words(counted.model, counted.a, counted.b, counted.finals)
+    words = _Words(weighed.model, weighed.a, weighed.b, weighed.finals)
     return tuple(Reason(words.say(one), one.nats, one.numbers) for one in shown)
 
 
@@ -130,7 +113,7 @@ def opening_place(mode: Mode, final_units: int, model: ScoringModel) -> str:
     names, system = model.pack.names, model.pack.system
 
     def name(degree: int) -> str:
-        return names.name(system.units_to_cents(final_units + degree))
+        return names.name_at(final_units + degree)
 
     low, high = mode.opening
     inner = mode.dominants[0] if mode.dominants else None
@@ -145,7 +128,7 @@ class _Words:
 
     def __init__(self, model: ScoringModel, a: int, b: int, finals: tuple[int, int]) -> None:
         self.model = model
-        self.a, self.b = (model.modes[model.mode_index[h]] for h in (a, b))
+        self.a, self.b = (model.mode_of(h) for h in (a, b))
         self.final_a, self.final_b = finals
         self.size = model.pack.system.divisions
         self.trade_word = model.pack.names.word
@@ -172,10 +155,10 @@ class _Words:
                 assert one.degree is not None
                 return self._closing(one.degree, one.nats)
             case Factor.PRIOR:
-                return f"{self._favoured_first(one.nats)[0][0].name} is the likelier one before any note"
+                return f"{self._favoured_first(one.nats)[0][0].name} is met more often in the repertoire"
 
     def _name(self, units: int) -> str:
-        return self.model.pack.names.name(self.model.pack.system.units_to_cents(units))
+        return self.model.pack.names.name_at(units)
 
     def _favoured_first(self, nats: float) -> tuple[tuple[Mode, int], tuple[Mode, int]]:
         pair = (self.a, self.final_a), (self.b, self.final_b)
@@ -228,7 +211,7 @@ class _Words:
                 rank = _dominant_rank(mode, degree, self.size)
                 return f"the {'second ' if rank else ''}{self.trade_word(function.value)} of {name}"
             case Function.SUSPENDED:
-                return f"{_article(self.trade_word(function.value))} of {name}"
+                return f"a place of {self.trade_word(function.value)} in {name}"
             case Function.FALLING:
                 return f"in {name} only going down"
             case Function.PASSING:
@@ -256,7 +239,3 @@ class _Words:
 def _dominant_rank(mode: Mode, degree: int | None, size: int) -> int:
     """Give 0 for the first dominant (in any octave), 1 for any other degree."""
     return int(degree is None or not mode.dominants or (degree - mode.dominants[0]) % size != 0)
-
-
-def _article(word: str) -> str:
-    return f"{'an' if word[0] in 'aeiou' else 'a'} {word}"

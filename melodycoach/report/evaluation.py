@@ -15,10 +15,11 @@ from melodycoach.core.tally import LISTED, N_BINS, confused_pairs
 if TYPE_CHECKING:
     from collections.abc import Callable, Sequence
 
+    from melodycoach.core.arrays import IntArray
     from melodycoach.core.evaluation import Evaluation
     from melodycoach.core.owed_trial import OwedFigures
     from melodycoach.core.seams import SeamFigures
-    from melodycoach.core.tally import IntArray, Tally
+    from melodycoach.core.tally import Tally
 
 _READING = {
     PitchReading.WRITTEN: "each mode stands on its own written final",

@@ -74,7 +74,7 @@ def modes_json(pack: ModePack) -> dict[str, Any]:
                 "final": place(pack, mode, 0),
                 "course": mode.course.value,
                 "dominants": _places(pack, mode, mode.dominants),
-                "confidence": mode.confidence,
+                "confidence": mode.confidence.value,
                 "repertoire": mode.repertoire.value,
             }
             for mode in pack.modes
@@ -93,7 +93,7 @@ def mode_json(pack: ModePack, mode: Mode) -> dict[str, Any]:
         "family": mode.family,
         "theory": pack.theory,
         "caution": pack.caution,
-        "confidence": mode.confidence,
+        "confidence": mode.confidence.value,
         "repertoire": mode.repertoire.value,
         "words": dict(pack.names.words),
         "divisions": pack.system.divisions,

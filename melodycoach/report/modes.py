@@ -9,7 +9,7 @@ from __future__ import annotations
 import textwrap
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.core.mode import Need, Repertoire
+from melodycoach.core.mode import Confidence, Need, Repertoire
 from melodycoach.report.mode_data import mode_json, modes_json
 
 if TYPE_CHECKING:
@@ -31,9 +31,9 @@ _NEEDS = {
 }
 
 _CONFIDENCE = {
-    "high": "high: the sources agree on what matters",
-    "medium": "medium: the sources differ in places, or say little",
-    "low": "low: little was found to check this against",
+    Confidence.HIGH.value: "high: the sources agree on what matters",
+    Confidence.MEDIUM.value: "medium: the sources differ in places, or say little",
+    Confidence.LOW.value: "low: little was found to check this against",
 }
 
 _HEARD = {

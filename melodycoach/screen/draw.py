@@ -35,7 +35,7 @@ from melodycoach.screen.panels import (
 )
 from melodycoach.screen.plain import plain_line
 from melodycoach.screen.signs import ASCII, UNICODE
-from melodycoach.screen.text import Line, cut, fit, tidy_lines, wrap
+from melodycoach.screen.text import Line, cut, fit, tidy_lines, wrap, wrap_within
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -129,9 +129,7 @@ def _sentence(view: ViewState, columns: int, rows: int) -> list[Line]:
     """Say it all in one sentence, as far as there is room."""
     if rows <= 0:
         return []
-    texts = wrap(plain_line(view, None) or view.verdict, columns)
-    if len(texts) > rows:
-        texts = [*texts[: rows - 1], cut(" ".join(texts[rows - 1 :]), columns)]
+    texts = wrap_within(plain_line(view, None) or view.verdict, columns, rows)
     return _filled([[("class:verdict" if row == 0 else "", text)] for row, text in enumerate(texts)], rows)
 
 
@@ -232,7 +230,7 @@ def _foot(view: ViewState, columns: int, layout: Layout, signs: Signs) -> list[L
     """Draw status and keys; where there is one row for both, a warning takes it."""
     lines = _filled(draw_status(view, columns, layout.status, signs), layout.status)
     if layout.hints:
-        warned = view.status.warning and not layout.status
+        warned = (view.status.warning or view.status.notice) and not layout.status
         lines.append(draw_status(view, columns, 1, signs)[0] if warned else draw_hints(view, columns))
     return lines
 

@@ -11,7 +11,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from melodycoach.screen.text import Line, cut, line_width, pad, pad_left, width, wrap
+from melodycoach.screen.text import Line, cut, line_width, pad, pad_left, width, wrap, wrap_within
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -313,12 +313,7 @@ def draw_why(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Lin
     lines: list[Line] = []
     for row in view.why:
         style = "class:for" if row.nats >= 0 else "class:against"
-        texts = wrap(row.text, columns - 6)
-        left = rows - len(lines)
-        if left <= 0:
-            break
-        if len(texts) > left:
-            texts = [*texts[: left - 1], cut(" ".join(texts[left - 1 :]), columns - 6, signs.more)]
+        texts = wrap_within(row.text, columns - 6, rows - len(lines), signs.more)
         for place, text in enumerate(texts):
             gain = pad_left(gain_words(row.nats, signs), 5) if place == 0 else "     "
             lines.append([(style, f"{gain} "), ("", text)])
@@ -332,13 +327,13 @@ def draw_status(view: ViewState, columns: int, rows: int, signs: Signs) -> list[
     lines: list[Line] = []
     status = view.status
     if status.warning:
-        texts = wrap(status.warning, columns - 2)
-        if len(texts) > rows:
-            texts = [*texts[: rows - 1], cut(" ".join(texts[rows - 1 :]), columns - 2, signs.more)]
+        texts = wrap_within(status.warning, columns - 2, rows, signs.more)
         lines += [
             [("class:warning", f"{signs.warning} " if place == 0 else "  "), ("class:warning", text)]
             for place, text in enumerate(texts)
         ]
+    elif status.notice:
+        lines.append([("class:heard", cut(f"{signs.heard} {status.notice}", columns, signs.more))])
     gap = f" {signs.dot} "
     world = gap.join(part for part in (status.input_line, status.tuning_line) if part)
     whole = gap.join(part for part in (world, status.log_line) if part)

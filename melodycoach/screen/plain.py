@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from melodycoach.screen.text import tidy
+from melodycoach.screen.text import percent, tidy
 
 if TYPE_CHECKING:
     from melodycoach.screen.view import LineNote, OwedRow, ViewState
@@ -70,16 +70,8 @@ def _verdict(view: ViewState) -> str:
     shown = view.leanings[:1] if view.decided else view.leanings[:2]
     if view.decided and "%" in view.verdict:
         return view.verdict
-    numbers = ", ".join(f"{row.name} {_percent(row.probability)}" for row in shown)
+    numbers = ", ".join(f"{row.name} {percent(row.probability)}" for row in shown)
     return f"{view.verdict} ({numbers})"
-
-
-def _percent(probability: float) -> str:
-    if probability > 0.995:
-        return "over 99 percent"
-    if probability < 0.005:
-        return "under 1 percent"
-    return f"{probability * 100:.0f} percent"
 
 
 def _heard(view: ViewState, previous: ViewState | None) -> list[str]:

@@ -177,7 +177,7 @@ def completed(question: Question) -> Question:
 def answer(question: Question, number: int) -> Command | None:
     """Turn what is typed into a command with this number; None if nothing is asked for."""
     text = question.text
-    if question.picked is not None:
+    if question.picked is not None or _means_one(question):
         text = completed(question).text
     text = text.strip()
     match question.kind:
@@ -193,6 +193,14 @@ def answer(question: Question, number: int) -> Command | None:
             return Save(text, number) if text else None
         case QuestionKind.OPEN:
             return Open(text, number) if text else None
+
+
+def _means_one(question: Question) -> bool:
+    """Whether a beginning, or a part, of a name stands for the only choice that it fits."""
+    named = question.kind in {QuestionKind.TARGET, QuestionKind.ONLY, QuestionKind.PORT}
+    part = fold_name(_parts(question)[1])
+    fitting = offered(question)
+    return named and bool(part) and len(fitting) == 1 and fold_name(fitting[0]) != part
 
 
 def answer_arrived(question: Question, handled: int, refusals: Sequence[Refusal]) -> Question | None:

@@ -45,7 +45,6 @@ class Signs:
     warning: str
     more: str
     minus: str
-    older: str
 
 
 UNICODE = Signs(
@@ -76,7 +75,6 @@ UNICODE = Signs(
     warning="!",
     more="…",
     minus="−",
-    older="…",
 )
 
 ASCII = Signs(
@@ -107,7 +105,6 @@ ASCII = Signs(
     warning="!",
     more="~",
     minus="-",
-    older="~",
 )
 
 STYLES: dict[str, str] = {

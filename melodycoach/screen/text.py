@@ -20,6 +20,9 @@ if TYPE_CHECKING:
 Fragment: TypeAlias = tuple[str, str]
 Line: TypeAlias = list[Fragment]
 
+WORD = re.compile(r"\S+")
+"""A word: what stands between spaces."""
+
 _NO_WIDTH = frozenset(("Mn", "Me", "Cf"))
 _UNPRINTABLE = frozenset(("Cc", "Cs", "Co", "Cn", "Zl", "Zp"))
 _LETTERS = str.maketrans(
@@ -159,6 +162,18 @@ def wrap(text: str, columns: int) -> list[str]:
     return [*rows, row] if row else rows
 
 
+def wrap_within(text: str, columns: int, rows: int, sign: str = "…") -> list[str]:
+    """Break a text into so many rows at most; the last one is cut where there is more.
+
+    >>> wrap_within("eviç mends it, not acem", 10, 2)
+    ['eviç mends', 'it, not a…']
+    """
+    texts = wrap(text, columns)
+    if len(texts) <= rows:
+        return texts
+    return [*texts[: rows - 1], cut(" ".join(texts[rows - 1 :]), columns, sign)] if rows > 0 else []
+
+
 def _head(text: str, columns: int) -> str:
     """Take as many characters as fit, and at least one."""
     room = columns
@@ -216,5 +231,12 @@ def plain_text(line: Iterable[Fragment]) -> str:
     return "".join(text for _, text in line)
 
 
-WORD = re.compile(r"\S+")
-"""A word: what stands between spaces."""
+def percent(probability: float) -> str:
+    """Write a probability without promising certainty.
+
+    >>> percent(0.732), percent(0.9999), percent(0.001)
+    ('73 %', 'over 99 %', 'under 1 %')
+    """
+    if probability > 0.99:
+        return "over 99 %"
+    return "under 1 %" if 0 < probability < 0.01 else f"{100 * probability:.0f} %"

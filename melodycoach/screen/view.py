@@ -97,13 +97,15 @@ class Status:
 
     ``input_line`` says which port is open or lost, or that notes are typed. ``tuning_line`` says
     which tuning is believed and why. ``log_line`` says where the log goes. ``warning`` is the
-    newest thing that needs the player's attention, or empty.
+    newest thing that needs the player's attention, or empty; ``notice`` is the newest thing that
+    went well and is worth a word.
     """
 
     input_line: str = ""
     tuning_line: str = ""
     log_line: str = ""
     warning: str = ""
+    notice: str = ""
 
 
 @dataclass(frozen=True, slots=True)

@@ -9,16 +9,18 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from melodycoach.core.event import PitchReading
-from melodycoach.core.evidence import Tally, placed_final, tally
+from melodycoach.core.evidence import Balance, balance, placed_final
 from melodycoach.core.function import Function, function_of
 from melodycoach.core.keyboard import keyboard_note
 from melodycoach.core.note import InputKind, Mark, Note
 from melodycoach.core.offmode import off_mode, off_mode_words
 from melodycoach.core.owed import StepTrack, follow, start_track
+from melodycoach.core.pitch import key_name
 from melodycoach.core.ranking import rank_owed
 from melodycoach.core.scorer import announced, leading, mode_posterior, posterior
 from melodycoach.core.step_words import step_label
-from melodycoach.core.why import reasons_of_tally
+from melodycoach.core.why import reasons_of_balance
+from melodycoach.screen.text import percent
 from melodycoach.screen.view import LeaningRow, LineNote, OwedRow, Rung, Status, ViewState, WhyRow
 
 if TYPE_CHECKING:
@@ -35,7 +37,6 @@ REASONS_SHOWN = 8
 NOTES_SHOWN = 300
 """So many of the newest notes are handed to the screen."""
 
-_KEY_NAMES = ("C", "C#", "D", "Eb", "E", "F", "F#", "G", "G#", "A", "Bb", "B")
 _FUNCTIONS_ON_LADDER = {Function.FINAL, Function.DOMINANT, Function.LEADING, Function.SUSPENDED}
 
 
@@ -45,7 +46,7 @@ class ViewMaker:
     def __init__(self) -> None:
         self._tracks: list[StepTrack] = []
         self._followed: tuple[object, ...] = ()
-        self._tally: Tally | None = None
+        self._balance: Balance | None = None
 
     def view_of(self, session: SessionState, status: Status, tokens: tuple[str, ...] = ()) -> ViewState:
         """Give what the screen shows of a session.
@@ -72,7 +73,7 @@ class ViewMaker:
             decided=heard_anything and lean.decided,
             leanings=_leaning_rows(session, state),
             in_view=mode.name,
-            rival=model.modes[model.mode_index[rival]].name if rival is not None else "",
+            rival=model.mode_of(rival).name if rival is not None else "",
             is_target=session.target is not None,
             owed=_owed_rows(session, hypothesis, rival, track),
             line=_line_notes(session, mode, final_units),
@@ -116,8 +117,8 @@ class ViewMaker:
         if hypothesis is None or rival is None:
             return ()
         line = session.line
-        self._tally = tally(session.model, line.states, line.heard, hypothesis, rival, self._tally)
-        found = reasons_of_tally(self._tally, line.heard, REASONS_SHOWN)
+        self._balance = balance(session.model, line.states, line.heard, hypothesis, rival, self._balance)
+        found = reasons_of_balance(self._balance, line.heard, REASONS_SHOWN)
         return tuple(WhyRow(text=reason.text, nats=reason.nats) for reason in found)
 
 
@@ -129,7 +130,7 @@ def _hypothesis_in_view(session: SessionState, lean: Leaning) -> tuple[Mode, int
     """
     model, line = session.model, session.line
     if session.target is None:
-        mode = model.modes[model.mode_index[lean.best]]
+        mode = model.mode_of(lean.best)
         return mode, placed_final(model, lean.best, line.heard), lean.best, lean.rival
     candidates = [i for i, index in enumerate(model.mode_index) if model.modes[index].id == session.target.id]
     if not candidates:
@@ -146,21 +147,11 @@ def _verdict(model: ScoringModel, state: ScorerState, lean: Leaning) -> str:
     names = [model.modes[index].name for index in lean.among]
     if lean.decided:
         return f"leaning to {names[0]}, {percent(lean.p_best)}"
-    family = f" (all of the {lean.family})" if lean.family and len(names) > 1 else ""
     if len(names) == 1:
         return f"undecided; {names[0]} is nearest"
+    count = "both" if len(names) == 2 else "all"
+    family = f", {count} of the {lean.family}" if lean.family else ""
     return f"undecided between {', '.join(names[:-1])} and {names[-1]}{family}"
-
-
-def percent(probability: float) -> str:
-    """Write a probability without promising certainty.
-
-    >>> percent(0.732), percent(0.9999), percent(0.001)
-    ('73 %', 'over 99 %', 'under 1 %')
-    """
-    if probability > 0.99:
-        return "over 99 %"
-    return "under 1 %" if 0 < probability < 0.01 else f"{100 * probability:.0f} %"
 
 
 def _now(model: ScoringModel, line: Line, lean: Leaning) -> str:
@@ -191,7 +182,7 @@ def _leaning_rows(session: SessionState, state: ScorerState) -> tuple[LeaningRow
             LeaningRow(
                 mode_id=mode.id,
                 name=mode.name,
-                final=session.pack.names.name(session.pack.system.units_to_cents(int(final))),
+                final=session.pack.names.name_at(int(final)),
                 probability=float(by_mode[index]),
                 change=float(by_mode[index] - before[index]),
                 target=target is not None and mode.id == target.id,
@@ -237,16 +228,6 @@ def _owed_rows(
     return (*rows, *(row(as_written[i], at, 0.0, i) for at, i in heard))
 
 
-def key_name(cents: float) -> str:
-    """Name the key of a plain keyboard nearest to a pitch.
-
-    >>> key_name(7104.0), key_name(7400.0)
-    ('B4', 'D5')
-    """
-    key = int(cents / 100 + 0.5)
-    return f"{_KEY_NAMES[key % 12]}{key // 12 - 1}"
-
-
 def _line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[LineNote, ...]:
     """Give the newest notes, each with the mark after it and with what is wrong with it."""
     system, names = session.pack.system, session.pack.names
@@ -285,12 +266,13 @@ def _ladder(mode: Mode, final_units: int, names: PitchNames) -> tuple[Rung, ...]
             continue
         function = function_of(mode, degree, names.system.divisions)
         leads = degree == 0 or degree in mode.dominants  # their octaves get no guide line
+        at_home = leads or degree in (*mode.leading, *mode.suspended)  # nor is their octave the karar
         height = final_units + degree
         rungs.append(
             Rung(
                 height=height,
-                name=names.name(names.system.units_to_cents(height)),
-                function=names.word(function.value) if function in _FUNCTIONS_ON_LADDER else "",
+                name=names.name_at(height),
+                function=names.word(function.value) if at_home and function in _FUNCTIONS_ON_LADDER else "",
                 role=function.value if leads else "degree",
             )
         )

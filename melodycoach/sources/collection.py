@@ -18,6 +18,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, NoReturn
 
 from melodycoach.core.note import InputKind, Note
+from melodycoach.core.pitch import HIGHEST_CENTS, LOWEST_CENTS
 from melodycoach.errors import CollectionError, nearest_names
 
 if TYPE_CHECKING:
@@ -27,9 +28,6 @@ if TYPE_CHECKING:
 
 MAX_LINE_BYTES = 8_000_000
 """A longer line is no melody, and is not taken into memory."""
-
-HIGHEST_CENTS = 12_700.0
-"""The highest pitch of the MIDI scale; the lowest is 0."""
 
 MAX_SECONDS = 86_400.0
 """No onset and no duration is longer than a day."""
@@ -177,7 +175,7 @@ def _melody(line: bytes | None, kind: InputKind, *, first: bool) -> Melody | Non
     group = _word(record, "group") if "group" in record else identity
     mode_id = _word(record, "mode")
     final = record.get("final")
-    final_cents = None if final is None else _number(final, "'final'", 0.0, HIGHEST_CENTS, "cents")
+    final_cents = None if final is None else _number(final, "'final'", LOWEST_CENTS, HIGHEST_CENTS, "cents")
     return Melody(identity, group, mode_id, final_cents, _notes(record, kind))
 
 
@@ -203,7 +201,7 @@ def _notes(record: dict[str, object], kind: InputKind) -> tuple[Note, ...]:
             _bad(f"note {number} is {_shown(triple)}, expected {_NOTE_FORM}")
         onset_s = _number(triple[0], f"note {number}: the onset", 0.0, MAX_SECONDS, "seconds")
         duration_s = _number(triple[1], f"note {number}: the duration", 0.0, MAX_SECONDS, "seconds")
-        cents = _number(triple[2], f"note {number}: the pitch", 0.0, HIGHEST_CENTS, "cents")
+        cents = _number(triple[2], f"note {number}: the pitch", LOWEST_CENTS, HIGHEST_CENTS, "cents")
         if onset_s < before_s:
             _bad(f"note {number}: begins at {onset_s:g} s, before note {number - 1} ({before_s:g} s)")
         before_s = onset_s

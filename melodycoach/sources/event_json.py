@@ -33,7 +33,7 @@ from melodycoach.core.event import (
     Undone,
 )
 from melodycoach.core.note import InputKind, Item, Mark, Note, Silence
-from melodycoach.errors import EventLogError, nearest_names
+from melodycoach.errors import EventLogError, nearest_names, shorten
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Mapping
@@ -170,7 +170,7 @@ def _refuse_constant(word: str) -> float:
 
 def _shown(line: bytes | str) -> str:
     text = line.decode(errors="replace") if isinstance(line, bytes) else line
-    return repr(text if len(text) <= 40 else text[:39] + "…")
+    return repr(shorten(text))
 
 
 def _number(value: object) -> float:

@@ -11,7 +11,7 @@ import os
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from melodycoach.errors import EventLogError, StorageError
+from melodycoach.errors import EventLogError, StorageError, system_reason
 from melodycoach.sources.event_json import (
     LogHeader,
     event_from_json,
@@ -91,7 +91,7 @@ class EventLog:
             self._file = path.open("ab", buffering=0)
             taken = os.fstat(self._file.fileno()).st_size > 0
         except OSError as error:
-            self._give_up(f"{path}: {_reason(error)}")
+            self._give_up(f"{path}: {system_reason(error)}")
         else:
             if taken:
                 self._give_up(f"{path}: the file already holds something")
@@ -153,7 +153,7 @@ class EventLog:
                     return
                 del self._waiting[:written]
         except OSError as error:
-            reason = f"{self.path}: {_reason(error)}"
+            reason = f"{self.path}: {system_reason(error)}"
             self.fault = self.fault or f"{reason}; playing goes on, and the log is tried again"
 
     def _give_up(self, reason: str) -> None:
@@ -181,7 +181,7 @@ def read_event_log(path: Path) -> RecordedLog:
     try:
         raw = path.read_bytes()
     except OSError as error:
-        raise StorageError(f"{path}: {_reason(error)}, expected an event log to read") from error
+        raise StorageError(f"{path}: {system_reason(error)}, expected an event log to read") from error
     lines = raw.split(b"\n")
     tail = lines.pop()  # what follows the last line end: nothing, or a line cut short
     if not lines:
@@ -210,7 +210,3 @@ def read_event_log(path: Path) -> RecordedLog:
                 f"the {len(events)} events before it are whole"
             )
     return RecordedLog(header, tuple(events), notice)
-
-
-def _reason(error: OSError) -> str:
-    return (error.strerror or str(error)).lower()

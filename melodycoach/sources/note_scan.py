@@ -9,9 +9,9 @@ from typing import TYPE_CHECKING
 
 from melodycoach.core.note import InputKind, Note
 from melodycoach.core.pitch import A4_CENTS, fold_name
-from melodycoach.errors import nearest_names
+from melodycoach.errors import nearest_names, shorten
 from melodycoach.sources.note_repair import nearest_token
-from melodycoach.sources.note_token import Misread, read_key_mark, read_token, shorten
+from melodycoach.sources.note_token import Misread, read_key_mark, read_token
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -92,10 +92,14 @@ class Fault:
             return f"did you mean {self.nearest!r}?"
         return self.hint or "mend it or delete it"
 
+    @property
+    def sentence(self) -> str:
+        """What was found, what was expected, and what to do."""
+        return f"{shorten(self.token)!r} {self.problem}, expected {self.expected}; {self.advice}"
+
     def __str__(self) -> str:
-        """Say where, what was found, what was expected, and what to do."""
-        found = f"{shorten(self.token)!r} {self.problem}"
-        return f"{self.line}:{self.column}: {found}, expected {self.expected}; {self.advice}"
+        """Say the same with its place in front."""
+        return f"{self.line}:{self.column}: {self.sentence}"
 
 
 @dataclass

@@ -11,7 +11,7 @@ from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
 from melodycoach.core.note import RESTING_GAP_S, Mark, Note, Silence
-from melodycoach.errors import NoteTextError
+from melodycoach.errors import NoteTextError, shorten
 from melodycoach.sources.note_scan import MAX_TEXT_CHARS, Comment, Fault, Headers, Scan
 from melodycoach.sources.note_token import (
     DEFAULT_TEMPO,
@@ -19,7 +19,6 @@ from melodycoach.sources.note_token import (
     complete,
     item_token,
     lay_out,
-    shorten,
     write_pitch,
 )
 

@@ -25,6 +25,7 @@ from melodycoach.core.pitch import (
     Spelling,
     fold_name,
 )
+from melodycoach.errors import shorten
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Sequence
@@ -368,8 +369,3 @@ def complete(prefix: str, names: PitchNames) -> tuple[str, ...]:
         elif any(fold_name(word).startswith(typed) for word in words[1:]):
             inside.append(name_token(named.name))
     return (*starts, *inside)
-
-
-def shorten(text: str, longest: int = 40) -> str:
-    """Cut a text for an error message."""
-    return text if len(text) <= longest else text[: longest - 1] + "…"

@@ -16,7 +16,7 @@ from itertools import pairwise
 from typing import TYPE_CHECKING, Any, TypeAlias
 
 from melodycoach.core.pitch import LETTERS, Spelling, ToneSystem, fold_name
-from melodycoach.errors import nearest_names
+from melodycoach.errors import nearest_names, shorten
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
@@ -67,10 +67,9 @@ class Here:
         return self.known.system.divisions
 
 
-def shorten(value: object) -> str:
-    """Give the repr of a value, cut short enough to leave room for a sentence."""
-    text = repr(value)
-    return text if len(text) <= _SHOWN_CHARACTERS else text[: _SHOWN_CHARACTERS - 1] + "…"
+def shown(value: object) -> str:
+    """Write a value that was found, cut to what fits in a sentence."""
+    return shorten(repr(value), _SHOWN_CHARACTERS)
 
 
 def read_spelling(text: str, *, octave: bool) -> Spelling | None:
@@ -273,7 +272,7 @@ def played_not_numbers(value: Any, here: Here) -> Breaches:
     for degree, played in value.items():
         whole = re.fullmatch(r"-?\d{1,3}", degree)
         if not whole or isinstance(played, bool) or not isinstance(played, int | float):
-            yield degree if whole else shorten(degree), shorten(played)
+            yield degree if whole else shown(degree), shown(played)
 
 
 def played_far_off(value: Any, here: Here) -> Breaches:

@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING, Any
 
 from melodycoach.core.mode import (
     CharacteristicStep,
+    Confidence,
     Course,
     Genus,
     Mode,
@@ -25,7 +26,7 @@ from melodycoach.core.mode import (
     StepKind,
 )
 from melodycoach.core.pitch import TONE_SYSTEMS, NamedPitch, PitchNames, Spelling, ToneSystem, fold_name
-from melodycoach.errors import PackError, StorageError, UnknownNameError, nearest_names
+from melodycoach.errors import PackError, StorageError, UnknownNameError, nearest_names, system_reason
 from melodycoach.sources.pack_checks import read_spelling
 from melodycoach.sources.pack_rules import faults_in
 
@@ -93,6 +94,15 @@ def list_packs(user_dir: Path | None = None) -> tuple[PackEntry, ...]:
     return tuple(_entry(name, path, name in shadowing) for name, path in sorted(find_packs(user_dir).items()))
 
 
+def is_pack_file(name_or_path: str) -> bool:
+    r"""Tell the path of a pack file from the name of a pack.
+
+    >>> is_pack_file("makam"), is_pack_file("mine.toml"), is_pack_file("../mine"), is_pack_file(r"C:\mine")
+    (False, True, True, True)
+    """
+    return name_or_path.endswith(SUFFIX) or bool({"/", "\\"} & set(name_or_path))
+
+
 def load_pack(name_or_path: str | Path, user_dir: Path | None = None) -> ModePack:
     """Read a pack by its name, or from a file.
 
@@ -113,7 +123,7 @@ def load_pack(name_or_path: str | Path, user_dir: Path | None = None) -> ModePac
     PackError
         It can be read and not used; `faults` says why.
     """
-    if isinstance(name_or_path, Path) or name_or_path.endswith(SUFFIX) or {"/", "\\"} & set(name_or_path):
+    if isinstance(name_or_path, Path) or is_pack_file(name_or_path):
         return read_pack(Path(name_or_path))
     packs = find_packs(user_dir)
     folded = {fold_name(name): path for name, path in packs.items()}
@@ -158,7 +168,8 @@ def _packs_in(folder: Path) -> dict[str, Path]:
         return {}
     except OSError as error:
         raise StorageError(
-            f"{folder}: the folder of your mode packs cannot be read ({_reason(error)}); mend or remove it"
+            f"{folder}: the folder of your mode packs cannot be read ({system_reason(error)}); "
+            "mend or remove it"
         ) from error
     return {path.stem: path for path in paths}
 
@@ -179,7 +190,7 @@ def _parse(path: Path) -> dict[str, Any]:
     except FileNotFoundError as error:
         raise StorageError(f"{path}: no such file; {_files_like(path)}") from error
     except OSError as error:
-        raise StorageError(f"{path}: cannot be read ({_reason(error)}); choose another file") from error
+        raise StorageError(f"{path}: cannot be read ({system_reason(error)}); choose another file") from error
     except UnicodeDecodeError as error:
         text = f"{path.name}: byte {error.start} is not UTF-8 text; save the file as UTF-8"
         raise PackError(f"{path}: not a mode pack, expected a TOML file", (text,)) from error
@@ -195,10 +206,6 @@ def _files_like(path: Path) -> str:
     except OSError:
         return f"there is no folder {str(path.parent)!r} either"
     return nearest_names(path.name, names) if names else f"no mode packs in {str(path.parent)!r}"
-
-
-def _reason(error: OSError) -> str:
-    return (error.strerror or str(error)).lower()
 
 
 # --- values; everything below trusts that the data passed the gates
@@ -257,7 +264,7 @@ def _mode(item: Mapping[str, Any], pack_id: str, system: ToneSystem, families: M
         also=tuple(item.get("also", ())),
         family=families.get(item.get("family", ""), ""),
         sources=MappingProxyType(sources),
-        confidence=item.get("confidence", "medium"),
+        confidence=Confidence(item.get("confidence", Confidence.MEDIUM)),
         repertoire=Repertoire(item.get("repertoire", Repertoire.COMMON)),
     )
 

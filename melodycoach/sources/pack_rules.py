@@ -15,16 +15,14 @@ from enum import IntEnum
 from typing import TYPE_CHECKING, Any
 
 from melodycoach.core.function import Function
-from melodycoach.core.mode import Course, Need, Repertoire, StepKind
+from melodycoach.core.mode import Confidence, Course, Need, Repertoire, StepKind
 from melodycoach.core.pitch import COMMAS_53, TONE_SYSTEMS, fold_name
 from melodycoach.errors import nearest_names
 from melodycoach.sources import pack_checks as checks
-from melodycoach.sources.pack_checks import DEGREE_LISTS, Here, Known, Table, Test, shorten
+from melodycoach.sources.pack_checks import DEGREE_LISTS, Here, Known, Table, Test, shown
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator, Mapping, Sequence
-
-CONFIDENCES = ("high", "medium", "low")
 
 FACTS = (
     "rising", "falling", "below", "above", "passing", "played", "dominants", "leading", "suspended",
@@ -98,7 +96,7 @@ _TYPES: Mapping[str, Callable[[object], bool]] = {
 def _may(kind: str, *keys: str) -> tuple[Rule, ...]:
     """Keys that may be there, and then are of this kind."""
     fits = _TYPES[kind]
-    test: Test = lambda value, here: [] if fits(value) else [(shorten(value),)]  # noqa: E731
+    test: Test = lambda value, here: [] if fits(value) else [(shown(value),)]  # noqa: E731
     return tuple(Rule(Gate.SHAPE, key, test, f"{key} is {{0}}, expected {kind}") for key in keys)
 
 
@@ -123,7 +121,7 @@ _NO_DEGREE = "{0}, which is no degree of the mode; the nearest are {1}"
 _LISTS_AROUND = tuple(f".{key}" for key in DEGREE_LISTS)
 
 
-def _shown(*keys: str) -> tuple[Rule, ...]:
+def _displayed(*keys: str) -> tuple[Rule, ...]:
     says = "holds {0!r}, expected text that is not blank and has no control characters"
     return tuple(_range(key, checks.blank_or_unprintable, f"{key} {says}") for key in keys)
 
@@ -174,20 +172,20 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
     "pack": (
         *_must("text", "id", "name", "theory", "caution"),
         *_must("a whole number", "tone_system"),
-        *_shown("name", "theory", "caution"),
+        *_displayed("name", "theory", "caution"),
         _range("id", checks.not_an_id, "id is {0!r}, expected small letters a-z, digits and single dashes"),
         _range("tone_system", checks.not_one_of(TONE_SYSTEMS), "tone_system is {0}; {1}"),
     ),
-    "words": (*_may("text", *WORDS), *_shown(*WORDS)),
+    "words": (*_may("text", *WORDS), *_displayed(*WORDS)),
     "perde": (
         *_must("text", "name", "note"),
-        *_shown("name"),
+        *_displayed("name"),
         _range("note", checks.unreadable_note, "note is {0!r}, expected a written pitch such as 'B4-1'"),
         _sense("name", checks.taken_perde_name, "name {0!r} belongs to another perde too; give each its own"),
         _sense("note", checks.taken_perde_pitch, "note {0!r} is the pitch of another perde too"),
     ),
-    "source": (*_must("text", "id", "kind", "title"), *_shown("kind", "title"), *_unique_id("source")),
-    "family": (*_must("text", "id", "name"), *_shown("name"), *_unique_id("family")),
+    "source": (*_must("text", "id", "kind", "title"), *_displayed("kind", "title"), *_unique_id("source")),
+    "family": (*_must("text", "id", "name"), *_displayed("name"), *_unique_id("family")),
     "mode": (
         *_must("text", "id", "name", "final", "course"),
         *_must("a list of whole numbers", "rising", "dominants", "opening"),
@@ -201,13 +199,13 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
             Gate.SHAPE, "played", checks.played_not_numbers, "played has {0} = {1}, expected degree = number"
         ),
         *_may("a list of tables", "genera", "neighbour"),
-        *_shown("name", "also"),
+        *_displayed("name", "also"),
         *_unique_id("mode"),
         *_degrees(*DEGREE_LISTS),
         *_once("below", "above", "passing", "dominants", "leading", "suspended"),
         _range("final", checks.unreadable_note, "final is {0!r}, expected a written pitch such as 'F#4'"),
         _range("course", checks.not_one_of(Course), "course is {0!r}; {1}"),
-        _range("confidence", checks.not_one_of(CONFIDENCES), "confidence is {0!r}; {1}"),
+        _range("confidence", checks.not_one_of(Confidence), "confidence is {0!r}; {1}"),
         _range("repertoire", checks.not_one_of(Repertoire), "repertoire is {0!r}; {1}"),
         _range("signature", checks.unreadable_sign, "signature has {0!r}, expected a sign such as 'B-1'"),
         _range("closes", checks.far_from_octave, "closes is {0}, expected within {1} of the octave ({2})"),
@@ -232,14 +230,14 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
         *_must("text", "name"),
         *_must("a whole number", "at"),
         *_may("text", "when"),
-        *_shown("name", "when"),
+        *_displayed("name", "when"),
         _range("at", checks.outside_compass, "at is {0}, expected a degree from {1} to {2}"),
     ),
     "step": (
         *_must("text", "kind", "need"),
         *_must("a list of whole numbers", "degrees"),
         *_may("text", "note"),
-        *_shown("note"),
+        *_displayed("note"),
         _range("kind", checks.not_one_of(StepKind), "kind is {0!r}; {1}"),
         _range("need", checks.not_one_of(Need), "need is {0!r}; {1}"),
         _range("degrees", checks.shorter_than(2), "degrees has {0}, expected at least {1} of them"),
@@ -249,7 +247,7 @@ RULES: Mapping[str, tuple[Rule, ...]] = {
     ),
     "neighbour": (
         *_must("text", "mode", "difference"),
-        *_shown("difference"),
+        *_displayed("difference"),
         _sense("mode", checks.itself, "mode is the mode itself, expected another one"),
         _sense("mode", checks.unknown_id("mode"), "mode {0!r} is not in the pack; {1}"),
         _sense("mode", checks.neighbour_again, "mode {0!r} stands in neighbour[{1}] already"),

@@ -7,14 +7,14 @@ from hypothesis import strategies as st
 from melodycoach.core.event import PitchReading
 from melodycoach.core.evidence import (
     NUMBERS_KEPT,
+    Balance,
     DegreeKey,
     Factor,
     RegisterKey,
-    Tally,
+    balance,
     evidence,
-    evidence_of_tally,
+    evidence_of_balance,
     opening_lean,
-    tally,
 )
 from melodycoach.core.model import ScoringModel, build_model
 from melodycoach.core.note import Heard, InputKind
@@ -92,36 +92,36 @@ def test_evidence_for_one_is_evidence_against_the_other(heard: list[Heard]) -> N
 def test_a_tally_that_goes_on_is_the_tally_of_the_whole(heard: list[Heard], cut: int) -> None:
     states = scored(WRITTEN, heard)
     cut = min(cut, len(heard))
-    earlier = tally(WRITTEN, states[: cut + 1], heard[:cut], HUSEYNI, USSAK)
+    earlier = balance(WRITTEN, states[: cut + 1], heard[:cut], HUSEYNI, USSAK)
     at_once = evidence(WRITTEN, states, heard, HUSEYNI, USSAK)
     assert evidence(WRITTEN, states, heard, HUSEYNI, USSAK, earlier) == at_once
 
 
-def steps_back(counted: Tally, whole: Tally) -> bool:
-    """Whether the sums of ``counted`` were carried on in ``whole`` rather than made again."""
-    return whole._places is counted._places
+def steps_back(weighed: Balance, whole: Balance) -> bool:
+    """Whether the sums of ``weighed`` were carried on in ``whole`` rather than made again."""
+    return whole._places is weighed._places
 
 
 def test_a_tally_is_taken_up_again_only_where_it_fits() -> None:
     heard = sung("22 31! 22 13 8 0!")
     states = scored(WRITTEN, heard)
-    early = tally(WRITTEN, states[:4], heard[:3], HUSEYNI, USSAK)
-    assert steps_back(early, tally(WRITTEN, states, heard, HUSEYNI, USSAK, early))
-    assert not steps_back(early, tally(WRITTEN, states, heard, HUSEYNI, RAST, early))
-    assert not steps_back(early, tally(GIVEN, scored(GIVEN, heard), heard, HUSEYNI, USSAK, early))
-    assert not steps_back(early, tally(WRITTEN, scored(WRITTEN, heard), heard, HUSEYNI, USSAK, early))
-    assert tally(WRITTEN, states[:4], heard[:3], HUSEYNI, USSAK, early) is early
+    early = balance(WRITTEN, states[:4], heard[:3], HUSEYNI, USSAK)
+    assert steps_back(early, balance(WRITTEN, states, heard, HUSEYNI, USSAK, early))
+    assert not steps_back(early, balance(WRITTEN, states, heard, HUSEYNI, RAST, early))
+    assert not steps_back(early, balance(GIVEN, scored(GIVEN, heard), heard, HUSEYNI, USSAK, early))
+    assert not steps_back(early, balance(WRITTEN, scored(WRITTEN, heard), heard, HUSEYNI, USSAK, early))
+    assert balance(WRITTEN, states[:4], heard[:3], HUSEYNI, USSAK, early) is early
 
 
 def test_a_changed_last_note_costs_one_note_alone() -> None:
     heard = sung("22 31! 22 13 8 0 0")
     states = scored(WRITTEN, heard)
-    whole = tally(WRITTEN, states, heard, HUSEYNI, USSAK)
+    whole = balance(WRITTEN, states, heard, HUSEYNI, USSAK)
     grown = [*heard[:-1], *sung("0!")]
     new_states = [*states[:-1], advance(WRITTEN, states[-2], grown[-1])]
-    again = tally(WRITTEN, new_states, grown, HUSEYNI, USSAK, whole)
+    again = balance(WRITTEN, new_states, grown, HUSEYNI, USSAK, whole)
     assert steps_back(whole, again)
-    assert evidence_of_tally(again, grown) == evidence(WRITTEN, new_states, grown, HUSEYNI, USSAK)
+    assert evidence_of_balance(again, grown) == evidence(WRITTEN, new_states, grown, HUSEYNI, USSAK)
 
 
 def test_notes_of_one_meaning_are_one_item() -> None:

@@ -8,13 +8,12 @@ from melodycoach.core.function import (
     Function,
     find_degree,
     function_of,
-    key_of,
     nearest_degree,
     tolerance_units,
 )
 from melodycoach.core.mode import Course, Mode
 from melodycoach.core.note import InputKind
-from melodycoach.core.pitch import COMMAS_53, SEMITONES_12
+from melodycoach.core.pitch import COMMAS_53, SEMITONES_12, key_of
 
 TYPED, KEYS, RECORDED = InputKind.TYPED, InputKind.KEYS, InputKind.RECORDED
 

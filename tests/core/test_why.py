@@ -3,11 +3,11 @@
 import pytest
 
 from melodycoach.core.event import PitchReading
-from melodycoach.core.evidence import DegreeKey, Evidence, Factor, RegisterKey, placed_final
+from melodycoach.core.evidence import DegreeKey, Evidence, Factor, RegisterKey, balance, placed_final
 from melodycoach.core.model import build_model
 from melodycoach.core.note import Heard, InputKind
 from melodycoach.core.scorer import ScorerState, advance, start
-from melodycoach.core.why import LEAST_NATS, Reason, _Words, opening_place, reasons, reasons_of_tally, tally
+from melodycoach.core.why import LEAST_NATS, Reason, _Words, opening_place, reasons, reasons_of_balance
 from melodycoach.sources.pack_file import load_pack
 
 PACK = load_pack("makam")
@@ -89,8 +89,8 @@ def test_reasons_of_one_side_are_those_of_the_other_turned_round() -> None:
 def test_a_tally_gives_the_same_reasons() -> None:
     heard = sung(LINE)
     states = scored(heard)
-    counted = tally(MODEL, states, heard, INDEX["huseyni"], INDEX["ussak"])
-    assert reasons_of_tally(counted, heard) == told(LINE, "huseyni", "ussak")
+    weighed = balance(MODEL, states, heard, INDEX["huseyni"], INDEX["ussak"])
+    assert reasons_of_balance(weighed, heard) == told(LINE, "huseyni", "ussak")
 
 
 def test_before_the_first_note_there_is_no_reason() -> None:
@@ -160,7 +160,7 @@ def degree(
             degree(13, 22, 13, 1),
             "huseyni",
             "rast",
-            "an asma karar of Hüseynî, a degree of Rast where it opens",
+            "a place of asma karar in Hüseynî, a degree of Rast where it opens",
         ),
         (degree(0, -9, -9, 1, rests=True), "rast", "ussak", "the karar of Rast, the yeden of Uşşak"),
     ],
@@ -212,7 +212,7 @@ def test_the_end_of_a_phrase_is_told_by_its_last_note_or_by_the_way_to_it() -> N
 
 def test_a_prior_is_told() -> None:
     assert say(Evidence(Factor.PRIOR, -1.0, 0, ()), "rast", "ussak") == (
-        "Uşşak is the likelier one before any note"
+        "Uşşak is met more often in the repertoire"
     )
 
 

@@ -84,7 +84,7 @@ def test_an_answer_is_sent_once_and_the_question_closes_when_it_is_carried_out(s
     desk.change_question(lambda question: asking.typed(question, "hic"))
     desk.answer()
     desk.answer()
-    assert session.commands == [SetTarget("hic", 1)]
+    assert session.commands == [SetTarget("Hicaz", 1)]
     session.show(handled=1, refusals=(Refusal(1, "no mode 'hic'"),))
     assert "no mode 'hic'" in session.text()
     desk.answer()

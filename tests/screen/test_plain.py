@@ -37,7 +37,7 @@ def test_an_undecided_verdict_names_both_probabilities(views: Mapping[str, ViewS
     view = views["undecided"]
     assert plain_line(view, shortened(view, 3)).startswith(
         "4 çargâh C5; undecided between Uşşak and Beyâtî (both of the uşşak family) "
-        "(Uşşak 34 percent, Beyâtî 31 percent); "
+        "(Uşşak 34 %, Beyâtî 31 %); "
     )
 
 
@@ -46,9 +46,9 @@ def test_a_verdict_without_a_number_gets_one(views: Mapping[str, ViewState]) -> 
         replace(row, probability=p) for row, p in zip(views["decided"].leanings, (0.999, 0.001), strict=False)
     )
     view = replace(views["decided"], verdict="leaning to Hüseynî", leanings=leanings)
-    assert "; leaning to Hüseynî (Hüseynî over 99 percent); " in plain_line(view, None)
+    assert "; leaning to Hüseynî (Hüseynî over 99 %); " in plain_line(view, None)
     view = replace(view, decided=False, verdict="undecided")
-    assert "(Hüseynî over 99 percent, Muhayyer under 1 percent)" in plain_line(view, None)
+    assert "(Hüseynî over 99 %, Muhayyer under 1 %)" in plain_line(view, None)
 
 
 def test_a_note_off_the_mode_is_named_with_what_mends_it(views: Mapping[str, ViewState]) -> None:

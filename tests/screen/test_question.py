@@ -106,3 +106,16 @@ def test_every_question_has_its_words() -> None:
     for kind in QuestionKind:
         assert about(kind).label.endswith("?")
         assert about(kind).advice
+
+
+def test_a_part_of_a_name_stands_for_the_only_choice_that_it_fits() -> None:
+    names = ("Beyâtî", "Uşşak", "Hüseynî", "Hüseynîaşîran")
+    assert asking.answer(asking.typed(asking.ask(QuestionKind.TARGET, names), "uss"), 1) == SetTarget(
+        "Uşşak", 1
+    )
+    assert asking.answer(asking.typed(asking.ask(QuestionKind.TARGET, names), "huseyni"), 2) == SetTarget(
+        "huseyni", 2
+    )
+    assert asking.answer(asking.typed(asking.ask(QuestionKind.ONLY, names), "bey, uss"), 3) == SetOnly(
+        "bey, Uşşak", 3
+    )

@@ -8,6 +8,7 @@ from hypothesis import strategies as st
 
 from melodycoach.core.note import InputKind, Mark, Note, Silence
 from melodycoach.core.pitch import COMMAS_53, SEMITONES_12, NamedPitch, PitchNames, Spelling
+from melodycoach.errors import shorten
 from melodycoach.sources.note_token import (
     Misread,
     complete,
@@ -19,7 +20,6 @@ from melodycoach.sources.note_token import (
     read_beats,
     read_key_mark,
     read_token,
-    shorten,
     write_beats,
     write_pitch,
 )

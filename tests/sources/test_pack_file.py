@@ -17,7 +17,7 @@ from melodycoach.core.mode import Course, Repertoire
 from melodycoach.core.pitch import COMMAS_53, SEMITONES_12
 from melodycoach.errors import MelodycoachError, PackError, StorageError, UnknownNameError
 from melodycoach.sources import pack_rules
-from melodycoach.sources.pack_checks import DEGREE_LISTS, shorten
+from melodycoach.sources.pack_checks import DEGREE_LISTS, shown
 from melodycoach.sources.pack_file import (
     SHIPPED,
     find_packs,
@@ -211,8 +211,8 @@ def test_a_name_with_control_characters_is_not_let_loose_on_the_terminal(tmp_pat
 
 
 def test_a_long_value_is_cut_short() -> None:
-    assert len(shorten("x" * 1000)) == 48
-    assert shorten([1, 2]) == "[1, 2]"
+    assert len(shown("x" * 1000)) == 48
+    assert shown([1, 2]) == "[1, 2]"
 
 
 # --- the values

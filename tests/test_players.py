@@ -1,0 +1,313 @@
+"""What plays into a session: a keyboard that comes and goes, the demo before it, a recorded log."""
+
+from __future__ import annotations
+
+from datetime import datetime
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import pytest
+
+from melodycoach.core.event import Event, LineEdited, NoteOff, NoteOn, PitchMoved, TimePassed
+from melodycoach.core.note import InputKind
+from melodycoach.demo import HAND_OVER, STAGES, DemoPlayer
+from melodycoach.errors import PortError
+from melodycoach.players import DemoKeyboard, Keyboard, Replay, tuning_sentence
+from melodycoach.sources.event_json import LogHeader
+from melodycoach.sources.event_log import RecordedLog
+from melodycoach.sources.midi_pitch import PitchTracker
+from melodycoach.sources.midi_port import WATCH_EVERY_S, PortState
+from melodycoach.sources.midi_system import PortName
+from melodycoach.sources.pack_file import load_pack
+
+if TYPE_CHECKING:
+    from collections.abc import Iterable
+
+NAMES = load_pack("makam").names
+KEYS = PortName("Upright 20:0", "ALSA")
+PAD = PortName("Pad 28:0", "ALSA")
+PLAIN = "plain keys (no bend was sent): each stands for every perde near it"
+
+
+class Wire:
+    """An open input of the room below."""
+
+    def __init__(self) -> None:
+        self.waiting: list[tuple[bytes, float]] = []
+        self.closed = False
+
+    def read(self) -> tuple[bytes, float] | None:
+        return self.waiting.pop(0) if self.waiting else None
+
+    def close(self) -> None:
+        self.closed = True
+
+
+class Room:
+    """A room with keyboards that are carried in and out; its clock stands still until moved."""
+
+    def __init__(self, *ports: PortName) -> None:
+        self.ports = list(ports)
+        self.wires: list[Wire] = []
+        self.now_s = 100.0
+        self.closed = False
+
+    def clock(self) -> float:
+        return self.now_s
+
+    def problem(self) -> str:
+        return ""
+
+    def inputs(self) -> tuple[PortName, ...]:
+        return tuple(self.ports)
+
+    def open(self, port: PortName) -> Wire:
+        self.wires.append(Wire())
+        return self.wires[-1]
+
+    def close(self) -> None:
+        self.closed = True
+
+    def keyboard(self, wanted: str = "") -> Keyboard:
+        """Give a keyboard that has looked round once."""
+        keyboard = Keyboard(self.clock, wanted, system=self)
+        assert keyboard.poll(self.now_s) == []
+        return keyboard
+
+    def play(self, *messages: str) -> None:
+        """Send messages, in hex, into the newest wire."""
+        self.wires[-1].waiting += [(bytes.fromhex(message), 0.0) for message in messages]
+
+    def later(self, keyboard: Keyboard, seconds: float = WATCH_EVERY_S) -> list[Event]:
+        self.now_s += seconds
+        return list(keyboard.poll(self.now_s))
+
+
+# a keyboard
+
+
+def test_keys_become_events_with_their_time() -> None:
+    room = Room(KEYS)
+    keyboard = room.keyboard()
+    room.play("90 45 50", "80 45 00")
+    assert room.later(keyboard, 0.25) == [
+        NoteOn(100.25, 69, 6900.0, InputKind.KEYS),
+        NoteOff(100.25, 69),
+    ]
+    assert keyboard.status.state is PortState.OPEN
+    assert keyboard.input_line(100.25) == "listening to Upright 20:0"
+    assert keyboard.tuning_line() == PLAIN
+
+
+def test_a_port_that_goes_leaves_no_key_sounding() -> None:
+    room = Room(KEYS)
+    keyboard = room.keyboard()
+    room.play("90 45 50", "90 48 50")
+    room.later(keyboard, 0.125)
+    room.ports.clear()
+    assert room.later(keyboard) == [NoteOff(101.125, 69), NoteOff(101.125, 72)]
+    assert keyboard.status.state is PortState.LOST
+    assert room.later(keyboard) == []
+
+
+def test_a_port_that_is_back_before_it_was_missed_leaves_no_key_sounding_either() -> None:
+    room = Room(KEYS)
+    keyboard = room.keyboard()
+    room.play("90 45 50")
+    room.later(keyboard, 0.125)
+    room.ports = [PortName("Upright 24:0", "ALSA")]  # ALSA counts on when it is plugged in again
+    assert room.later(keyboard) == [NoteOff(101.125, 69)]
+    assert keyboard.status.state is PortState.OPEN
+    assert len(room.wires) == 2
+
+
+def test_what_was_played_just_before_the_port_went_is_still_heard_and_ended() -> None:
+    room = Room(KEYS)
+    keyboard = room.keyboard()
+    room.play("90 45 50")
+    room.ports.clear()
+    assert [type(event) for event in room.later(keyboard)] == [NoteOn, NoteOff]
+
+
+def test_choosing_another_input_ends_what_sounds_and_forgets_how_it_was_tuned() -> None:
+    room = Room(KEYS, PAD)
+    keyboard = room.keyboard("upright")
+    assert keyboard.inputs() == (KEYS.name, PAD.name)
+    room.play("E0 00 30", "90 47 50")  # bent down by a quarter tone
+    [struck] = room.later(keyboard, 0.125)
+    assert struck == NoteOn(100.125, 71, 7050.0, InputKind.TUNED)
+    keyboard.choose("Pad")
+    assert room.later(keyboard, 0.125) == [NoteOff(100.25, 71)]
+    assert room.wires[0].closed
+    assert keyboard.tuning_line() == PLAIN
+    room.play("90 47 50")
+    assert room.later(keyboard, 0.125) == [NoteOn(100.375, 71, 7100.0, InputKind.KEYS)]
+    assert keyboard.input_line(0.0) == "listening to Pad 28:0"
+
+
+def test_an_input_that_is_not_there_is_waited_for() -> None:
+    room = Room(KEYS)
+    keyboard = room.keyboard()
+    room.play("90 45 50")
+    room.later(keyboard, 0.125)
+    keyboard.choose("organ")
+    assert room.later(keyboard, 0.125) == [NoteOff(100.25, 69)]
+    assert keyboard.input_line(0.0).startswith("no keyboard 'organ' yet, there is: Upright 20:0")
+
+
+def test_notes_on_the_drum_channel_are_spoken_of_until_others_are_heard() -> None:
+    room = Room(KEYS)
+    keyboard = room.keyboard()
+    room.play("99 45 50", "89 45 00")
+    assert room.later(keyboard, 0.125) == []
+    assert keyboard.input_line(0.0) == (
+        "listening to Upright 20:0; notes on channel 10 are taken for drums and not heard: "
+        "send on another channel"
+    )
+    room.play("90 45 50")
+    room.later(keyboard, 0.125)
+    assert keyboard.input_line(0.0) == "listening to Upright 20:0"
+
+
+def test_a_keyboard_is_never_over_and_closes_its_port() -> None:
+    room = Room(KEYS)
+    keyboard = room.keyboard()
+    assert not keyboard.is_over(1e9)
+    keyboard.close()
+    assert room.wires[0].closed
+    assert room.closed
+
+
+# tuning
+
+
+def tracked(*messages: str) -> str:
+    tracker = PitchTracker()
+    for message in messages:
+        tracker.decode(bytes.fromhex(message), 0.0)
+    return tuning_sentence(tracker)
+
+
+def test_an_assumed_bend_range_is_said_to_be_assumed() -> None:
+    assert tracked("E1 00 30") == (
+        "bends read on channel 2, range ±2 semitones (none was sent: MIDI's default)"
+    )
+
+
+def test_a_bend_range_that_was_sent_is_said_to_be_sent() -> None:
+    # registered parameter 0, data entry 24 semitones and 50 cents (MIDI 1.0)
+    assert tracked("B0 65 00", "B0 64 00", "B0 06 18", "B0 26 32") == (
+        "bends read on channel 1, range ±24.5 semitones (sent by the keyboard)"
+    )
+
+
+def test_of_several_channels_the_one_that_is_bent_most_is_spoken_of() -> None:
+    assert "channel 3," in tracked("E0 00 3F", "E2 00 30", "E3 00 41")
+
+
+# the demo
+
+
+def demo_in(room: Room) -> tuple[DemoKeyboard, float]:
+    return DemoKeyboard(NAMES, Keyboard(room.clock, system=room)), DemoPlayer(NAMES).ends_s
+
+
+def test_while_the_demo_plays_the_keyboard_is_left_alone() -> None:
+    room = Room(KEYS)
+    demo, ends_s = demo_in(room)
+    events = [event for step in range(int(ends_s)) for event in demo.poll(float(step))]
+    assert any(isinstance(event, NoteOn) for event in events)
+    assert room.wires == []
+    assert not demo.is_over(ends_s - 1)
+    assert demo.input_line(2.0) == f"demo: {STAGES[0].says}"
+    assert demo.tuning_line() == ("bends read on channel 1, range ±2 semitones (sent by the keyboard)")
+
+
+def test_after_the_demo_the_line_is_the_players() -> None:
+    room = Room(KEYS)
+    demo, ends_s = demo_in(room)
+    demo.poll(ends_s)
+    assert demo.is_over(ends_s)
+    assert demo.input_line(ends_s) == f"{HAND_OVER}; listening to Upright 20:0"
+    assert demo.inputs() == (KEYS.name,)
+    room.play("90 45 50")
+    assert demo.poll(ends_s + 1) == [NoteOn(100.0, 69, 6900.0, InputKind.KEYS)]
+    assert demo.tuning_line() == PLAIN
+
+
+def test_a_keyboard_chosen_during_the_demo_is_opened_after_it() -> None:
+    room = Room(KEYS, PAD)
+    demo, ends_s = demo_in(room)
+    demo.poll(1.0)
+    demo.choose("Pad")
+    demo.poll(ends_s)
+    assert demo.input_line(ends_s).endswith("listening to Pad 28:0")
+    demo.close()
+    assert room.wires[0].closed
+
+
+def test_the_demo_and_the_keyboard_never_share_a_voice() -> None:
+    room = Room(KEYS)
+    demo, ends_s = demo_in(room)
+    played = {event.voice for event in demo.poll(ends_s) if isinstance(event, NoteOn)}
+    room.play(*(f"90 {key:02X} 50" for key in range(128)))
+    keyed = {event.voice for event in demo.poll(ends_s) if isinstance(event, NoteOn)}
+    assert len(keyed) == 128
+    assert not played & keyed
+
+
+# a recorded log
+
+
+def replay_of(*events: Event, notice: str = "") -> Replay:
+    header = LogHeader("0.1.0", datetime(2026, 5, 1, 18, 4, 9), "makam")
+    return Replay(RecordedLog(header, events, notice), Path("sessions") / "may.events.jsonl")
+
+
+def played_until(replay: Replay, times_s: Iterable[float]) -> list[list[Event]]:
+    return [list(replay.poll(now_s)) for now_s in times_s]
+
+
+def test_a_replay_gives_each_event_once_in_order_when_its_time_has_come() -> None:
+    events = (
+        NoteOn(0.5, 1, 6900.0, InputKind.KEYS),
+        PitchMoved(0.6, 1, 6950.0, InputKind.TUNED),
+        NoteOff(1.5, 1),
+        LineEdited(1.5, 0, 1, ()),
+    )
+    replay = replay_of(*events)
+    assert played_until(replay, (0.4, 0.5, 1.0, 1.5, 9.0)) == [
+        [],
+        [events[0]],
+        [events[1]],
+        [events[2], events[3]],
+        [],
+    ]
+
+
+def test_a_replay_says_how_far_it_has_come() -> None:
+    replay = replay_of(TimePassed(1.0), TimePassed(2.0))
+    replay.poll(1.0)
+    assert replay.input_line(1.0) == "replaying may.events.jsonl: event 1 of 2"
+    assert not replay.is_over(1.0)
+    replay.poll(2.0)
+    assert replay.input_line(2.0) == "replay of may.events.jsonl is done"
+    assert replay.is_over(2.0)
+
+
+def test_what_was_cut_off_a_log_is_said_all_the_way() -> None:
+    replay = replay_of(TimePassed(1.0), notice="line 3 was cut short")
+    assert replay.input_line(0.0).endswith("event 0 of 1; line 3 was cut short")
+    replay.poll(1.0)
+    assert replay.input_line(1.0) == "replay of may.events.jsonl is done; line 3 was cut short"
+
+
+def test_a_replay_has_nothing_to_listen_to() -> None:
+    replay = replay_of()
+    assert replay.is_over(0.0)
+    assert replay.inputs() == ()
+    assert replay.tuning_line() == "pitches as they were recorded"
+    with pytest.raises(PortError) as error:
+        replay.choose("Upright")
+    assert str(error.value) == ("port 'Upright': a replay listens to no keyboard; run melodycoach listen")
+    replay.close()
