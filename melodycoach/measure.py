@@ -27,8 +27,8 @@ from melodycoach.core.seams import (
 )
 from melodycoach.core.tally import tally
 from melodycoach.errors import CollectionError, UnknownModeError, UsageError
+from melodycoach.parallel import n_cores, spread
 from melodycoach.sources.collection import Melody, read_collection
-from melodycoach.spread import n_cores, spread
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterable, Iterator

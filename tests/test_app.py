@@ -274,14 +274,13 @@ def end_by_signal_when(come: Callable[[], object]) -> threading.Thread:
     return thread
 
 
-def test_an_open_keyboard_is_listened_to_until_a_signal_though_nobody_types(
-    machine: Machine, run_plain: Callable[..., list[str]]
-) -> None:
+def test_an_open_keyboard_is_listened_to_until_a_signal_though_nobody_types(machine: Machine) -> None:
     machine.list = PortList((KEYS,), ())
     machine.played = [bytes((0x90, 69, 80)), bytes((0x80, 69, 0))]
     before = signal.getsignal(signal.SIGTERM)
-    sender = end_by_signal_when(lambda: logs() and len(logs()[0].read_bytes().splitlines()) >= 3)
-    said = run_plain(Settings(port="upright", only=THREE))
+    said: list[str] = []
+    sender = end_by_signal_when(lambda: notes_in(said))
+    assert listen(Settings(port="upright", only=THREE), full_screen=False, say=said.append) == 0
     sender.join()
     assert "(listening to Upright 20:0)" in said
     assert [line[:9] for line in notes_in(said)] == ["1 dügâh A"]
@@ -510,7 +509,7 @@ def test_the_screen_offers_names_for_each_question(
 
     run_screen(Settings(only=THREE, log=False), act)
     pack = load_pack("makam")
-    assert offered["target"] == offered["only"] == tuple(mode.slug for mode in pack.modes)
+    assert offered["target"] == offered["only"] == tuple(mode.name for mode in pack.modes)
     assert offered["final"][:2] == ("written", "any")
     assert "dügâh" in offered["final"]
     assert offered["port"] == (KEYS.name,)

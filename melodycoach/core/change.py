@@ -8,10 +8,13 @@ one. It works in two stages:
 again at every note with a small probability, and announces the first mode that keeps a high belief
 for a few notes.
 
-*From then on* each hypothesis has a *gain*: the evidence for it and against the announced one,
-summed since the note at which it began to rise (it never falls below 0). A hypothesis is announced
-when its gain passes a threshold and leaves every other mode's gain behind. Its gain began to rise at
-the *seam*, which is therefore known too.
+*From then on* the mode that explains the current stretch best is the *reference*. Each hypothesis has
+a *gain*: the evidence for it and against the reference, summed since the note at which it began to
+rise (it never falls below 0). When the gains together, each weighed by its prior, pass a threshold,
+the line has left the reference's mode, and the note at which the largest of them began to rise is the
+*seam*. The gains need not agree on where it went: that is asked of the whole stretch that begins at
+the seam, over and over as it grows. So near-twins do not hold each other up, and a hasty first name
+is mended without a second change.
 
 Both stages take every note at a constant power, so their numbers are too sure of themselves: they
 are never shown as probabilities, only the announcements are.
@@ -25,7 +28,8 @@ References
 ----------
 The belief is the forward algorithm of a hidden Markov model: L. Rabiner, "A tutorial on hidden
 Markov models" (1989), section III A. The gain is the cumulative-sum test: E. Page, "Continuous
-inspection schemes" (1954).
+inspection schemes" (1954). Weighing many gains instead of waiting for one is the mixture rule:
+T. L. Lai, "Sequential changepoint detection in quality control and dynamical systems" (1995).
 """
 
 from __future__ import annotations
@@ -54,23 +58,35 @@ class ChangeState:
         Kept up to date until the first announcement.
     holder, held_notes
         The mode that holds the announcing belief, or -1, and for how many notes running.
+    reference
+        The hypothesis that explains the stretch best, or -1 before the first announcement.
     announced
-        The hypothesis announced last, or -1.
+        As `reference`, but slower to move: another mode must lead it by ``announce_lead_nats``.
     gain : float64, shape (n_hypotheses,), nats
-        Evidence for each hypothesis against the announced one since it began to rise.
+        Evidence for each hypothesis against the reference since it began to rise.
     risen_from : int64, shape (n_hypotheses,)
         The note at which each gain began to rise.
+    total : float64, shape (n_hypotheses,), nats
+        Evidence of all notes.
+    past
+        The totals before each of the last ``change_window`` notes, the oldest first.
+    base : float64, shape (n_hypotheses,), nats
+        The total before the stretch; zeros while it is the whole line.
     changed_at
         The note at which a mode gave way to another one last, or None.
     seam_at
-        The first note of that other mode, as found at ``changed_at``, or None.
+        The first note of the stretch in that other mode, as found at ``changed_at``, or None.
     """
 
     log_belief: FloatArray
     gain: FloatArray
     risen_from: IntArray
+    total: FloatArray
+    base: FloatArray
+    past: tuple[FloatArray, ...] = ()
     holder: int = NONE
     held_notes: int = 0
+    reference: int = NONE
     announced: int = NONE
     changed_at: int | None = None
     seam_at: int | None = None
@@ -78,17 +94,17 @@ class ChangeState:
 
 def start_change(log_prior: FloatArray) -> ChangeState:
     """Give the filter's state before the first note."""
-    gain, risen_from = np.zeros(len(log_prior)), np.ones(len(log_prior), dtype=np.int64)
-    return ChangeState(log_prior, sealed(gain), sealed(risen_from))
-
-
-def change_threshold(n_hypotheses: int, parameters: ScoringParameters) -> float:
-    """Give the gain that announces a change, in nats: the more could have gained it, the higher."""
-    return parameters.change_nats + float(np.log(max(n_hypotheses - 1, 1)))
+    nothing, risen_from = sealed(np.zeros(len(log_prior))), np.ones(len(log_prior), dtype=np.int64)
+    return ChangeState(log_prior, nothing, sealed(risen_from), nothing, nothing)
 
 
 def advance_change(
-    state: ChangeState, nats: FloatArray, n_modes: int, n_notes: int, parameters: ScoringParameters
+    state: ChangeState,
+    nats: FloatArray,
+    log_prior: FloatArray,
+    n_modes: int,
+    n_notes: int,
+    parameters: ScoringParameters,
 ) -> ChangeState:
     """Give the filter's state after one more note.
 
@@ -96,12 +112,30 @@ def advance_change(
     ----------
     nats : float64, shape (n_hypotheses,)
         What the note says for each hypothesis, to the power that its input has in this filter.
+    log_prior : float64, shape (n_hypotheses,)
+        As given to `start_change`; the probabilities sum to 1.
     n_notes
         The number of this note.
     """
-    if state.announced == NONE:
+    past = (*state.past, state.total)[-parameters.change_window :]
+    state = replace(state, total=sealed(state.total + nats), past=past)
+    if state.reference == NONE:
         return _first(state, nats, n_modes, parameters)
-    return _next(state, nats, n_modes, n_notes, parameters)
+    return _next(state, nats, log_prior, n_modes, n_notes, parameters)
+
+
+def departure_nats(gain: FloatArray, log_prior: FloatArray) -> float:
+    """Give how strongly some of many gains speak for a change, in nats: their weighed mean.
+
+    One gain of 5 among four equal hypotheses counts 5 less the log of four, and a little more for
+    the others:
+
+    >>> round(departure_nats(np.array([5.0, 0, 0, 0]), np.log([0.25] * 4)), 2)
+    3.63
+    """
+    nats = gain + log_prior
+    top = nats.max()
+    return float(top + np.log(np.exp(nats - top).sum()))
 
 
 def _first(state: ChangeState, nats: FloatArray, n_modes: int, parameters: ScoringParameters) -> ChangeState:
@@ -116,34 +150,57 @@ def _first(state: ChangeState, nats: FloatArray, n_modes: int, parameters: Scori
     leader = int(by_mode.argmax())
     holder = leader if by_mode[leader] >= parameters.announce_at else NONE
     held = state.held_notes + 1 if holder == state.holder else 1
-    announced = NONE
+    first = NONE
     if holder != NONE and held >= parameters.announce_notes:
-        announced = int(log_belief.reshape(-1, n_modes)[:, holder].argmax()) * n_modes + holder
-    return replace(state, log_belief=sealed(log_belief), holder=holder, held_notes=held, announced=announced)
+        first = int(log_belief.reshape(-1, n_modes)[:, holder].argmax()) * n_modes + holder
+    return replace(
+        state,
+        log_belief=sealed(log_belief),
+        holder=holder,
+        held_notes=held,
+        reference=first,
+        announced=first,
+    )
 
 
 def _next(
-    state: ChangeState, nats: FloatArray, n_modes: int, n_notes: int, parameters: ScoringParameters
+    state: ChangeState,
+    nats: FloatArray,
+    log_prior: FloatArray,
+    n_modes: int,
+    n_notes: int,
+    parameters: ScoringParameters,
 ) -> ChangeState:
-    gain = np.maximum(state.gain + (nats - nats[state.announced]), 0.0)
+    gain = np.maximum(state.gain + (nats - nats[state.reference]), 0.0)
     risen_from = np.where(state.gain > 0, state.risen_from, n_notes)
-    best = int(gain.argmax())
-    announced, changed_at, seam_at = state.announced, state.changed_at, state.seam_at
-    threshold = change_threshold(len(gain), parameters)
-    if gain[best] >= threshold:
-        by_mode = gain.reshape(-1, n_modes).max(axis=0)
-        mode, top = best % n_modes, float(gain[best])
-        by_mode[mode] = 0.0
-        if top >= by_mode.max() + parameters.change_lead_nats or top >= 2 * threshold:
-            if mode != announced % n_modes:
-                changed_at, seam_at = n_notes, int(risen_from[best])
-            announced = best
-            gain = np.zeros(len(gain))
-    return replace(
-        state,
-        gain=sealed(gain),
-        risen_from=sealed(risen_from),
-        announced=announced,
-        changed_at=changed_at,
-        seam_at=seam_at,
-    )
+    state = replace(state, gain=sealed(gain), risen_from=sealed(risen_from))
+    grown = np.where(risen_from <= n_notes + 1 - parameters.change_notes, gain, -np.inf)
+    grown[state.reference] = -np.inf
+    best = int((grown + log_prior).argmax())
+    if grown[best] > 0 and departure_nats(grown, log_prior) >= parameters.change_nats:
+        back = min(n_notes + 1 - int(risen_from[best]), len(state.past))
+        base = state.past[-back]
+        to = int((log_prior + state.total - base).argmax())
+        if to != state.reference:
+            moved = to % n_modes != state.reference % n_modes
+            return replace(
+                state,
+                gain=sealed(np.zeros(len(gain))),
+                base=base,
+                reference=to,
+                announced=to,
+                changed_at=n_notes if moved else state.changed_at,
+                seam_at=n_notes + 1 - back if moved else state.seam_at,
+            )
+    return _followed(state, log_prior, parameters)
+
+
+def _followed(state: ChangeState, log_prior: FloatArray, parameters: ScoringParameters) -> ChangeState:
+    """Let the reference be what explains the stretch best, and the announced one come after it."""
+    nats = log_prior + state.total - state.base
+    best = int(nats.argmax())
+    if best != state.reference:
+        state = replace(state, reference=best, gain=sealed(np.zeros(len(nats))))
+    if nats[best] > nats[state.announced] + parameters.announce_lead_nats:
+        state = replace(state, announced=best)
+    return state

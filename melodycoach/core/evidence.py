@@ -28,6 +28,7 @@ from melodycoach.core.event import PitchReading
 from melodycoach.core.function import find_degree
 from melodycoach.core.model import register_columns
 from melodycoach.core.note import InputKind
+from melodycoach.core.octave import placed_final
 from melodycoach.core.pitch import key_of
 from melodycoach.core.scorer import closing, note_weight, temper
 
@@ -180,10 +181,10 @@ def balance(
     known = earlier if earlier is not None and (earlier.a, earlier.b) == (a, b) else None
     if known is not None and known.model is not model:
         known = None
-    while known is not None and not _is_beginning(known, states):
+    finals = placed_final(model, a, heard), placed_final(model, b, heard)
+    while known is not None and not (known.finals == finals and _is_beginning(known, states)):
         known = known.before
     if known is None or not known.state.n_notes:
-        finals = placed_final(model, a, heard), placed_final(model, b, heard)
         known = Balance(model, a, b, finals, states[0], {}, (), None, {})
     if known.state.n_notes == len(heard):
         return known
@@ -263,21 +264,6 @@ def _place(known: Balance, note: Heard) -> _Place:
     place = _Place(keys[0], keys[1], RegisterKey(inside[0], inside[1]), register_nats)
     known._places[at] = place
     return place
-
-
-def placed_final(model: ScoringModel, hypothesis: int, heard: Sequence[Heard]) -> int:
-    """Give where a hypothesis stands, in units from A4, in the octave that a line is in.
-
-    A hypothesis of `PitchReading.ANY` has a final but no octave. It is put where the middle of its
-    opening region is nearest to the first note.
-    """
-    final = int(model.final_units[hypothesis])
-    if model.reading is not PitchReading.ANY or not heard:
-        return final
-    mode, system = model.mode_of(hypothesis), model.pack.system
-    middle = final + sum(mode.opening) / 2
-    octaves = round((system.cents_to_units(heard[0].pitch_cents) - middle) / system.divisions)
-    return int(final + octaves * system.divisions)
 
 
 def evidence(

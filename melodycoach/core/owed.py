@@ -9,8 +9,10 @@ A step is *heard* when its degrees sound in order, with these liberties:
   (or between the last degree and its return), as long as the line does not rest on any of them;
 - an earlier degree may return: what follows it counts again from there;
 - no degree but the last may end a phrase: a phrase end breaks every step that is under way;
-- the whole step may stand in any octave, the same one for all its degrees; but an opening and a
-  register step count only where they are written, since their place is what they say;
+- the whole step may stand in any octave, the same one for all its degrees; but an opening, a
+  register step, a final cadence and a leading tone count only over the final on which the track
+  stands, since their place is what they say (`melodycoach.core.octave` puts that final where a line
+  lies);
 - half, suspended and final cadences are heard only when the line rests on their last degree;
 - a pitch stands for a degree as `melodycoach.core.function` says: within a tolerance of the
   degree as written or as played, by the kind of input. Of a pitch that was written or tuned, the
@@ -37,7 +39,7 @@ if TYPE_CHECKING:
 FOREIGN_AT_MOST = 2
 """So many notes that are no part of a step may stand between two of its degrees."""
 
-AS_WRITTEN = frozenset({StepKind.OPENING, StepKind.REGISTER})
+AS_WRITTEN = frozenset({StepKind.OPENING, StepKind.REGISTER, StepKind.FINAL_CADENCE, StepKind.LEADING_TONE})
 """Kinds of step that count only in the octave in which they are written."""
 
 RESTING = frozenset({StepKind.HALF_CADENCE, StepKind.SUSPENDED_CADENCE, StepKind.FINAL_CADENCE})
@@ -94,6 +96,9 @@ class StepTrack:
     heard_at
         For each step of the mode the number (from 1) of the note that completed it first, or None
         while the step is owed.
+    heard_octave
+        For each step of the mode, how many octaves over its written place it was heard first; 0
+        while it is owed.
     n_notes
         How many notes were followed.
     """
@@ -101,6 +106,7 @@ class StepTrack:
     mode: Mode
     final_units: int
     heard_at: tuple[int | None, ...]
+    heard_octave: tuple[int, ...]
     n_notes: int
     _plan: _Plan = field(repr=False)
     _under_way: tuple[tuple[int, int], ...] = field(default=(), repr=False)
@@ -173,7 +179,8 @@ def start_track(mode: Mode, final_units: int, system: ToneSystem) -> StepTrack:
         folded,
         {},
     )
-    return StepTrack(mode, final_units, (None,) * len(mode.steps), 0, plan)
+    n_steps = len(mode.steps)
+    return StepTrack(mode, final_units, (None,) * n_steps, (0,) * n_steps, 0, plan)
 
 
 def follow(track: StepTrack, heard: Heard) -> StepTrack:
@@ -190,7 +197,7 @@ def follow(track: StepTrack, heard: Heard) -> StepTrack:
             plan.known[pitch] = sounding
     before = dict(track._under_way)
     number = track.n_notes + 1
-    heard_at = track.heard_at
+    heard_at, heard_octave = track.heard_at, track.heard_octave
     after: dict[int, int] = {}
     if not heard.rests:
         for code, foreign in track._under_way:
@@ -204,11 +211,13 @@ def follow(track: StepTrack, heard: Heard) -> StepTrack:
         if code in before or plan.opens_at[place] or code - 1 in before:
             after[code] = 0
             if plan.ends_at[place] and (heard.rests or track.mode.steps[step].kind not in RESTING):
+                octave = code // plan.n_places + _LOWEST_OCTAVE
                 heard_at = (*heard_at[:step], number, *heard_at[step + 1 :])
+                heard_octave = (*heard_octave[:step], octave, *heard_octave[step + 1 :])
     if heard_at is not track.heard_at:
         after = {c: n for c, n in after.items() if heard_at[plan.step_at[c % plan.n_places]] is None}
     under_way = () if heard.closes else tuple(after.items())
-    return StepTrack(track.mode, track.final_units, heard_at, number, plan, under_way)
+    return StepTrack(track.mode, track.final_units, heard_at, heard_octave, number, plan, under_way)
 
 
 def _places(plan: _Plan, heard: Heard) -> tuple[int, ...]:

@@ -21,6 +21,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from melodycoach.core.mode import Need
+from melodycoach.core.octave import standing_final
 from melodycoach.core.owed import follow, start_track
 from melodycoach.core.ranking import rank_owed, step_note
 from melodycoach.core.scorer import advance, leading, log_posterior, start
@@ -65,10 +67,10 @@ def try_owed(model: ScoringModel, notes: Sequence[Heard], hypothesis: int) -> Ow
     Returns
     -------
     OwedTrial or None
-        None when the mode owes nothing.
+        None when the mode owes nothing; colour is never owed.
     """
     mode = model.mode_of(hypothesis)
-    final_units = int(model.final_units[hypothesis])
+    final_units = standing_final(model, hypothesis, notes)
     state = start(model)
     track = start_track(mode, final_units, model.pack.system)
     for note in notes:
@@ -78,8 +80,8 @@ def try_owed(model: ScoringModel, notes: Sequence[Heard], hypothesis: int) -> Ow
     lean = leading(model, state)
     leads = model.mode_index[lean.best] == model.mode_index[hypothesis]
     rival = lean.rival if leads else lean.best  # as the screen does for a target
-    ranked = rank_owed(model, state, hypothesis, track, notes[-1].pitch_cents, rival, kind)
-    if not ranked:
+    ranked = rank_owed(model, state, hypothesis, track, rival, kind)
+    if not ranked or ranked[0].step.need is Need.COLOUR:
         return None
     before = mode_log_odds(model, state, hypothesis)
     pitches = ranked[0].pitches_cents

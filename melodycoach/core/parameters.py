@@ -135,9 +135,15 @@ class ScoringParameters:
         Change filter: probability of a change of mode at a note.
     announce_at, announce_notes
         It first announces a mode that held at least this belief for so many notes.
-    change_nats, change_lead_nats
-        It announces a change at a gain of ``change_nats``, raised by the log of the number of
-        rivals, that leads the next mode's by ``change_lead_nats``.
+    change_nats, change_notes, change_window
+        It announces a change when the gains, weighed by the prior, come to ``change_nats`` together;
+        only those count that have risen for ``change_notes`` notes. A seam is looked for among the
+        last ``change_window`` notes.
+    announce_lead_nats
+        The announced mode follows the one that explains the stretch best when that leads by so much.
+    stretch_power, stretch_at
+        Words for the stretch: its evidence in the change filter is raised to ``stretch_power``, and
+        a mode is then named alone from a probability of ``stretch_at`` on.
     decided_at, decided_half, decided_ratio
         A leaning is decided at a probability of ``decided_at``, or from ``decided_half`` on when
         it is ``decided_ratio`` times the rival's.
@@ -178,8 +184,12 @@ class ScoringParameters:
     change_rate: float = 0.003
     announce_at: float = 0.6
     announce_notes: int = 3
-    change_nats: float = 2.3
-    change_lead_nats: float = 0.75
+    change_nats: float = 2.7
+    change_notes: int = 4
+    change_window: int = 64
+    announce_lead_nats: float = 1.0
+    stretch_power: float = 0.6
+    stretch_at: float = 0.7
     decided_at: float = 0.6
     decided_half: float = 0.5
     decided_ratio: float = 2.0

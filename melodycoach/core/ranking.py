@@ -1,8 +1,9 @@
 """Which owed step would settle the mode best if it were played next: computed, not canned.
 
-Every owed step is played to the scorer at the end of the line, in the octave where it would be
-played now, and the change of the odds is its gain. A gain can be bought by playing odd things, so
-what a mode needs most comes first among steps of like gain.
+Every owed step is played to the scorer at the end of the line, where it is written over the final
+on which the mode stands, and the change of the odds is its gain. A gain can be bought by playing
+odd things. So steps that are owed, core and usual, come before colour, which is only welcome; and
+among those of like gain, core before usual.
 
 Conventions
 -----------
@@ -13,20 +14,18 @@ with the line's last note is not held against the step that goes on from there.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import ceil
 from typing import TYPE_CHECKING
 
 import numpy as np
 
-from melodycoach.core.mode import Need, StepKind
+from melodycoach.core.mode import Need
 from melodycoach.core.note import Heard, InputKind
-from melodycoach.core.owed import AS_WRITTEN
 from melodycoach.core.pitch import KEY_CENTS, key_of
 from melodycoach.core.scorer import advance, temper
 
 if TYPE_CHECKING:
     from melodycoach.core.arrays import FloatArray
-    from melodycoach.core.mode import CharacteristicStep, Mode
+    from melodycoach.core.mode import CharacteristicStep
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.owed import StepTrack
     from melodycoach.core.pitch import ToneSystem
@@ -38,11 +37,9 @@ MOVING_S = 0.3
 RESTING_S = 0.8
 """Length of its last note, which rests."""
 
-NEED_NATS = {Need.CORE: 0.4, Need.USUAL: 0.2, Need.COLOUR: 0.0}
-"""What a step's need is worth beside its gain when steps are put in order: gains that differ by
+CORE_NATS = 0.2
+"""What being core is worth beside the gain when owed steps are put in order: gains that differ by
 less are alike."""
-
-_STAYS_LOW = frozenset({StepKind.FINAL_CADENCE, StepKind.LEADING_TONE})
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,7 +51,7 @@ class OwedStep:
     step
         The characteristic step.
     pitches_cents
-        Its notes as they would be played now, in cents on the MIDI scale.
+        Its notes where it is written over the final, in cents on the MIDI scale.
     gain_nats
         What playing it next adds to the log-odds of the mode against its rival, or against all
         others; 0 when nothing competes.
@@ -73,7 +70,6 @@ def rank_owed(
     state: ScorerState,
     hypothesis: int,
     track: StepTrack,
-    recent_pitch_cents: float,
     rival: int | None = None,
     kind: InputKind = InputKind.TYPED,
 ) -> tuple[OwedStep, ...]:
@@ -87,8 +83,6 @@ def rank_owed(
         The mode in view on its final: the target or the leading one.
     track
         Its steps, followed through the same line.
-    recent_pitch_cents
-        Where the line has been lately, such as the mean of its last notes.
     rival
         The hypothesis to gain on. None: all others together; the closest one, which is the leading
         one when the mode in view does not lead, counts most in them.
@@ -98,8 +92,8 @@ def rank_owed(
     Returns
     -------
     tuple of OwedStep
-        The best next step first: by gain, with what the mode needs most first among steps of like
-        gain.
+        The best next step first: those owed by gain, core before usual at like gain, then colour
+        by gain.
     """
     before = _nats(model, state)
     odds = _log_odds(before, hypothesis, rival)
@@ -107,14 +101,18 @@ def rank_owed(
     tried: dict[tuple[float, ...], ScorerState] = {(): state}
     ranked: list[OwedStep] = []
     for step in track.owed:
-        pitches = placed(step, track.mode, track.final_units, model.pack.system, recent_pitch_cents)
+        pitches = step_pitches(step, track.final_units, model.pack.system)
         after = _nats(model, _play(model, tried, pitches, kind))
         lost = share - _by_mode(model, after)
         lost[model.mode_index[hypothesis]] = -np.inf
         rules_out = int(lost.argmax()) if len(lost) > 1 else None
         ranked.append(OwedStep(step, pitches, _log_odds(after, hypothesis, rival) - odds, rules_out))
-    ranked.sort(key=lambda owed: -owed.gain_nats - NEED_NATS[owed.step.need])
-    return tuple(ranked)
+    return tuple(sorted(ranked, key=_order))
+
+
+def _order(owed: OwedStep) -> tuple[bool, float]:
+    worth = owed.gain_nats + (CORE_NATS if owed.step.need is Need.CORE else 0.0)
+    return owed.step.need is Need.COLOUR, -worth
 
 
 def _log_odds(nats: FloatArray, hypothesis: int, rival: int | None) -> float:
@@ -128,30 +126,12 @@ def _log_odds(nats: FloatArray, hypothesis: int, rival: int | None) -> float:
     return float(nats[hypothesis] - top - np.log(np.exp(others - top).sum()))
 
 
-def placed(
-    step: CharacteristicStep, mode: Mode, final_units: int, system: ToneSystem, recent_pitch_cents: float
+def step_pitches(
+    step: CharacteristicStep, final_units: int, system: ToneSystem, octaves: int = 0
 ) -> tuple[float, ...]:
-    """Give the pitches of a step in the octave where it would be played now.
-
-    An opening and a register step stand where they are written. A final cadence and the leading
-    tone do so too, unless the line lies outside the compass of the mode altogether, by more than a
-    quarter of an octave: then they move with it. Any other step takes the octave nearest to where
-    the line has been, out of those in which the mode names all its degrees.
-    """
-    size = system.divisions
-    recent = system.cents_to_units(recent_pitch_cents) - final_units
-    low, high = mode.degrees[0] - size // 4, mode.degrees[-1] + size // 4
-    base = -ceil((low - recent) / size) if recent < low else max(ceil((recent - high) / size), 0)
-    if step.kind in AS_WRITTEN:
-        octave = 0
-    elif step.kind in _STAYS_LOW:
-        octave = base
-    else:
-        middle = sum(step.degrees) / len(step.degrees)
-        named = set(mode.degrees)
-        fits = [k for k in (-1, 0, 1) if k == 0 or named.issuperset(d + k * size for d in step.degrees)]
-        octave = base + min(fits, key=lambda k: (abs(middle + (base + k) * size - recent), abs(k)))
-    return tuple(system.units_to_cents(final_units + degree + octave * size) for degree in step.degrees)
+    """Give the pitches of a step over a final, so many octaves over where it is written, in cents."""
+    base = final_units + octaves * system.divisions
+    return tuple(system.units_to_cents(base + degree) for degree in step.degrees)
 
 
 def _nats(model: ScoringModel, state: ScorerState) -> FloatArray:

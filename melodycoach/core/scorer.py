@@ -144,7 +144,9 @@ def advance(model: ScoringModel, state: ScorerState, heard: Heard) -> ScorerStat
     n_notes = state.n_notes + 1
     latest = (*state.latest, heard)[-model.parameters.closing_notes :]
     fresh *= model.parameters.hearing[heard.kind].change_power
-    change = advance_change(state.change, fresh, model.n_modes, n_notes, model.parameters)
+    change = advance_change(
+        state.change, fresh, model.log_prior, model.n_modes, n_notes, model.parameters
+    )
     return ScorerState(loglik, state.weight + weight, n_notes, sealed(context), memory, latest, change)
 
 

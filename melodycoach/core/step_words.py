@@ -65,15 +65,12 @@ def step_label(
     match step.kind:
         case StepKind.OPENING:
             return f"opening{names.beside('course')}: {_travel(step, name(first), name(last))}"
-        case StepKind.HALF_CADENCE:
-            is_dominant = last % names.system.divisions in {
-                d % names.system.divisions for d in mode.dominants
-            }
-            gloss = names.beside("dominant") if is_dominant else ""
-            return f"half cadence on {name(last)}{gloss}{_way(step, mode, name)}"
-        case StepKind.SUSPENDED_CADENCE:
-            gloss = names.beside("suspended cadence")
-            return f"suspended cadence on {name(last)}{gloss}{_way(step, mode, name)}"
+        case StepKind.HALF_CADENCE | StepKind.SUSPENDED_CADENCE:
+            if _halves(step, mode):
+                word, gloss = "half cadence", _dominant_beside(last, mode, names)
+            else:
+                word, gloss = "suspended cadence", names.beside("suspended cadence")
+            return f"{word} on {name(last)}{gloss}{_way(step, mode, name)}"
         case StepKind.LEADING_TONE:
             tone, target = _leading_pair(step)
             return f"leading tone{names.beside('leading tone')}: {name(tone)} before {name(target)}"
@@ -89,8 +86,29 @@ def step_label(
 
 def _way(step: CharacteristicStep, mode: Mode, name: _Namer) -> str:
     """Tell a cadence from another one of the mode on the same degree by where it comes from."""
-    twins = [s for s in mode.steps if s.kind is step.kind and s.degrees[-1] == step.degrees[-1]]
+    twins = [s for s in mode.steps if _cadence(s, mode) == _cadence(step, mode)]
     return f", from {name(step.degrees[0])}" if len(twins) > 1 else ""
+
+
+def _cadence(step: CharacteristicStep, mode: Mode) -> tuple[StepKind, int]:
+    kind = StepKind.HALF_CADENCE if _halves(step, mode) else step.kind
+    return kind, step.degrees[-1]
+
+
+def _halves(step: CharacteristicStep, mode: Mode) -> bool:
+    """Say whether a step is a half cadence: so is a rest on any dominant, whatever the pack calls it."""
+    if step.kind is StepKind.SUSPENDED_CADENCE:
+        return step.degrees[-1] in mode.dominants
+    return step.kind is StepKind.HALF_CADENCE
+
+
+def _dominant_beside(degree: int, mode: Mode, names: PitchNames) -> str:
+    """Give the trade's word for a dominant, in any octave, and say if it is not the first one."""
+    folded = [dominant % names.system.divisions for dominant in mode.dominants]
+    at = degree % names.system.divisions
+    if at not in folded:
+        return ""
+    return names.beside("dominant") if at == folded[0] else f" (second {names.word('dominant')})"
 
 
 def _travel(step: CharacteristicStep, first: str, last: str) -> str:

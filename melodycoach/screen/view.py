@@ -32,9 +32,11 @@ class OwedRow:
     """One characteristic step of the mode in view.
 
     ``perdes``, ``written`` and ``keys`` are the same notes thrice: names, written notes, and keys
-    of a plain keyboard. ``heard_at`` is the number (from 1) of the note that completed it, None
-    while it is owed. ``gain_nats`` says how far it would move the mode away from its rival if it
-    were played next.
+    of a plain keyboard. ``need`` is ``core``, ``usual`` or ``colour``; colour is welcome, never
+    owed. ``heard_at`` is the number (from 1) of the note that completed it, None while it is not
+    heard. ``gain_nats`` says how far it would move the mode away from its rival if it were played
+    next. A step stands where it would be played, or where it was heard; ``kind`` names its pitches
+    there too.
     """
 
     kind: str
@@ -44,6 +46,16 @@ class OwedRow:
     keys: tuple[str, ...]
     heard_at: int | None = None
     gain_nats: float = 0.0
+
+    @property
+    def is_colour(self) -> bool:
+        """Whether it is only welcome: it is not counted among the steps that a line owes."""
+        return self.need == "colour"
+
+    @property
+    def is_owed(self) -> bool:
+        """Whether the line owes it still."""
+        return self.heard_at is None and not self.is_colour
 
 
 @dataclass(frozen=True, slots=True)
@@ -128,8 +140,9 @@ class ViewState:
     ``verdict`` is the answer in one sentence ("leaning to Hüseynî", "undecided between A and B").
     ``now`` is what the last stretch sounds like where that differs from the whole, or empty.
     ``in_view`` names the mode that owed steps and ladder speak of (the target, else the leading
-    one) and ``rival`` the closest one behind it. ``keyboard_note`` says which rivals a plain
-    keyboard cannot separate, or is empty. ``tokens`` is the line as note text, one token an item,
+    one) and ``rival`` the closest one behind it. ``owed`` holds the steps owed, the best to play
+    next first, then colour that is welcome, then the steps heard, the newest first. ``keyboard_note``
+    says which rivals a plain keyboard cannot separate, or is empty. ``tokens`` is the line as note text, one token an item,
     which the entry shows. ``theory`` says whose theory it is, ``caution`` to whom it defers.
     ``handled`` is the number of the newest command carried out or refused, and ``refusals`` are
     the newest few refusals, oldest first: with them the entry knows what became of its edits.

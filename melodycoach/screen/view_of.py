@@ -6,19 +6,23 @@ and never changes an answer.
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, NamedTuple
 
+from melodycoach.core.change import NONE
 from melodycoach.core.event import PitchReading
-from melodycoach.core.evidence import Balance, balance, placed_final
+from melodycoach.core.evidence import Balance, balance
 from melodycoach.core.function import Function, function_of
-from melodycoach.core.keyboard import keyboard_note
+from melodycoach.core.mode import Mode, Need
 from melodycoach.core.note import InputKind, Mark, Note
+from melodycoach.core.octave import moved_final, standing_final
 from melodycoach.core.offmode import off_mode, off_mode_words
 from melodycoach.core.owed import StepTrack, follow, start_track
 from melodycoach.core.pitch import key_name
-from melodycoach.core.ranking import rank_owed
-from melodycoach.core.scorer import announced, leading, mode_posterior, posterior
+from melodycoach.core.plain_keys import keyboard_note
+from melodycoach.core.ranking import rank_owed, step_pitches
+from melodycoach.core.scorer import leading, mode_posterior, posterior
 from melodycoach.core.step_words import step_label
+from melodycoach.core.stretch import stretch_of
 from melodycoach.core.why import reasons_of_balance
 from melodycoach.screen.text import percent
 from melodycoach.screen.view import LeaningRow, LineNote, OwedRow, Rung, Status, ViewState, WhyRow
@@ -26,8 +30,9 @@ from melodycoach.screen.view import LeaningRow, LineNote, OwedRow, Rung, Status,
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
-    from melodycoach.core.mode import Mode
+    from melodycoach.core.change import ChangeState
     from melodycoach.core.model import ScoringModel
+    from melodycoach.core.note import Heard
     from melodycoach.core.pitch import PitchNames
     from melodycoach.core.scorer import Leaning, ScorerState
     from melodycoach.core.session import Line, SessionState
@@ -131,14 +136,15 @@ def _hypothesis_in_view(session: SessionState, lean: Leaning) -> tuple[Mode, int
     model, line = session.model, session.line
     if session.target is None:
         mode = model.mode_of(lean.best)
-        return mode, placed_final(model, lean.best, line.heard), lean.best, lean.rival
+        return mode, standing_final(model, lean.best, line.heard), lean.best, lean.rival
     candidates = [i for i, index in enumerate(model.mode_index) if model.modes[index].id == session.target.id]
     if not candidates:
-        return session.target, session.target.final_units, None, None
+        final_units = moved_final(session.target, session.target.final_units, line.heard, session.pack.system)
+        return session.target, final_units, None, None
     nats = posterior(model, line.states[-1])
     best = max(candidates, key=lambda i: nats[i])
     rival = lean.rival if model.mode_index[lean.best] == model.mode_index[best] else lean.best
-    return session.target, placed_final(model, best, line.heard), best, rival
+    return session.target, standing_final(model, best, line.heard), best, rival
 
 
 def _verdict(model: ScoringModel, state: ScorerState, lean: Leaning) -> str:
@@ -155,13 +161,14 @@ def _verdict(model: ScoringModel, state: ScorerState, lean: Leaning) -> str:
 
 
 def _now(model: ScoringModel, line: Line, lean: Leaning) -> str:
-    """Say what the last stretch sounds like where that differs from the whole line."""
-    state = line.states[-1]
-    index = announced(model, state)
-    if index is None or index == model.mode_index[lean.best]:
+    """Say what the newest stretch sounds like where that differs from the whole line."""
+    stretch = stretch_of(model, line.states[-1], lean.best)
+    if stretch is None:
         return ""
-    since = f", since note {state.changed_at}" if state.changed_at is not None else ""
-    return f"right now it sounds like {model.modes[index].name}{since}"
+    names = " or ".join(model.modes[index].name for index in stretch.among)
+    if len(stretch.among) > 2:
+        names = f"one of the {stretch.family}"
+    return f"right now it sounds like {names}, since note {stretch.since}"
 
 
 def _leaning_rows(session: SessionState, state: ScorerState) -> tuple[LeaningRow, ...]:
@@ -194,38 +201,88 @@ def _leaning_rows(session: SessionState, state: ScorerState) -> tuple[LeaningRow
 def _owed_rows(
     session: SessionState, hypothesis: int | None, rival: int | None, track: StepTrack
 ) -> tuple[OwedRow, ...]:
-    """List the steps: owed ones first, the best one on top; then those heard, the newest first."""
-    system, names = session.pack.system, session.pack.names
-    mode = track.mode
-    line = session.line
-
-    def row(step_pitches: Sequence[float], at: int | None, gain: float, index: int) -> OwedRow:
-        step = mode.steps[index]
-        return OwedRow(
-            kind=step_label(step, mode, names, track.final_units),
-            need=step.need.value,
-            perdes=tuple(names.name(cents) for cents in step_pitches),
-            written=tuple(str(names.spell(cents)) for cents in step_pitches),
-            keys=tuple(key_name(cents) for cents in step_pitches),
-            heard_at=at,
-            gain_nats=gain,
-        )
-
+    """List the steps: those to play next in their order; then those heard, the newest first."""
+    line, mode = session.line, track.mode
     index_by_id = {step.id: index for index, step in enumerate(mode.steps)}
-    rows: list[OwedRow] = []
     if hypothesis is not None:
-        recent = line.heard[-1].pitch_cents if line.heard else system.units_to_cents(track.final_units)
         kind = line.heard[-1].kind if line.heard else InputKind.TYPED
-        for owed in rank_owed(session.model, line.states[-1], hypothesis, track, recent, rival, kind):
-            rows.append(row(owed.pitches_cents, None, owed.gain_nats, index_by_id[owed.step.id]))
-    as_written = {
-        index: [system.units_to_cents(track.final_units + degree) for degree in step.degrees]
-        for index, step in enumerate(mode.steps)
-    }
-    if hypothesis is None:
-        rows += [row(as_written[i], None, 0.0, i) for i, at in enumerate(track.heard_at) if at is None]
+        ranked = rank_owed(session.model, line.states[-1], hypothesis, track, rival, kind)
+        to_play = [(index_by_id[one.step.id], one.gain_nats) for one in ranked]
+    else:
+        to_play = [(i, 0.0) for i, at in enumerate(track.heard_at) if at is None]
+        to_play.sort(key=lambda one: mode.steps[one[0]].need is Need.COLOUR)
     heard = sorted(((at, i) for i, at in enumerate(track.heard_at) if at is not None), reverse=True)
-    return (*rows, *(row(as_written[i], at, 0.0, i) for at, i in heard))
+    rows = [_owed_row(session, track, index, gain) for index, gain in to_play]
+    return (*rows, *(_owed_row(session, track, index, 0.0) for _, index in heard))
+
+
+def _owed_row(session: SessionState, track: StepTrack, index: int, gain_nats: float) -> OwedRow:
+    """Write a step where it was heard, or over the final where it is not: its label and its notes."""
+    system, names = session.pack.system, session.pack.names
+    step, octaves = track.mode.steps[index], track.heard_octave[index]
+    pitches = step_pitches(step, track.final_units, system, octaves)
+    return OwedRow(
+        kind=step_label(step, track.mode, names, track.final_units + octaves * system.divisions),
+        need=step.need.value,
+        perdes=tuple(names.name(cents) for cents in pitches),
+        written=tuple(str(names.spell(cents)) for cents in pitches),
+        keys=tuple(key_name(cents) for cents in pitches),
+        heard_at=track.heard_at[index],
+        gain_nats=gain_nats,
+    )
+
+
+class Judge(NamedTuple):
+    """The mode that notes are judged by: from a note on, counted from 1, until the next judge's."""
+
+    since: int
+    mode: Mode
+    final_units: int
+
+
+def judges(
+    model: ScoringModel,
+    states: Sequence[ScorerState],
+    heard: Sequence[Heard],
+    in_view: tuple[Mode, int],
+    leader: int | None,
+) -> tuple[Judge, ...]:
+    """Say by which mode each note of a line is off or not, the newest notes first.
+
+    With a target, or while no change of mode was noticed, that is the mode in view for the whole
+    line. After a change each stretch is judged by the mode that was announced for it, so what was
+    right before the change stays right after it. The newest stretch is judged by the mode in view
+    as long as nothing else is said of it.
+
+    Parameters
+    ----------
+    model, states, heard
+        The scoring model, the state after each number of notes, and the notes.
+    in_view
+        The mode in view and where it stands, in units from A4.
+    leader
+        The hypothesis that leads the line as a whole; None where the player aims at a mode.
+    """
+    change = states[-1].change
+    if leader is None or change.seam_at is None:
+        return (Judge(1, *in_view),)
+    found: list[Judge] = []
+    if stretch_of(model, states[-1], leader) is None:
+        found.append(Judge(change.seam_at, *in_view))
+        change = _before(states, change)
+    while change.announced != NONE:
+        mode, final_units = model.mode_of(change.announced), standing_final(model, change.announced, heard)
+        found.append(Judge(change.seam_at or 1, mode, final_units))
+        if change.seam_at is None:
+            break
+        change = _before(states, change)
+    return tuple(found)
+
+
+def _before(states: Sequence[ScorerState], change: ChangeState) -> ChangeState:
+    """Give what the change filter held just before the change that it noticed last."""
+    assert change.changed_at is not None
+    return states[change.changed_at - 1].change
 
 
 def _line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[LineNote, ...]:
@@ -234,13 +291,16 @@ def _line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[Li
     items, heard = session.line.items, session.line.heard
     places = [i for i, item in enumerate(items) if isinstance(item, Note)]
     first = max(len(places) - NOTES_SHOWN, 0)
+    leader = leading(session.model, session.line.states[-1]).best if session.target is None else None
+    judged_by = judges(session.model, session.line.states, heard, (mode, final_units), leader)
     rows = []
     for number in range(first, len(places)):
         at, note = places[number], heard[number]
+        _, judge, stands_on = next(one for one in judged_by if one.since <= number + 1)
         until = places[number + 1] if number + 1 < len(places) else len(items)
         marks = [item for item in items[at + 1 : until] if isinstance(item, Mark)]
-        off = off_mode(mode, final_units, note, system)
-        wrong, mend = off_mode_words(off, mode, names) if off is not None else ("", "")
+        off = off_mode(judge, stands_on, note, system)
+        wrong, mend = off_mode_words(off, judge, names) if off is not None else ("", "")
         rows.append(
             LineNote(
                 number=number + 1,

@@ -6,11 +6,11 @@ import numpy as np
 import pytest
 
 from melodycoach.core.event import PitchReading
-from melodycoach.core.keyboard import CLOSE_NATS, divergence, function_difference, keyboard_note
 from melodycoach.core.mode import ModePack
 from melodycoach.core.model import ScoringModel, build_model
 from melodycoach.core.note import InputKind
 from melodycoach.core.pitch import SEMITONES_12, PitchNames
+from melodycoach.core.plain_keys import CLOSE_NATS, divergence, function_difference, keyboard_note
 from melodycoach.sources.pack_file import load_pack
 
 PACK = load_pack("makam")

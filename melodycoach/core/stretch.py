@@ -1,0 +1,83 @@
+"""What the newest stretch of a line sounds like, once the change filter has found a seam.
+
+Too short a stretch is no ground for a name, and a wrong one is worse than none. So a mode is named
+alone only when the stretch is clear; else two modes, or a family; else nothing.
+
+Conventions
+-----------
+The stretch begins at the seam. Its evidence is the change filter's, which has no memory, to the power
+``stretch_power``; what comes out is good for choosing words, not for showing as a percentage. Modes
+are given by their places in the model.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from melodycoach.core.change import NONE, departure_nats
+
+if TYPE_CHECKING:
+    from melodycoach.core.arrays import FloatArray
+    from melodycoach.core.model import ScoringModel
+    from melodycoach.core.scorer import ScorerState
+
+
+@dataclass(frozen=True, slots=True)
+class Stretch:
+    """Words for the newest stretch.
+
+    Parameters
+    ----------
+    since
+        Its first note.
+    among
+        Modes that it may be in, likeliest first: one when that is clear, two, or some of one family.
+    family
+        The family that they share, or an empty string.
+    """
+
+    since: int
+    among: tuple[int, ...]
+    family: str
+
+
+def stretch_of(model: ScoringModel, state: ScorerState, leader: int) -> Stretch | None:
+    """Say what the newest stretch sounds like, or None where there is nothing to say.
+
+    There is nothing to say while no change has been noticed, while the stretch could be in the
+    leading mode, or while it could be in many modes of several families.
+
+    Parameters
+    ----------
+    leader
+        The hypothesis that leads the line as a whole.
+    """
+    change = state.change
+    if change.seam_at is None or change.announced == NONE:
+        return None
+    nats = change.total - change.base
+    if departure_nats(nats - nats[leader], model.log_prior) < model.parameters.change_nats:
+        return None
+    among = _among(model, nats, change.announced % model.n_modes)
+    families = {model.modes[index].family for index in among}
+    if leader % model.n_modes in among or (len(among) > 2 and len(families) > 1):
+        return None
+    return Stretch(change.seam_at, among, families.pop() if len(families) == 1 else "")
+
+
+def _among(model: ScoringModel, nats: FloatArray, announced: int) -> tuple[int, ...]:
+    """Give the modes that a stretch may be in; the announced one is always among them."""
+    parameters = model.parameters
+    powered = model.log_prior + parameters.stretch_power * nats
+    chance = np.exp(powered - powered.max()).reshape(-1, model.n_modes).sum(axis=0)
+    chance /= chance.sum()
+    ranked = [int(index) for index in np.argsort(-chance, kind="stable")]
+    if ranked[0] == announced and chance[announced] >= parameters.stretch_at:
+        return (announced,)
+    among = ranked[:1]
+    while chance[among].sum() < parameters.among_share and len(among) < len(ranked):
+        among.append(ranked[len(among)])
+    return tuple(among) if announced in among else (*among, announced)
