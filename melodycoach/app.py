@@ -285,6 +285,7 @@ class _Printer:
 
     def begin(self, coach: Coach) -> None:
         self._say(f"{coach.view.theory}. {coach.view.caution}")
+        coach.turn()  # the ports are looked at: there is something true to say of them
         self._previous = coach.view
         self.world(coach.view)
 

@@ -147,6 +147,11 @@ def _listen(options: argparse.Namespace) -> int:
         raise UsageError("--fast goes with --replay")
     if options.replay and options.file:
         raise UsageError("--replay and FILE: one line to begin with at a time; leave one of them out")
+    ignored = (options.only, options.target, options.final, options.any_pitch, options.port)
+    if options.replay and any(ignored):
+        raise UsageError(
+            "--replay shows a session as it was: leave out --only, --target, --final, --any-pitch and --port"
+        )
     settings = Settings(
         pack=options.pack,
         only=_names(options.only),

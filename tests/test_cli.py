@@ -84,6 +84,7 @@ def test_help_loads_nothing_heavy() -> None:
         (["listen", "--replay", "nowhere.jsonl"], "nowhere.jsonl"),
         (["listen", "--fast"], "--fast goes with --replay"),
         (["listen", "a.txt", "--replay", "b.jsonl"], "one line to begin with at a time"),
+        (["listen", "--replay", "b.jsonl", "--target", "rast"], "--replay shows a session as it was"),
         (["evaluate", "nowhere.jsonl"], "nowhere.jsonl"),
     ],
 )
@@ -246,11 +247,13 @@ def test_what_is_typed_on_the_command_line_is_asked_of_the_session(
         only=("rast", "hicaz"), target="rast", any_pitch=True, log=False, open_file=Path("line.txt")
     )
     assert not asked.full_screen  # nobody looks at a terminal
-    assert main(["listen", "--replay", "old.jsonl", "--fast", "--final", "A4", "--port", "Keys"]) == 0
-    assert asked.settings == Settings(replay=Path("old.jsonl"), fast=True, final="A4", port="Keys")
+    assert main(["listen", "--replay", "old.jsonl", "--fast"]) == 0
+    assert asked.settings == Settings(replay=Path("old.jsonl"), fast=True)
+    assert main(["--final", "A4", "--port", "Keys"]) == 0
+    assert asked.settings == Settings(final="A4", port="Keys")
     assert main(["demo", "--fast", "--port", "Keys"]) == 0
     assert asked.settings == Settings(demo=True, fast=True, port="Keys")
-    assert capsys.readouterr().out == "something\n" * 3
+    assert capsys.readouterr().out == "something\n" * 4
 
 
 class Terminal(io.StringIO):

@@ -49,6 +49,25 @@ NONE = -1
 
 
 @dataclass(frozen=True, eq=False, slots=True)
+class Field:
+    """Who competes.
+
+    Parameters
+    ----------
+    n_modes
+        Hypothesis ``h`` is of mode ``h % n_modes``.
+    log_prior : float64, shape (n_hypotheses,), nats
+        The probabilities sum to 1.
+    final_units : int64, shape (n_hypotheses,)
+        The final of each.
+    """
+
+    n_modes: int
+    log_prior: FloatArray
+    final_units: IntArray
+
+
+@dataclass(frozen=True, eq=False, slots=True)
 class ChangeState:
     """What the filter holds after some notes.
 
@@ -71,7 +90,8 @@ class ChangeState:
     past
         The totals before each of the last ``change_window`` notes, the oldest first.
     base : float64, shape (n_hypotheses,), nats
-        The total before the stretch; zeros while it is the whole line.
+        The total before the stretch, less what speaks for a mode before its first note; zeros while
+        the stretch is the whole line.
     changed_at
         The note at which a mode gave way to another one last, or None.
     seam_at
@@ -99,12 +119,7 @@ def start_change(log_prior: FloatArray) -> ChangeState:
 
 
 def advance_change(
-    state: ChangeState,
-    nats: FloatArray,
-    log_prior: FloatArray,
-    n_modes: int,
-    n_notes: int,
-    parameters: ScoringParameters,
+    state: ChangeState, nats: FloatArray, field: Field, n_notes: int, parameters: ScoringParameters
 ) -> ChangeState:
     """Give the filter's state after one more note.
 
@@ -112,16 +127,16 @@ def advance_change(
     ----------
     nats : float64, shape (n_hypotheses,)
         What the note says for each hypothesis, to the power that its input has in this filter.
-    log_prior : float64, shape (n_hypotheses,)
-        As given to `start_change`; the probabilities sum to 1.
+    field
+        Who competes, the same at every note.
     n_notes
         The number of this note.
     """
     past = (*state.past, state.total)[-parameters.change_window :]
     state = replace(state, total=sealed(state.total + nats), past=past)
     if state.reference == NONE:
-        return _first(state, nats, n_modes, parameters)
-    return _next(state, nats, log_prior, n_modes, n_notes, parameters)
+        return _first(state, nats, field.n_modes, parameters)
+    return _next(state, nats, field, n_notes, parameters)
 
 
 def departure_nats(gain: FloatArray, log_prior: FloatArray) -> float:
@@ -164,25 +179,21 @@ def _first(state: ChangeState, nats: FloatArray, n_modes: int, parameters: Scori
 
 
 def _next(
-    state: ChangeState,
-    nats: FloatArray,
-    log_prior: FloatArray,
-    n_modes: int,
-    n_notes: int,
-    parameters: ScoringParameters,
+    state: ChangeState, nats: FloatArray, field: Field, n_notes: int, parameters: ScoringParameters
 ) -> ChangeState:
     gain = np.maximum(state.gain + (nats - nats[state.reference]), 0.0)
     risen_from = np.where(state.gain > 0, state.risen_from, n_notes)
     state = replace(state, gain=sealed(gain), risen_from=sealed(risen_from))
     grown = np.where(risen_from <= n_notes + 1 - parameters.change_notes, gain, -np.inf)
     grown[state.reference] = -np.inf
-    best = int((grown + log_prior).argmax())
-    if grown[best] > 0 and departure_nats(grown, log_prior) >= parameters.change_nats:
+    best = int((grown + field.log_prior).argmax())
+    if grown[best] > 0 and departure_nats(grown, field.log_prior) >= parameters.change_nats:
         back = min(n_notes + 1 - int(risen_from[best]), len(state.past))
-        base = state.past[-back]
-        to = int((log_prior + state.total - base).argmax())
+        keeps_final = field.final_units == field.final_units[state.reference]
+        base = sealed(state.past[-back] - parameters.same_final_nats * keeps_final)
+        to = int((field.log_prior + state.total - base).argmax())
         if to != state.reference:
-            moved = to % n_modes != state.reference % n_modes
+            moved = (to - state.reference) % field.n_modes != 0
             return replace(
                 state,
                 gain=sealed(np.zeros(len(gain))),
@@ -192,7 +203,7 @@ def _next(
                 changed_at=n_notes if moved else state.changed_at,
                 seam_at=n_notes + 1 - back if moved else state.seam_at,
             )
-    return _followed(state, log_prior, parameters)
+    return _followed(state, field.log_prior, parameters)
 
 
 def _followed(state: ChangeState, log_prior: FloatArray, parameters: ScoringParameters) -> ChangeState:

@@ -104,6 +104,13 @@ class ReadingChosen:
     reading: PitchReading
     final_cents: float | None = None
 
+    def __post_init__(self) -> None:
+        """Refuse a final that does not go with the reading."""
+        if (self.reading is PitchReading.FINAL) != (self.final_cents is not None):
+            raise ValueError(
+                f"final_cents {self.final_cents!r} does not go with reading {str(self.reading)!r}"
+            )
+
 
 @dataclass(frozen=True, slots=True)
 class ModesRestricted:

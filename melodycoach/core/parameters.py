@@ -139,6 +139,9 @@ class ScoringParameters:
         It announces a change when the gains, weighed by the prior, come to ``change_nats`` together;
         only those count that have risen for ``change_notes`` notes. A seam is looked for among the
         last ``change_window`` notes.
+    same_final_nats
+        A line that moves to another mode keeps its final more often than not: so much is added to
+        the prior of the modes on the same final.
     announce_lead_nats
         The announced mode follows the one that explains the stretch best when that leads by so much.
     stretch_power, stretch_at
@@ -187,6 +190,7 @@ class ScoringParameters:
     change_nats: float = 2.7
     change_notes: int = 4
     change_window: int = 64
+    same_final_nats: float = 1.1
     announce_lead_nats: float = 1.0
     stretch_power: float = 0.6
     stretch_at: float = 0.7

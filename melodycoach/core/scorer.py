@@ -23,7 +23,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from melodycoach.core.arrays import sealed
-from melodycoach.core.change import NONE, ChangeState, advance_change, start_change
+from melodycoach.core.change import NONE, ChangeState, Field, advance_change, start_change
 from melodycoach.core.model import register_columns
 from melodycoach.core.theory import MOVING, RESTING
 from melodycoach.errors import ImpossibleEvidenceError
@@ -144,9 +144,8 @@ def advance(model: ScoringModel, state: ScorerState, heard: Heard) -> ScorerStat
     n_notes = state.n_notes + 1
     latest = (*state.latest, heard)[-model.parameters.closing_notes :]
     fresh *= model.parameters.hearing[heard.kind].change_power
-    change = advance_change(
-        state.change, fresh, model.log_prior, model.n_modes, n_notes, model.parameters
-    )
+    field = Field(model.n_modes, model.log_prior, model.final_units)
+    change = advance_change(state.change, fresh, field, n_notes, model.parameters)
     return ScorerState(loglik, state.weight + weight, n_notes, sealed(context), memory, latest, change)
 
 

@@ -17,7 +17,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from melodycoach.core.change import NONE, departure_nats
+from melodycoach.core.change import departure_nats
 
 if TYPE_CHECKING:
     from melodycoach.core.arrays import FloatArray
@@ -34,7 +34,7 @@ class Stretch:
     since
         Its first note.
     among
-        Modes that it may be in, likeliest first: one when that is clear, two, or some of one family.
+        Modes that it may be in, likeliest first: one when that is clear, two, or a whole family.
     family
         The family that they share, or an empty string.
     """
@@ -56,28 +56,29 @@ def stretch_of(model: ScoringModel, state: ScorerState, leader: int) -> Stretch 
         The hypothesis that leads the line as a whole.
     """
     change = state.change
-    if change.seam_at is None or change.announced == NONE:
+    if change.seam_at is None:
         return None
     nats = change.total - change.base
     if departure_nats(nats - nats[leader], model.log_prior) < model.parameters.change_nats:
         return None
     among = _among(model, nats, change.announced % model.n_modes)
-    families = {model.modes[index].family for index in among}
-    if leader % model.n_modes in among or (len(among) > 2 and len(families) > 1):
+    if leader % model.n_modes in among:
         return None
-    return Stretch(change.seam_at, among, families.pop() if len(families) == 1 else "")
+    families = {model.modes[index].family for index in among}
+    return Stretch(change.seam_at, among, families.pop() if len(families) == 1 else "") if among else None
 
 
 def _among(model: ScoringModel, nats: FloatArray, announced: int) -> tuple[int, ...]:
-    """Give the modes that a stretch may be in; the announced one is always among them."""
+    """Give the modes that a stretch may be in, the announced one among them, or none for too many."""
     parameters = model.parameters
     powered = model.log_prior + parameters.stretch_power * nats
     chance = np.exp(powered - powered.max()).reshape(-1, model.n_modes).sum(axis=0)
     chance /= chance.sum()
-    ranked = [int(index) for index in np.argsort(-chance, kind="stable")]
-    if ranked[0] == announced and chance[announced] >= parameters.stretch_at:
+    if chance[announced] >= parameters.stretch_at:
         return (announced,)
-    among = ranked[:1]
-    while chance[among].sum() < parameters.among_share and len(among) < len(ranked):
-        among.append(ranked[len(among)])
-    return tuple(among) if announced in among else (*among, announced)
+    ranked = [int(index) for index in np.argsort(-chance, kind="stable")]
+    two = tuple(ranked[:2])
+    if announced in two and chance[list(two)].sum() >= parameters.among_share:
+        return two
+    family = [index for index in ranked if model.modes[index].family == model.modes[announced].family]
+    return tuple(family) if chance[family].sum() >= parameters.among_share else ()

@@ -258,7 +258,7 @@ _HELP: tuple[tuple[str, str], ...] = (
     ("", ""),
     ("The areas", ""),
     ("leanings", "modes, probability, {rising}{falling} since the last note, final; {target} your aim"),
-    ("owed", "{next} best step to play next, {owed} owed, {heard} heard, at which note"),
+    ("owed", "{next} best step to play next, {owed} owed, {welcome} welcome, {heard} heard, at which note"),
     ("why", "what speaks for the leading mode (+) and against it ({minus}), in nats"),
     ("line", "{note} note, {note}{held} the line rests on it, {above}{below} between rungs"),
     ("", "{off} off the mode, {mend} the pitch that mends it, {breath} breath, {phrase_end} phrase end"),

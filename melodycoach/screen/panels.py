@@ -136,28 +136,31 @@ def draw_bar(share: float, cells: int, signs: Signs) -> str:
     return signs.bar[-1] * whole + (signs.bar[rest - 1] if rest else "")
 
 
-def split_owed(view: ViewState) -> tuple[list[OwedRow], list[OwedRow]]:
-    """Part the characteristic steps into owed ones, the most telling first, and heard ones."""
-    owed = sorted((row for row in view.owed if row.heard_at is None), key=lambda row: -row.gain_nats)
+def split_owed(view: ViewState) -> tuple[list[OwedRow], list[OwedRow], list[OwedRow]]:
+    """Part the characteristic steps into those owed, colour that is welcome, and those heard."""
+    owed = [row for row in view.owed if row.is_owed]
+    welcome = [row for row in view.owed if row.heard_at is None and row.is_colour]
     heard = [row for row in view.owed if row.heard_at is not None]
-    return owed, heard
+    return owed, welcome, heard
 
 
 def owed_title(view: ViewState, signs: Signs) -> tuple[str, str]:
     """Give heading and right end of the area of owed steps; before the first note there is no mode."""
     if not (view.n_notes or view.is_target):
         return "owed", ""
-    heard = sum(1 for row in view.owed if row.heard_at is not None)
+    counted = [row for row in view.owed if not row.is_colour]
+    heard = sum(1 for row in counted if row.heard_at is not None)
     aim = " (your aim)" if view.is_target else ""
     name = f" {signs.dot} {view.in_view}{aim}" if view.in_view else ""
-    return f"owed{name}", f"{heard} of {len(view.owed)} heard" if view.owed else ""
+    return f"owed{name}", f"{heard} of {len(counted)} heard" if counted else ""
 
 
 def draw_owed(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line]:
-    """Draw the best step to play next, then all steps by need: owed, then heard.
+    """Draw the best step to play next, then all steps by need: not heard, then heard.
 
-    With little room the written notes and keys of all but the best go first, then the headings,
-    then steps: the least telling of those owed, and the oldest of those heard.
+    Colour is never put first: once nothing is owed any more, that is said there. With little room
+    the written notes and keys of all but the best go first, then the headings, then steps: colour,
+    the last of those owed, and the oldest of those heard.
     """
     if rows <= 0:
         return []
@@ -166,14 +169,15 @@ def draw_owed(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Li
         if rows >= 4:
             text = "the steps that mark the leading mode will stand here: which you owe, which are heard"
         return [[("class:faint", row)] for row in wrap(text, columns)][:rows]
-    owed, heard = split_owed(view)
-    if not owed:
-        lines: list[Line] = [[("class:heard", f"{signs.heard} every step of {view.in_view} is heard")]]
-        return (lines + [_heard(row, columns, signs) for row in heard])[:rows]
-    best, others = owed[0], owed[1:]
-    if rows <= 2:
-        return _best_in_short(best, columns, rows, signs)
-    lines = _best(best, columns, signs)[:rows]
+    owed, welcome, heard = split_owed(view)
+    others = [*owed[1:], *welcome]
+    if owed and rows <= 2:
+        return _best_in_short(owed[0], columns, rows, signs)
+    if owed:
+        lines = _best(owed[0], columns, signs)[:rows]
+    else:
+        said = f"{signs.heard} every step that {view.in_view} needs is heard"
+        lines = [[("class:heard", cut(said, columns, signs.more))]]
     for choice in (
         _grouped(others, heard, columns, signs, 2),
         _grouped(others, heard, columns, signs, 1),
@@ -249,7 +253,8 @@ _SHORTEST_KIND = 12
 
 def _owed(row: OwedRow, columns: int, signs: Signs, need: str = "") -> Line:
     gain = f"{need}{gain_words(row.gain_nats, signs)}"
-    return _step(row, f"{signs.owed} ", "class:owed", gain, columns, signs)
+    sign = signs.welcome if row.is_colour else signs.owed
+    return _step(row, f"{sign} ", "class:owed", gain, columns, signs)
 
 
 def _heard(row: OwedRow, columns: int, signs: Signs) -> Line:

@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING
 from melodycoach.screen.text import percent, tidy
 
 if TYPE_CHECKING:
-    from melodycoach.screen.view import LineNote, OwedRow, ViewState
+    from melodycoach.screen.view import LineNote, ViewState
 
 
 def plain_line(view: ViewState, previous: ViewState | None) -> str:
@@ -95,11 +95,11 @@ def _off(view: ViewState, previous: ViewState | None) -> list[str]:
 
 
 def _next(view: ViewState) -> str:
-    owed: list[OwedRow] = [row for row in view.owed if row.heard_at is None]
-    if not owed or not view.n_notes:
+    """Name the best step to play next; where nothing is owed any more, the best colour."""
+    best = next((row for row in view.owed if row.heard_at is None), None)
+    if best is None or not view.n_notes:
         return ""
-    best = max(owed, key=lambda row: row.gain_nats)
-    return f"next: {best.kind}, {' '.join(best.perdes)}"
+    return f"{'next' if best.is_owed else 'welcome'}: {best.kind}, {' '.join(best.perdes)}"
 
 
 def _settings(view: ViewState, previous: ViewState | None) -> str:

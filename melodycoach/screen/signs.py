@@ -29,6 +29,7 @@ class Signs:
     target: str
     heard: str
     owed: str
+    welcome: str
     next: str
     note: str
     above: str
@@ -59,6 +60,7 @@ UNICODE = Signs(
     target="»",
     heard="✓",
     owed="○",
+    welcome="+",
     next="▸",
     note="●",
     above="▴",
@@ -89,6 +91,7 @@ ASCII = Signs(
     target=">",
     heard="+",
     owed=".",
+    welcome="&",
     next=">",
     note="o",
     above="'",

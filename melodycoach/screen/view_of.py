@@ -151,6 +151,8 @@ def _verdict(model: ScoringModel, state: ScorerState, lean: Leaning) -> str:
     if state.n_notes == 0:
         return "nothing heard yet: play or type a note"
     names = [model.modes[index].name for index in lean.among]
+    if model.n_modes == 1:
+        return f"{names[0]} alone competes: choose more modes to compare it with"
     if lean.decided:
         return f"leaning to {names[0]}, {percent(lean.p_best)}"
     if len(names) == 1:

@@ -99,7 +99,11 @@ def event_from_json(line: bytes | str) -> Event:
         hint = nearest_names(str(name), _EVENT_BY_NAME)
         raise EventLogError(f"no event {name!r}; {hint}")
     kind, readers = _EVENT_BY_NAME[name]
-    event: Event = kind(**_read_fields(fields, {"at_s": _number, **readers}, name))
+    values = _read_fields(fields, {"at_s": _number, **readers}, name)
+    try:
+        event: Event = kind(**values)
+    except ValueError as error:
+        raise EventLogError(f"{name}: {error}") from error
     return event
 
 

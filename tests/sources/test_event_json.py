@@ -53,7 +53,10 @@ EVERY_KIND: dict[type, st.SearchStrategy[Event]] = {
     Redone: st.builds(Redone, numbers),
     FreshStart: st.builds(FreshStart, numbers),
     TargetChosen: st.builds(TargetChosen, numbers, st.none() | st.text()),
-    ReadingChosen: st.builds(ReadingChosen, numbers, st.sampled_from(PitchReading), st.none() | numbers),
+    ReadingChosen: st.builds(
+        ReadingChosen, numbers, st.sampled_from([PitchReading.WRITTEN, PitchReading.ANY])
+    )
+    | st.builds(ReadingChosen, numbers, st.just(PitchReading.FINAL), numbers),
     ModesRestricted: st.builds(ModesRestricted, numbers, st.lists(st.text(), max_size=4).map(tuple)),
     TimePassed: st.builds(TimePassed, numbers),
 }
@@ -182,3 +185,9 @@ def test_another_file_is_no_log() -> None:
     assert str(error.value) == (
         'found \'{"name": "a", "modes": [1, 2, 3], "more…\', expected the header of an event log'
     )
+
+
+def test_a_final_that_does_not_go_with_the_reading_is_damage() -> None:
+    with pytest.raises(EventLogError) as error:
+        event_from_json('{"event": "reading-chosen", "at_s": 1.0, "reading": "final", "final_cents": null}')
+    assert str(error.value) == "reading-chosen: final_cents None does not go with reading 'final'"
