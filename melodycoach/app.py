@@ -20,13 +20,14 @@ from typing import TYPE_CHECKING, Any
 
 from platformdirs import user_config_path, user_data_path
 
-from melodycoach import __version__
-from melodycoach.coach import TURN_S, Clock, Coach, Player, read_final
+from melodycoach import DEFAULT_PACK, __version__
+from melodycoach.clock import Clock
+from melodycoach.coach import TURN_S, Coach
 from melodycoach.core.event import PitchReading
 from melodycoach.core.session import begin
-from melodycoach.demo import PACK as DEMO_PACK
 from melodycoach.errors import EventLogError, MelodycoachError, PortError
-from melodycoach.players import DemoKeyboard, Keyboard, Replay
+from melodycoach.line_text import read_final
+from melodycoach.players import DemoKeyboard, Keyboard, Player, Replay
 from melodycoach.screen.plain import plain_line
 from melodycoach.sources.event_json import LogHeader
 from melodycoach.sources.event_log import EventLog, log_path, read_event_log
@@ -52,7 +53,7 @@ SWITCH_INTERVAL_S = 0.001
 class Settings:
     """What the command line asks of a live session, as it was typed."""
 
-    pack: str = DEMO_PACK
+    pack: str = DEFAULT_PACK
     only: tuple[str, ...] = ()
     target: str | None = None
     final: str | None = None
@@ -136,7 +137,7 @@ def _prepare(settings: Settings, clock: Clock) -> tuple[SessionState, Player, Ev
 def _recorded_beginning(recorded: RecordedLog, settings: Settings) -> SessionState:
     """Begin as a recorded session began. Its pack may have moved since: another ``--pack`` is looked at."""
     kept, pack_id = recorded.header.settings, recorded.header.pack_id
-    asked = settings.pack != DEMO_PACK
+    asked = settings.pack != DEFAULT_PACK
     pack = load_pack(settings.pack if asked else str(kept.get("pack", pack_id)), user_pack_dir())
     if pack.id != pack_id:
         raise EventLogError(
@@ -376,34 +377,11 @@ def _ending_by_signal() -> Iterator[None]:
 # --- ports -------------------------------------------------------------------------------------
 
 
-def ports_json() -> dict[str, Any]:
-    """List the ports as plain values."""
-    ports = list_ports()
+def ports() -> dict[str, Any]:
+    """List the ports of this machine as plain values."""
+    found = list_ports()
     return {
-        "inputs": [{"name": port.name, "system": port.system} for port in ports.inputs],
-        "outputs": [{"name": port.name, "system": port.system} for port in ports.outputs],
-        "problem": ports.problem,
+        "inputs": [{"name": port.name, "system": port.system} for port in found.inputs],
+        "outputs": [{"name": port.name, "system": port.system} for port in found.outputs],
+        "problem": found.problem,
     }
-
-
-def ports_text() -> str:
-    """List the ports for people, and say what to do when there are none."""
-    ports = list_ports()
-    lines = []
-    for title, found in (("MIDI inputs", ports.inputs), ("MIDI outputs", ports.outputs)):
-        lines.append(f"{title}:")
-        lines += [f"  {port.name}  ({port.system})" for port in found] or ["  none"]
-    if ports.problem:
-        lines.append(ports.problem)
-    elif not ports.inputs:
-        lines += [
-            "",
-            "No keyboard was found. Plug one in and switch it on: it is taken as soon as it appears.",
-            "On Linux the MIDI sequencer of ALSA or a JACK server has to run. You can always type notes.",
-        ]
-    else:
-        lines += [
-            "",
-            "melodycoach listen --port NAME listens to one of them; a part of its name will do.",
-        ]
-    return "\n".join(lines)

@@ -13,7 +13,7 @@ import sys
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, NoReturn
 
-from melodycoach import __version__
+from melodycoach import DEFAULT_PACK, __version__
 from melodycoach.errors import MelodycoachError, UsageError
 
 if TYPE_CHECKING:
@@ -23,7 +23,6 @@ if TYPE_CHECKING:
     from melodycoach.core.mode import ModePack
 
 DONE, ANSWER_IS_NO, BAD_INPUT, INTERRUPTED = 0, 1, 2, 130
-DEFAULT_PACK = "makam"
 DEFAULT_COMMAND = "listen"
 
 _EPILOG = """\
@@ -251,9 +250,11 @@ def _add_ports(commands: Any) -> None:
 
 
 def _ports(options: argparse.Namespace) -> int:
-    from melodycoach.app import ports_json, ports_text
+    from melodycoach.app import ports
+    from melodycoach.report.ports import ports_text
 
-    _print_result(options.json, ports_json(), ports_text)
+    found = ports()
+    _print_result(options.json, found, lambda: ports_text(found))
     return DONE
 
 

@@ -7,14 +7,11 @@ new `ViewState` by swapping a reference. Other threads only `send` commands and 
 
 from __future__ import annotations
 
-import time
 from collections import deque
 from dataclasses import replace
-from itertools import pairwise, zip_longest
 from pathlib import Path
 from queue import Empty, SimpleQueue
-from statistics import median
-from typing import TYPE_CHECKING, Protocol
+from typing import TYPE_CHECKING
 
 from melodycoach.core.event import (
     Event,
@@ -23,16 +20,16 @@ from melodycoach.core.event import (
     ModesRestricted,
     NoteOff,
     NoteOn,
-    PitchReading,
     ReadingChosen,
     Redone,
     TargetChosen,
     TimePassed,
     Undone,
 )
-from melodycoach.core.note import Item, Mark, Note
-from melodycoach.core.session import Line, SessionState, apply
-from melodycoach.errors import MelodycoachError, NoteTextError, StorageError, UnknownNameError
+from melodycoach.core.note import Item, Mark
+from melodycoach.core.session import SessionState, apply
+from melodycoach.errors import MelodycoachError, NoteTextError, StorageError
+from melodycoach.line_text import Page, entry_items, notes_with_marks, open_line, read_final, save_line
 from melodycoach.screen.command import (
     Command,
     Fresh,
@@ -49,20 +46,13 @@ from melodycoach.screen.command import (
 )
 from melodycoach.screen.view import Refusal, Status, ViewState
 from melodycoach.screen.view_of import ViewMaker
-from melodycoach.sources.note_text import (
-    DEFAULT_TEMPO,
-    Headers,
-    find_faults,
-    item_token,
-    read_note_text,
-    read_tokens,
-    write_note_text,
-)
+from melodycoach.sources.note_text import find_faults, item_token, read_tokens
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Sequence
+    from collections.abc import Callable
 
     from melodycoach.core.pitch import PitchNames
+    from melodycoach.players import Player
     from melodycoach.sources.event_log import EventLog
 
 TICK_S = 0.1
@@ -76,54 +66,6 @@ REFUSALS_KEPT = 8
 COMMENT_REFUSED = (
     "{!r} begins a comment, which the live line does not keep; a sharp stands behind its letter: F#5"
 )
-
-SLOWEST_BPM, FASTEST_BPM = 30.0, 300.0
-"""Bounds of the tempo that a played line is saved with."""
-
-
-class Clock:
-    """Seconds from the start of the session, real or hurried."""
-
-    def __init__(self, speed: float = 1.0) -> None:
-        self._began_s = time.monotonic()
-        self._speed = speed
-        self._offset_s = 0.0
-
-    def __call__(self) -> float:
-        """Read the clock."""
-        return self._offset_s + (time.monotonic() - self._began_s) * self._speed
-
-    def slow_down(self) -> None:
-        """Go on in real time from now; in real time already, do nothing."""
-        if self._speed == 1.0:
-            return
-        self._offset_s = self()
-        self._began_s, self._speed = time.monotonic(), 1.0
-
-
-class Player(Protocol):
-    """Something that plays into the session: a keyboard, the demo, a recorded log."""
-
-    def poll(self, now_s: float) -> Sequence[Event]:
-        """Give the events since the last call, in order."""
-
-    def input_line(self, now_s: float) -> str:
-        """Say in a sentence what is being listened to."""
-
-    def tuning_line(self) -> str:
-        """Say in a sentence which tuning is believed, and why."""
-
-    def inputs(self) -> tuple[str, ...]:
-        """Name the inputs that can be listened to; any thread may ask."""
-
-    def choose(self, name: str) -> None:
-        """Listen to the input of this name, or to a part of it."""
-
-    def is_over(self, now_s: float) -> bool:
-        """Whether nothing more will come by itself."""
-
-    def close(self) -> None:
-        """Let go of everything."""
 
 
 class Coach:
@@ -158,8 +100,8 @@ class Coach:
         self._on_note = on_note
         self._commands: SimpleQueue[Command] = SimpleQueue()
         self._view_maker = ViewMaker()
-        self._tempo = float(DEFAULT_TEMPO)
-        self._headers = Headers()
+        self._page = Page()
+        self._own_files: set[Path] = set()
         self._warning = log.fault or "" if log else ""
         self._notice = ""
         self._handled = 0
@@ -284,7 +226,7 @@ class Coach:
             words = tuple(fault.token for fault in faults)
             self._refuse(command.number, f"{faults[0].sentence}{more}", words)
         else:
-            items = read_tokens(command.text, self.names, now_s, self._tempo)
+            items = read_tokens(command.text, self.names, now_s, self._page.tempo)
             self.take(LineEdited(now_s, start, max(start, stop), items))
 
     def append_text(self, text: str) -> None:
@@ -294,26 +236,24 @@ class Coach:
         """
         self._warning = ""
         try:
-            items = read_tokens(text, self.names, self._clock(), self._tempo)
+            items = read_tokens(text, self.names, self._clock(), self._page.tempo)
         except NoteTextError as error:
             self._warning = str(error)
             return
-        for group in _notes_with_marks(items):
+        for group in notes_with_marks(items):
             n_items = len(self.session.line.items)
             self.take(LineEdited(self._clock(), n_items, n_items, group))
 
     def _save(self, path: Path) -> None:
-        session = self.session
-        headers = replace(self._headers, mode=session.target.slug if session.target else self._headers.mode)
-        tempo = headers.tempo or pace_bpm(session.line)
-        text = write_note_text(headers, session.line.items, self.names, tempo)
-        try:
-            path.parent.mkdir(parents=True, exist_ok=True)
-            path.write_text(text, encoding="utf-8")
-        except OSError as error:
-            raise StorageError(
-                f"{path}: {error.strerror}; the line is still here, save it elsewhere"
-            ) from error
+        """Write the line; a file that is not this line's own is replaced when asked for twice."""
+        if path.exists() and path not in self._own_files:
+            self._own_files.add(path)
+            raise StorageError(f"{path} is there already; save again to replace it, or choose another name")
+        target = self.session.target
+        if target is not None:
+            self._page = replace(self._page, headers=replace(self._page.headers, mode=target.slug))
+        save_line(path, self._page, self.session.line, self.names)
+        self._own_files.add(path)
         self._notice = f"saved as {path}"
 
     def open_text(self, path: Path) -> None:
@@ -325,22 +265,17 @@ class Coach:
             The file cannot be read.
         NoteTextError
             It holds something that is no note text.
+        UnknownModeError
+            Its header names a mode that the pack does not have.
         """
-        try:
-            text = path.read_text(encoding="utf-8-sig")
-        except OSError as error:
-            raise StorageError(f"{path}: {error.strerror}; name a file of note text") from error
-        except UnicodeDecodeError as error:
-            raise StorageError(
-                f"{path}: byte {error.start} is not UTF-8 text; save the file as UTF-8"
-            ) from error
-        read = read_note_text(text, self.names, path.name)
+        page, items = open_line(path, self.names)
+        target = self.session.pack.find(page.headers.mode) if page.headers.mode else None
         now_s = self._clock()
-        if read.headers.mode:
-            self.take(TargetChosen(now_s, self.session.pack.find(read.headers.mode).id))
-        self._headers = read.headers
-        self._tempo = float(read.headers.tempo or DEFAULT_TEMPO)
-        self.take(LineEdited(now_s, 0, len(self.session.line.items), read.items))
+        if target is not None:
+            self.take(TargetChosen(now_s, target.id))
+        self._page = page
+        self._own_files.add(path)
+        self.take(LineEdited(now_s, 0, len(self.session.line.items), items))
 
     # --- the view ---------------------------------------------------------------------------
 
@@ -387,68 +322,6 @@ class Coach:
             if old != new:
                 break
             kept += 1
-        fresh = (item_token(item, self.names, self._tempo) for item in items[kept:])
+        fresh = (item_token(item, self.names, self._page.tempo) for item in items[kept:])
         self._written = (items, (*tokens[:kept], *fresh))
         return self._written[1]
-
-
-def entry_items(line: Line) -> tuple[Item, ...]:
-    """Give the line as the entry shows it: a played note counts one beat, or two where it rests.
-
-    So the entry stays readable, and a token that is edited keeps what the scorer heard in it. Before
-    a breath or a phrase end the rest is said already.
-    """
-    shown: list[Item] = []
-    heard = iter(line.heard)
-    for item, after in zip_longest(line.items, line.items[1:]):
-        if isinstance(item, Note):
-            marked = isinstance(after, Mark)
-            beats = 2.0 if next(heard).rests and not marked else 1.0
-            shown.append(item if item.beats is not None else replace(item, beats=beats))
-        else:
-            shown.append(item)
-    return tuple(shown)
-
-
-def pace_bpm(line: Line) -> float | None:
-    """Give the tempo at which the usual played note takes one beat, or None where none was played."""
-    notes = [item for item in line.items if isinstance(item, Note)]
-    onsets = [note.onset_s for note in notes if note.beats is None]
-    spans = [b - a for a, b in pairwise(onsets) if b > a]
-    if not onsets:
-        return None
-    return float(round(min(max(60 / median(spans), SLOWEST_BPM), FASTEST_BPM))) if spans else DEFAULT_TEMPO
-
-
-def _notes_with_marks(items: Sequence[Item]) -> list[tuple[Item, ...]]:
-    """Cut a run of items before each note, so that every note has what follows it beside it."""
-    groups: list[tuple[Item, ...]] = []
-    for item in items:
-        if isinstance(item, Note) or not groups:
-            groups.append((item,))
-        else:
-            groups[-1] = (*groups[-1], item)
-    return groups
-
-
-def read_final(text: str, names: PitchNames) -> tuple[PitchReading, float | None]:
-    """Read what the player says of the final: a pitch or a perde, ``written`` or ``any``.
-
-    Raises
-    ------
-    UnknownNameError
-        It is none of these.
-    """
-    word = text.strip()
-    if word.lower() in (PitchReading.WRITTEN, PitchReading.ANY):
-        return PitchReading(word.lower()), None
-    try:
-        items = read_tokens(word, names, 0.0, DEFAULT_TEMPO)
-    except NoteTextError:
-        items = ()
-    pitches = [getattr(item, "pitch_cents", None) for item in items]
-    if len(pitches) != 1 or pitches[0] is None:
-        raise UnknownNameError(
-            f"final: found {text!r}, expected one pitch such as A4 or dügâh, or 'written' or 'any'"
-        )
-    return PitchReading.FINAL, pitches[0]

@@ -9,6 +9,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+from melodycoach import DEFAULT_PACK
 from melodycoach.core.note import Mark, Note
 from melodycoach.core.pitch import KEY_CENTS, key_of
 from melodycoach.sources.note_text import read_tokens
@@ -18,7 +19,7 @@ if TYPE_CHECKING:
 
     from melodycoach.core.pitch import PitchNames
 
-PACK = "makam"
+PACK = DEFAULT_PACK
 TEMPO_BPM = 104
 BREATH_S = 1.1
 PHRASE_END_S = 2.7

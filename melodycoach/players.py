@@ -1,12 +1,12 @@
 """What can play into a session: a keyboard, the guided demo, a recorded log.
 
-Each is a `melodycoach.coach.Player`: asked for the events since the last time, it gives them in
+Each is a `Player`: asked for the events since the last time, it gives them in
 order, and it says in a sentence what is being listened to.
 """
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Protocol
 
 from melodycoach.demo import DemoPlayer
 from melodycoach.errors import PortError
@@ -21,6 +21,31 @@ if TYPE_CHECKING:
     from melodycoach.core.pitch import PitchNames
     from melodycoach.sources.event_log import RecordedLog
     from melodycoach.sources.midi_system import MidiSystem
+
+
+class Player(Protocol):
+    """Something that plays into the session: a keyboard, the demo, a recorded log."""
+
+    def poll(self, now_s: float) -> Sequence[Event]:
+        """Give the events since the last call, in order."""
+
+    def input_line(self, now_s: float) -> str:
+        """Say in a sentence what is being listened to."""
+
+    def tuning_line(self) -> str:
+        """Say in a sentence which tuning is believed, and why."""
+
+    def inputs(self) -> tuple[str, ...]:
+        """Name the inputs that can be listened to; any thread may ask."""
+
+    def choose(self, name: str) -> None:
+        """Listen to the input of this name, or to a part of it."""
+
+    def is_over(self, now_s: float) -> bool:
+        """Whether nothing more will come by itself."""
+
+    def close(self) -> None:
+        """Let go of everything."""
 
 
 class Keyboard:

@@ -15,11 +15,12 @@ from typing import TYPE_CHECKING, Any
 import pytest
 
 from melodycoach import app
-from melodycoach.app import Settings, listen, ports_json, ports_text
+from melodycoach.app import Settings, listen, ports
 from melodycoach.core.event import LineEdited, NoteOn, TimePassed
 from melodycoach.core.note import InputKind
 from melodycoach.demo import HAND_OVER, DemoPlayer
 from melodycoach.errors import EventLogError, PortError, StorageError, UnknownModeError
+from melodycoach.report.ports import ports_text
 from melodycoach.screen.command import ReplaceText
 from melodycoach.sources.event_log import RecordedLog, read_event_log
 from melodycoach.sources.midi_system import PortList, PortName
@@ -328,18 +329,18 @@ def test_a_signal_ends_the_program_in_good_order_with_the_log_whole(
 
 
 def test_no_ports_are_listed_with_what_to_do(machine: Machine) -> None:
-    text = ports_text()
+    text = ports_text(ports())
     assert text.startswith("MIDI inputs:\n  none\nMIDI outputs:\n  none\n")
     assert "Plug one in and switch it on" in text
-    assert ports_json() == {"inputs": [], "outputs": [], "problem": ""}
+    assert ports() == {"inputs": [], "outputs": [], "problem": ""}
 
 
 def test_ports_are_listed_with_their_system(machine: Machine) -> None:
     machine.list = PortList((KEYS,), (PortName("Synth 30:0", "ALSA"),))
-    text = ports_text()
+    text = ports_text(ports())
     assert text.startswith("MIDI inputs:\n  Upright 20:0  (ALSA)\nMIDI outputs:\n  Synth 30:0  (ALSA)\n")
     assert "--port NAME" in text
-    assert json.loads(json.dumps(ports_json())) == {
+    assert json.loads(json.dumps(ports())) == {
         "inputs": [{"name": "Upright 20:0", "system": "ALSA"}],
         "outputs": [{"name": "Synth 30:0", "system": "ALSA"}],
         "problem": "",
@@ -348,8 +349,8 @@ def test_ports_are_listed_with_their_system(machine: Machine) -> None:
 
 def test_a_machine_without_midi_says_why(machine: Machine) -> None:
     machine.list = PortList((), (), "no MIDI: nothing answers")
-    assert ports_text().endswith("\n  none\nno MIDI: nothing answers")
-    assert ports_json()["problem"] == "no MIDI: nothing answers"
+    assert ports_text(ports()).endswith("\n  none\nno MIDI: nothing answers")
+    assert ports()["problem"] == "no MIDI: nothing answers"
 
 
 # replay

@@ -4,11 +4,12 @@ from pathlib import Path
 
 import pytest
 
-from melodycoach.coach import REFUSALS_KEPT, Coach, read_final
+from melodycoach.coach import REFUSALS_KEPT, Coach
 from melodycoach.core.event import Event, NoteOff, NoteOn, PitchReading
 from melodycoach.core.note import InputKind, Mark, Note
 from melodycoach.core.session import SessionState, begin
 from melodycoach.errors import UnknownNameError
+from melodycoach.line_text import read_final
 from melodycoach.screen.command import (
     Fresh,
     Open,
@@ -191,7 +192,7 @@ def test_a_line_that_cannot_be_saved_is_kept_and_that_is_said(coach: Coach, tmp_
 @pytest.mark.parametrize(
     ("content", "said"),
     [
-        (None, "No such file or directory; name a file of note text"),
+        (None, "no such file or directory; name a file of note text"),
         (b"\xff\xfe\x00", "byte 0 is not UTF-8 text"),
     ],
 )
@@ -299,3 +300,35 @@ def test_a_comment_typed_into_the_live_line_is_refused_and_not_swallowed(coach: 
     assert view.tokens == ()
     assert view.refusals[0].words == ("#5",)
     assert "a sharp stands behind its letter: F#5" in view.status.warning
+
+
+def test_comments_and_headers_of_a_file_survive_editing_and_saving(coach: Coach, tmp_path: Path) -> None:
+    path = tmp_path / "line.txt"
+    path.write_text(
+        "title: Sketch\ntempo: 60\n\n# first\nG4 A4 # here\nB4-1 , C5 .\n# last\n", encoding="utf-8"
+    )
+    asked(coach, Open(str(path)))
+    asked(coach, ReplaceText(1, 1, "F#4"), Save(str(path)))
+    assert path.read_text(encoding="utf-8") == (
+        "title: Sketch\ntempo: 60\n\n# first\nG4 F#4 A4 # here\nB4-1 , C5 .\n# last\n"
+    )
+
+
+def test_another_file_is_replaced_only_when_asked_for_twice(coach: Coach, tmp_path: Path) -> None:
+    path = tmp_path / "other.txt"
+    path.write_text("G4\n", encoding="utf-8")
+    asked(coach, ReplaceText(0, 0, "A4"))
+    view = asked(coach, Save(str(path), 2))
+    assert view.status.warning == f"{path} is there already; save again to replace it, or choose another name"
+    assert path.read_text(encoding="utf-8") == "G4\n"
+    assert asked(coach, Save(str(path), 3)).status.notice == f"saved as {path}"
+    assert path.read_text(encoding="utf-8") == "A4\n"
+
+
+def test_a_header_with_an_unknown_mode_leaves_the_line_as_it_was(coach: Coach, tmp_path: Path) -> None:
+    path = tmp_path / "line.txt"
+    path.write_text("mode: rasst\nG4\n", encoding="utf-8")
+    asked(coach, ReplaceText(0, 0, "A4"))
+    view = asked(coach, Open(str(path)))
+    assert "did you mean 'rast'" in view.status.warning
+    assert view.tokens == ("A4",)

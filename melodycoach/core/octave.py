@@ -23,11 +23,11 @@ if TYPE_CHECKING:
     from melodycoach.core.note import Heard
     from melodycoach.core.pitch import ToneSystem
 
-ELSEWHERE = 1 / 3
-"""A line lies in another octave when that brings more than this share of its notes into the compass
-of the mode."""
+ELSEWHERE_OCTAVES = 1 / 3
+"""A line lies in another octave when that brings its notes nearer to home by more than this, on
+average."""
 
-EDGE_OCTAVES = 1 / 24
+_OCTAVES = 1 / 24
 """A note so little outside the compass counts as inside: a quarter tone."""
 
 _OCTAVES = (-1, 1, -2, 2, -3, 3)
@@ -60,24 +60,24 @@ def moved_final(mode: Mode, final_units: int, heard: Sequence[Heard], system: To
     Returns
     -------
     int
-        ``final_units``, unless another octave brings more than `ELSEWHERE` of the notes into the
-        compass of the mode; then the final in the octave that brings in most, the nearest such one.
+        ``final_units``, unless the notes lie outside the mode's home, and by more than
+        `ELSEWHERE_OCTAVES` less in another octave, on average; then the final in the octave in which
+        they lie outside least. Home is the octave over the final, and the opening region.
     """
     if not heard:
         return final_units
     size = system.divisions
-    low, high = mode.degrees[0] - EDGE_OCTAVES * size, mode.degrees[-1] + EDGE_OCTAVES * size
+    low, high = min(0, mode.opening[0]), max(size, mode.opening[1])
     above = [system.cents_to_units(note.pitch_cents) - final_units for note in heard]
 
-    def inside(octaves: int) -> int:
-        bottom, top = low + octaves * size, high + octaves * size
-        return sum(bottom <= units <= top for units in above)
+    def away(octaves: int) -> float:
+        return _outside(above, low + octaves * size, high + octaves * size) / len(above)
 
-    here = inside(0)
-    if here >= (1 - ELSEWHERE) * len(above):
+    here = away(0)
+    if here <= ELSEWHERE_OCTAVES * size:
         return final_units
-    best = max(_OCTAVES, key=inside)  # the first of several: the nearest
-    return final_units + best * size if inside(best) - here > ELSEWHERE * len(above) else final_units
+    best = min(_OCTAVES, key=away)  # the first of several: the nearest
+    return final_units + (best * size if here - away(best) > ELSEWHERE_OCTAVES * size else 0)
 
 
 def placed_final(model: ScoringModel, hypothesis: int, heard: Sequence[Heard]) -> int:
@@ -99,9 +99,13 @@ def placed_final(model: ScoringModel, hypothesis: int, heard: Sequence[Heard]) -
     middle = median(above) - sum(mode.opening) / 2
 
     def away(octaves: int) -> tuple[float, float]:
-        bottom, top = low + octaves * size, high + octaves * size
-        outside = sum(max(bottom - units, units - top, 0.0) for units in rests)
+        outside = _outside(rests, low + octaves * size, high + octaves * size)
         return round(outside, 6), abs(middle - octaves * size)
 
     first, last = (round(edge / size) for edge in (min(above), max(above)))
     return final + size * min(range(first - 2, last + 2), key=away)
+
+
+def _outside(places: Sequence[float], low: float, high: float) -> float:
+    """Add up how far places lie outside a region."""
+    return sum(max(low - place, place - high, 0.0) for place in places)

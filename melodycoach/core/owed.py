@@ -11,8 +11,8 @@ A step is *heard* when its degrees sound in order, with these liberties:
 - no degree but the last may end a phrase: a phrase end breaks every step that is under way;
 - the whole step may stand in any octave, the same one for all its degrees; but an opening, a
   register step, a final cadence and a leading tone count only over the final on which the track
-  stands, since their place is what they say (`melodycoach.core.octave` puts that final where a line
-  lies);
+  stands, since their place is what they say, and so does a cadence on the octave of the final
+  (`melodycoach.core.octave` puts the final where a line lies);
 - half, suspended and final cadences are heard only when the line rests on their last degree;
 - a pitch stands for a degree as `melodycoach.core.function` says: within a tolerance of the
   degree as written or as played, by the kind of input. Of a pitch that was written or tuned, the
@@ -40,7 +40,7 @@ FOREIGN_AT_MOST = 2
 """So many notes that are no part of a step may stand between two of its degrees."""
 
 AS_WRITTEN = frozenset({StepKind.OPENING, StepKind.REGISTER, StepKind.FINAL_CADENCE, StepKind.LEADING_TONE})
-"""Kinds of step that count only in the octave in which they are written."""
+"""Kinds of step that count only in the octave in which they are written, over the final."""
 
 RESTING = frozenset({StepKind.HALF_CADENCE, StepKind.SUSPENDED_CADENCE, StepKind.FINAL_CADENCE})
 """Kinds of step that are heard only when the line rests on their last degree."""
@@ -142,7 +142,7 @@ def start_track(mode: Mode, final_units: int, system: ToneSystem) -> StepTrack:
     anywhere: dict[int, list[int]] = {}
     fixed: dict[int, list[int]] = {}
     for number, step in enumerate(mode.steps):
-        by_degree = fixed if step.kind in AS_WRITTEN else anywhere
+        by_degree = fixed if _stays(step, system.divisions) else anywhere
         for place, degree in enumerate(step.degrees):
             by_degree.setdefault(degree, []).append(len(step_at))
             step_at.append(number)
@@ -181,6 +181,14 @@ def start_track(mode: Mode, final_units: int, system: ToneSystem) -> StepTrack:
     )
     n_steps = len(mode.steps)
     return StepTrack(mode, final_units, (None,) * n_steps, (0,) * n_steps, 0, plan)
+
+
+def _stays(step: CharacteristicStep, divisions: int) -> bool:
+    """Say whether a step counts only where it is written.
+
+    So does a cadence on the octave of the final: an octave lower it would be the final cadence.
+    """
+    return step.kind in AS_WRITTEN or (step.kind in RESTING and step.degrees[-1] % divisions == 0)
 
 
 def follow(track: StepTrack, heard: Heard) -> StepTrack:

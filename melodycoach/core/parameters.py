@@ -144,9 +144,10 @@ class ScoringParameters:
         the prior of the modes on the same final.
     announce_lead_nats
         The announced mode follows the one that explains the stretch best when that leads by so much.
-    stretch_power, stretch_at
-        Words for the stretch: its evidence in the change filter is raised to ``stretch_power``, and
-        a mode is then named alone from a probability of ``stretch_at`` on.
+    stretch_power, stretch_at, stretch_other
+        Words for the stretch: its evidence in the change filter is raised to ``stretch_power``; a
+        mode is then named alone from a probability of ``stretch_at`` on, and nothing is said while
+        the mode that leads the whole line has more than ``stretch_other``.
     decided_at, decided_half, decided_ratio
         A leaning is decided at a probability of ``decided_at``, or from ``decided_half`` on when
         it is ``decided_ratio`` times the rival's.
@@ -194,6 +195,7 @@ class ScoringParameters:
     announce_lead_nats: float = 1.0
     stretch_power: float = 0.6
     stretch_at: float = 0.7
+    stretch_other: float = 0.1
     decided_at: float = 0.6
     decided_half: float = 0.5
     decided_ratio: float = 2.0

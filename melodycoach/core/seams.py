@@ -1,14 +1,14 @@
 """How soon a change of mode is noticed: lines spliced from two melodies, and unspliced ones.
 
 The *seam* is where the notes of one melody end and those of another, of another mode, begin. What
-counts is the mode that the change filter announces: whether and when another one takes its place
-after the seam, and how often that happens where there is no seam.
+counts is what the change filter announces: whether and when it says after the seam that the mode has
+changed, and how often it says so where there is no seam; and which mode it then announces.
 
 Conventions
 -----------
 A delay is the number of notes heard after the seam, the announcing one included. A first
-announcement takes no other's place: it is neither a change noticed nor a false alarm. Melodies may
-contain real modulations, so the false alarms are an upper bound.
+announcement is no change, and so is another name for the same stretch: neither is noticed nor a false
+alarm. Melodies may contain real modulations, so the false alarms are an upper bound.
 """
 
 from __future__ import annotations
@@ -40,7 +40,7 @@ class Crossing:
     announced
         Place of the mode announced at the seam, or None.
     left_after
-        Delay until another mode took the place of the one announced at the seam, or None.
+        Delay until a change was announced, or None.
     named_after
         Delay until the mode after the seam was announced, or None.
     """
@@ -59,10 +59,9 @@ def cross(model: ScoringModel, before: Sequence[Heard], after: Sequence[Heard], 
     left_after = named_after = None
     for delay, note in enumerate(after, 1):
         state = advance(model, state, note)
-        now = announced(model, state)
-        if left_after is None and None not in (at_seam, now) and now != at_seam:
+        if left_after is None and state.changed_at == len(before) + delay:
             left_after = delay
-        if named_after is None and now == label_after:
+        if named_after is None and announced(model, state) == label_after:
             named_after = delay
     return Crossing(at_seam, left_after, named_after)
 
@@ -76,9 +75,9 @@ class Excerpt:
     n_notes
         Its length.
     n_changes
-        How often one announced mode took another's place.
+        How often a change was announced.
     changed_late
-        One did after `SIDE_NOTES` notes: a seam there would have been called noticed.
+        One was after `SIDE_NOTES` notes: a seam there would have been called noticed.
     """
 
     n_notes: int
@@ -90,13 +89,10 @@ def hear_excerpt(model: ScoringModel, notes: Sequence[Heard]) -> Excerpt:
     """Hear a line that has no seam."""
     state = start(model)
     changed_at: list[int] = []
-    last: int | None = None
     for number, note in enumerate(notes, 1):
         state = advance(model, state, note)
-        now = announced(model, state)
-        if None not in (last, now) and now != last:
+        if state.changed_at == number:
             changed_at.append(number)
-        last = last if now is None else now
     return Excerpt(len(notes), len(changed_at), any(number > SIDE_NOTES for number in changed_at))
 
 
@@ -109,7 +105,7 @@ class SeamFigures:
     n_seams
         Spliced lines.
     n_noticed
-        Those where another mode took the place of the announced one within `SIDE_NOTES`.
+        Those where a change was announced within `SIDE_NOTES`.
     median_delay
         Of those, in notes; NaN when there are none.
     n_right_before

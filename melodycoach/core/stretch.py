@@ -17,8 +17,6 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from melodycoach.core.change import departure_nats
-
 if TYPE_CHECKING:
     from melodycoach.core.arrays import FloatArray
     from melodycoach.core.model import ScoringModel
@@ -47,38 +45,38 @@ class Stretch:
 def stretch_of(model: ScoringModel, state: ScorerState, leader: int) -> Stretch | None:
     """Say what the newest stretch sounds like, or None where there is nothing to say.
 
-    There is nothing to say while no change has been noticed, while the stretch could be in the
-    leading mode, or while it could be in many modes of several families.
+    There is nothing to say while no change has been noticed, while the stretch may well be in the
+    leading mode, or while it may be in modes of several families.
 
     Parameters
     ----------
     leader
         The hypothesis that leads the line as a whole.
     """
-    change = state.change
+    change, parameters = state.change, model.parameters
     if change.seam_at is None:
         return None
-    nats = change.total - change.base
-    if departure_nats(nats - nats[leader], model.log_prior) < model.parameters.change_nats:
-        return None
-    among = _among(model, nats, change.announced % model.n_modes)
-    if leader % model.n_modes in among:
-        return None
-    families = {model.modes[index].family for index in among}
-    return Stretch(change.seam_at, among, families.pop() if len(families) == 1 else "") if among else None
-
-
-def _among(model: ScoringModel, nats: FloatArray, announced: int) -> tuple[int, ...]:
-    """Give the modes that a stretch may be in, the announced one among them, or none for too many."""
-    parameters = model.parameters
-    powered = model.log_prior + parameters.stretch_power * nats
+    powered = model.log_prior + parameters.stretch_power * (change.total - change.base)
     chance = np.exp(powered - powered.max()).reshape(-1, model.n_modes).sum(axis=0)
     chance /= chance.sum()
-    if chance[announced] >= parameters.stretch_at:
+    among = _among(model, chance, change.announced % model.n_modes)
+    if (
+        not among
+        or leader % model.n_modes in among
+        or chance[leader % model.n_modes] > parameters.stretch_other
+    ):
+        return None
+    families = {model.modes[index].family for index in among}
+    return Stretch(change.seam_at, among, families.pop() if len(families) == 1 else "")
+
+
+def _among(model: ScoringModel, chance: FloatArray, announced: int) -> tuple[int, ...]:
+    """Give the modes that a stretch may be in, the announced one among them, or none for too many."""
+    if chance[announced] >= model.parameters.stretch_at:
         return (announced,)
-    ranked = [int(index) for index in np.argsort(-chance, kind="stable")]
-    two = tuple(ranked[:2])
-    if announced in two and chance[list(two)].sum() >= parameters.among_share:
-        return two
-    family = [index for index in ranked if model.modes[index].family == model.modes[announced].family]
-    return tuple(family) if chance[family].sum() >= parameters.among_share else ()
+    family = model.modes[announced].family
+    ranked = [int(at) for at in np.argsort(-chance, kind="stable") if model.modes[at].family == family]
+    for among in (ranked[:2], ranked):
+        if announced in among and chance[among].sum() >= model.parameters.among_share:
+            return tuple(among)
+    return ()

@@ -138,14 +138,14 @@ class ViewState:
     """Everything that one screen shows.
 
     ``verdict`` is the answer in one sentence ("leaning to Hüseynî", "undecided between A and B").
-    ``now`` is what the last stretch sounds like where that differs from the whole, or empty.
-    ``in_view`` names the mode that owed steps and ladder speak of (the target, else the leading
-    one) and ``rival`` the closest one behind it. ``owed`` holds the steps owed, the best to play
-    next first, then colour that is welcome, then the steps heard, the newest first. ``keyboard_note``
-    says which rivals a plain keyboard cannot separate, or is empty. ``tokens`` is the line as note
-    text, one token an item, which the entry shows. ``theory`` says whose theory it is, ``caution`` to whom it defers.
-    ``handled`` is the number of the newest command carried out or refused, and ``refusals`` are
-    the newest few refusals, oldest first: with them the entry knows what became of its edits.
+    ``now`` is what the last stretch sounds like where that differs from the whole, or empty. ``in_view``
+    names the mode that owed steps and ladder speak of (the target, else the leading one) and ``rival``
+    the closest one behind it. ``owed`` holds the steps owed, the best to play next first, then colour
+    that is welcome, then the steps heard, the newest first. ``keyboard_note`` says which rivals a plain
+    keyboard cannot separate, or is empty. ``tokens`` is the line as note text, one token an item, which
+    the entry shows. ``theory`` says whose theory it is, ``caution`` to whom it defers. ``handled`` is
+    the number of the newest command carried out or refused, and ``refusals`` are the newest few
+    refusals, oldest first: with them the entry knows what became of its edits.
     """
 
     verdict: str

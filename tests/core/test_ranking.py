@@ -10,7 +10,7 @@ from melodycoach.core.mode import CharacteristicStep, Need, StepKind
 from melodycoach.core.model import ScoringModel, build_model
 from melodycoach.core.note import Heard, InputKind
 from melodycoach.core.owed import StepTrack, follow, start_track
-from melodycoach.core.ranking import MOVING_S, NEED_NATS, RESTING_S, placed, rank_owed
+from melodycoach.core.ranking import CORE_NATS, MOVING_S, RESTING_S, rank_owed, step_pitches
 from melodycoach.core.scorer import ScorerState, advance, log_odds, mode_posterior, posterior, start
 from melodycoach.sources.pack_file import load_pack
 
@@ -50,7 +50,7 @@ LINE = "22 31! 22 13 8 0!"
 
 def test_only_owed_steps_are_ranked_and_each_once() -> None:
     state, track = played(FAMILY, "huseyni", LINE)
-    ranked = rank_owed(FAMILY, state, hypothesis(FAMILY, "huseyni"), track, cents(0))
+    ranked = rank_owed(FAMILY, state, hypothesis(FAMILY, "huseyni"), track)
     assert track.heard  # the line has heard some
     assert sorted(owed.step.id for owed in ranked) == sorted(step.id for step in track.owed)
 
@@ -58,7 +58,7 @@ def test_only_owed_steps_are_ranked_and_each_once() -> None:
 def test_the_gain_is_what_the_scorer_says_when_the_step_is_played() -> None:
     state, track = played(FAMILY, "huseyni", LINE)
     h, rival = hypothesis(FAMILY, "huseyni"), hypothesis(FAMILY, "ussak")
-    for owed in rank_owed(FAMILY, state, h, track, cents(0), rival):
+    for owed in rank_owed(FAMILY, state, h, track, rival):
         after = state
         for n, pitch in enumerate(owed.pitches_cents, start=1):
             last = n == len(owed.pitches_cents)
@@ -71,7 +71,7 @@ def test_the_gain_is_what_the_scorer_says_when_the_step_is_played() -> None:
 def test_without_a_rival_the_gain_is_against_all_others() -> None:
     state, track = played(FAMILY, "huseyni", LINE)
     h = hypothesis(FAMILY, "huseyni")
-    first = rank_owed(FAMILY, state, h, track, cents(0))[0]
+    first = rank_owed(FAMILY, state, h, track)[0]
     after = state
     for n, pitch in enumerate(first.pitches_cents, start=1):
         last = n == len(first.pitches_cents)
@@ -84,7 +84,7 @@ def test_without_a_rival_the_gain_is_against_all_others() -> None:
 def test_it_rules_out_the_mode_that_loses_most_probability() -> None:
     state, track = played(FAMILY, "huseyni", LINE)
     h = hypothesis(FAMILY, "huseyni")
-    first = rank_owed(FAMILY, state, h, track, cents(0))[0]
+    first = rank_owed(FAMILY, state, h, track)[0]
     after = state
     for n, pitch in enumerate(first.pitches_cents, start=1):
         last = n == len(first.pitches_cents)
@@ -94,12 +94,31 @@ def test_it_rules_out_the_mode_that_loses_most_probability() -> None:
     assert first.rules_out == int(lost.argmax())
 
 
-def test_gains_fall_but_for_what_need_is_worth() -> None:
+def test_gains_fall_but_for_what_core_is_worth_and_colour_comes_last() -> None:
     state, track = played(FAMILY, "huseyni", "0 8 13")
-    ranked = rank_owed(FAMILY, state, hypothesis(FAMILY, "huseyni"), track, cents(13))
-    worth = [owed.gain_nats + NEED_NATS[owed.step.need] for owed in ranked]
-    assert worth == sorted(worth, reverse=True)
-    assert len({owed.step.need for owed in ranked}) > 1
+    ranked = rank_owed(FAMILY, state, hypothesis(FAMILY, "huseyni"), track)
+    places = [
+        (
+            owed.step.need is Need.COLOUR,
+            -owed.gain_nats - (CORE_NATS if owed.step.need is Need.CORE else 0),
+        )
+        for owed in ranked
+    ]
+    assert places == sorted(places)
+    assert {owed.step.need for owed in ranked} == set(Need)
+
+
+def test_colour_comes_after_what_is_owed_even_if_it_gains_more() -> None:
+    steps = (
+        CharacteristicStep("colour", KIND.COLOUR_INTERVAL, Need.COLOUR, (31, 39, 31)),
+        CharacteristicStep("usual", KIND.COLOUR_INTERVAL, Need.USUAL, (5, 17)),
+    )
+    mode = PACK.find("huseyni")
+    odd = type(mode)(**{**{k: v for k, v in vars(mode).items() if k not in vars(type(mode))}, "steps": steps})
+    track = start_track(odd, 0, PACK.system)
+    ranked = rank_owed(FAMILY, start(FAMILY), hypothesis(FAMILY, "huseyni"), track)
+    assert [owed.step.id for owed in ranked] == ["usual", "colour"]
+    assert ranked[0].gain_nats < 0 < ranked[1].gain_nats  # 5 17 is the second of Hicaz: common practice
 
 
 def test_a_core_step_stands_before_a_colour_of_the_same_notes() -> None:
@@ -112,7 +131,7 @@ def test_a_core_step_stands_before_a_colour_of_the_same_notes() -> None:
         **{**{k: v for k, v in vars(mode).items() if k not in vars(type(mode))}, "steps": steps}
     )
     track = start_track(twin, 0, PACK.system)
-    ranked = rank_owed(FAMILY, start(FAMILY), hypothesis(FAMILY, "huseyni"), track, cents(22))
+    ranked = rank_owed(FAMILY, start(FAMILY), hypothesis(FAMILY, "huseyni"), track)
     assert [owed.step.id for owed in ranked] == ["core", "usual", "colour"]
     assert len({owed.gain_nats for owed in ranked}) == 1
 
@@ -121,7 +140,7 @@ def test_a_target_that_does_not_lead_gains_on_the_leading_mode() -> None:
     state, track = played(FAMILY, "huseyni", "22 31! 39 44 39 31! 35 31 22 13! 8 0!")
     h = hypothesis(FAMILY, "ussak")
     track = start_track(PACK.find("ussak"), 0, PACK.system)
-    first = rank_owed(FAMILY, state, h, track, cents(0))[0]
+    first = rank_owed(FAMILY, state, h, track)[0]
     assert first.gain_nats > 0
     assert first.rules_out == hypothesis(FAMILY, "huseyni")
 
@@ -130,10 +149,7 @@ def test_the_end_of_a_phrase_is_not_held_against_what_follows() -> None:
     open_end, track = played(FAMILY, "huseyni", LINE)
     ended, _ = played(FAMILY, "huseyni", LINE.removesuffix("!") + ".")
     h = hypothesis(FAMILY, "huseyni")
-    gains = [
-        [owed.gain_nats for owed in rank_owed(FAMILY, state, h, track, cents(0))]
-        for state in (open_end, ended)
-    ]
+    gains = [[owed.gain_nats for owed in rank_owed(FAMILY, state, h, track)] for state in (open_end, ended)]
     assert gains[0] == pytest.approx(gains[1])
 
 
@@ -148,8 +164,7 @@ def test_a_plain_keyboard_gains_nothing_by_tuning() -> None:
     )
     track = start_track(twin, -9, PACK.system)
     gain = [
-        rank_owed(model, start(model), h, track, cents(-9), kind=kind)[0].gain_nats
-        for kind in (TYPED, InputKind.KEYS)
+        rank_owed(model, start(model), h, track, kind=kind)[0].gain_nats for kind in (TYPED, InputKind.KEYS)
     ]
     assert gain[0] > gain[1] + 0.5
 
@@ -157,7 +172,7 @@ def test_a_plain_keyboard_gains_nothing_by_tuning() -> None:
 def test_a_mode_without_competitors_has_nothing_to_gain() -> None:
     model = build_model(PACK, (PACK.find("rast"),))
     state, track = played(model, "rast", "-9 0 8")
-    ranked = rank_owed(model, state, 0, track, cents(0))
+    ranked = rank_owed(model, state, 0, track)
     assert {owed.gain_nats for owed in ranked} == {0.0}
     assert {owed.rules_out for owed in ranked} == {None}
 
@@ -170,7 +185,7 @@ def test_any_pitch_ranks_against_other_finals_too() -> None:
     h = int(posterior(model, state).argmax())
     mode = model.modes[model.mode_index[h]]
     track = start_track(mode, int(model.final_units[h]), PACK.system)
-    ranked = rank_owed(model, state, h, track, cents(0))
+    ranked = rank_owed(model, state, h, track)
     assert len(ranked) == len(mode.steps)
     assert ranked[0].rules_out == 1 - model.mode_index[h]
 
@@ -178,40 +193,15 @@ def test_any_pitch_ranks_against_other_finals_too() -> None:
 HUSEYNI = PACK.find("huseyni")
 
 
-def at(kind: StepKind, degrees: tuple[int, ...], recent: float, final: int = 0) -> list[float]:
-    step = CharacteristicStep("s", kind, Need.CORE, degrees)
-    pitches = placed(step, HUSEYNI, final, PACK.system, cents(recent))
-    return [round(PACK.system.cents_to_units(pitch), 6) for pitch in pitches]
+@pytest.mark.parametrize("line", ["0 8 13 22!", "-18 -22!", "53 61 66 75!", "31"])
+def test_every_step_is_played_where_it_is_written_however_high_or_low_the_line_ended(line: str) -> None:
+    state, track = played(FAMILY, "huseyni", line)
+    for owed in rank_owed(FAMILY, state, hypothesis(FAMILY, "huseyni"), track):
+        units = [PACK.system.cents_to_units(pitch) for pitch in owed.pitches_cents]
+        assert units == pytest.approx(owed.step.degrees)  # the final is A4, zero
 
 
-@pytest.mark.parametrize(
-    ("kind", "degrees", "recent", "units"),
-    [
-        (KIND.HALF_CADENCE, (39, 31), 20, [39, 31]),
-        (KIND.COLOUR_INTERVAL, (13, 22), 70, [66, 75]),  # tiz çargâh, tiz nevâ: above the octave
-        (KIND.COLOUR_INTERVAL, (44, 53), -5, [-9, 0]),  # rast, dügâh: below the octave
-        (KIND.COLOUR_INTERVAL, (13, 27), 70, [13, 27]),  # the mode has no 80
-        (KIND.OPENING, (22, 31), 80, [22, 31]),
-        (KIND.REGISTER, (44, 53), -9, [44, 53]),
-        (KIND.FINAL_CADENCE, (13, 8, 0), 60, [13, 8, 0]),
-        (KIND.LEADING_TONE, (0, -9, 0), 60, [0, -9, 0]),
-    ],
-)
-def test_a_step_is_placed_where_it_would_be_played(
-    kind: StepKind, degrees: tuple[int, ...], recent: float, units: list[float]
-) -> None:
-    assert at(kind, degrees, recent) == units
-
-
-def test_a_line_that_lives_octaves_away_takes_the_cadence_with_it() -> None:
-    low, high = HUSEYNI.degrees[0], HUSEYNI.degrees[-1]
-    assert at(KIND.FINAL_CADENCE, (13, 8, 0), low - 13) == [13, 8, 0]  # 53 // 4 = 13
-    assert at(KIND.FINAL_CADENCE, (13, 8, 0), low - 14) == [-40, -45, -53]
-    assert at(KIND.FINAL_CADENCE, (13, 8, 0), high + 14) == [66, 61, 53]
-    assert at(KIND.FINAL_CADENCE, (13, 8, 0), low - 14 - 53) == [13 - 106, 8 - 106, -106]
-    assert at(KIND.COLOUR_INTERVAL, (13, 27), low - 14) == [13 - 53, 27 - 53]
-    assert at(KIND.OPENING, (22, 31), low - 14) == [22, 31]
-
-
-def test_a_step_is_placed_over_the_final_that_is_given() -> None:
-    assert at(KIND.HALF_CADENCE, (39, 31), 10, final=-9) == [30, 22]
+def test_a_step_stands_over_the_final_that_is_given_and_in_the_octave_that_is_asked_for() -> None:
+    step = CharacteristicStep("s", KIND.HALF_CADENCE, Need.CORE, (39, 31))
+    assert step_pitches(step, -9, PACK.system) == pytest.approx((cents(30), cents(22)))
+    assert step_pitches(step, 0, PACK.system, octaves=-1) == pytest.approx((cents(-14), cents(-22)))

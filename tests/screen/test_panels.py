@@ -83,7 +83,7 @@ def test_steps_are_grouped_by_need_with_notes_and_keys_where_there_is_room(
         "    written C5 B4-1 A4 G4 A4   keys C5 B4 A4 G4 A4",
         "core",
     ]
-    assert [line for line in lines if not line.startswith((" ", "○", "✓", "▸"))] == [
+    assert [line for line in lines if not line.startswith((" ", "○", "+", "✓", "▸"))] == [
         "core",
         "usual",
         "colour",
@@ -97,7 +97,7 @@ def test_with_little_room_owed_steps_come_before_heard_ones_but_leave_them_a_row
 ) -> None:
     lines = texts(draw_owed(views["decided"], 42, 8, UNICODE))
     assert len(lines) == 8
-    assert [line[0] for line in lines[3:]] == ["○", "○", "○", "○", "✓"]
+    assert [line[0] for line in lines[3:]] == ["○", "○", "○", "+", "✓"]
     assert "core +1.1" in lines[3]
 
 
@@ -127,8 +127,29 @@ def test_long_notes_and_keys_take_a_row_each(views: Mapping[str, ViewState]) -> 
 def test_once_every_step_is_heard_the_area_says_so(views: Mapping[str, ViewState]) -> None:
     owed = tuple(replace(row, heard_at=3) for row in views["decided"].owed)
     lines = texts(draw_owed(replace(views["decided"], owed=owed), 60, 4, UNICODE))
-    assert lines[0] == "✓ every step of Hüseynî is heard"
+    assert lines[0] == "✓ every step that Hüseynî needs is heard"
     assert len(lines) == 4
+
+
+def test_colour_has_a_sign_of_its_own_and_is_never_put_first_nor_counted(
+    views: Mapping[str, ViewState],
+) -> None:
+    view = views["decided"]
+    owed = tuple(row if row.is_colour else replace(row, heard_at=3) for row in view.owed)
+    view = replace(view, owed=tuple(replace(row, gain_nats=7.8) if row.is_colour else row for row in owed))
+    lines = texts(draw_owed(view, 60, 20, UNICODE))
+    assert lines[0] == "✓ every step that Hüseynî needs is heard"
+    assert not any("▸" in line or "○" in line for line in lines)
+    assert [line[:21] for line in lines if "+7.8" in line] == ["+ gerdâniye muhayyer "]
+    assert owed_title(view, UNICODE)[1] == "7 of 7 heard"
+    assert texts(draw_owed(view, 60, 1, UNICODE)) == lines[:1]
+
+
+def test_steps_keep_the_order_of_the_view(views: Mapping[str, ViewState]) -> None:
+    view = views["decided"]
+    reordered = replace(view, owed=(view.owed[2], view.owed[0], *view.owed[3:]))
+    lines = texts(draw_owed(reordered, 80, 30, UNICODE))
+    assert lines[0].startswith("▸ play next: suspended cadence on çargâh")
 
 
 def test_before_the_first_note_the_area_says_what_it_is_for(views: Mapping[str, ViewState]) -> None:
@@ -145,7 +166,7 @@ def test_a_need_that_the_pack_makes_up_gets_a_heading_too(views: Mapping[str, Vi
 
 
 def test_titles_name_the_mode_the_aim_and_the_rival(views: Mapping[str, ViewState]) -> None:
-    assert owed_title(views["decided"], UNICODE) == ("owed · Hüseynî", "3 of 8 heard")
+    assert owed_title(views["decided"], UNICODE) == ("owed · Hüseynî", "3 of 7 heard")
     assert owed_title(views["target"], UNICODE)[0] == "owed · Sultânîyegâh (your aim)"
     assert owed_title(views["nothing"], UNICODE) == ("owed", "")
     assert why_title(views["decided"]) == "why Hüseynî, not Muhayyer"
