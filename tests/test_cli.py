@@ -80,7 +80,7 @@ def test_help_loads_nothing_heavy() -> None:
         (["listen", "--target", "rasst"], "no mode 'rasst' in pack 'makam'; did you mean 'rast'?"),
         (["listen", "--only", "rast,nothing"], "no mode 'nothing'"),
         (["listen", "--final", "H4"], "final: found 'H4', expected one pitch such as A4 or dügâh"),
-        (["listen", "nowhere.txt", "--plain", "--no-log"], "nowhere.txt: No such file or directory"),
+        (["listen", "nowhere.txt", "--plain", "--no-log"], "nowhere.txt: no such file or directory"),
         (["listen", "--replay", "nowhere.jsonl"], "nowhere.jsonl"),
         (["listen", "--fast"], "--fast goes with --replay"),
         (["listen", "a.txt", "--replay", "b.jsonl"], "one line to begin with at a time"),
