@@ -28,6 +28,7 @@ from melodycoach.core.note import InputKind
 from melodycoach.core.parameters import ScoringParameters
 from melodycoach.core.scorer import announced, leading, log_odds, mode_posterior
 from melodycoach.core.session import SessionState, apply, begin
+from melodycoach.core.stretch import Stretch
 from melodycoach.screen.view import Status, ViewState
 from melodycoach.screen.view_of import (
     LEANINGS_SHOWN,
@@ -137,7 +138,11 @@ def test_a_turn_is_said_with_its_note_while_the_whole_line_still_leans_elsewhere
     session = turned()
     view = view_of(session)
     assert view.leanings[0].name == "Hüseynî"
-    assert view.now == f"right now it sounds like Hicaz, since note {len(session.line.heard)}"
+    seam = session.line.states[-1].change.seam_at
+    assert view.now == f"right now it sounds like Hicaz, since note {seam}"
+    # the phrases in Hüseynî have 33 notes; the last of them are in Hicaz as well
+    assert seam is not None
+    assert 30 <= seam <= 34
 
 
 def test_nothing_is_said_of_now_while_it_agrees_with_the_whole_line() -> None:
@@ -146,13 +151,33 @@ def test_nothing_is_said_of_now_while_it_agrees_with_the_whole_line() -> None:
     assert view_of(session).now == ""
 
 
-def test_what_was_announced_first_has_no_note_at_which_it_changed() -> None:
+def test_before_a_change_is_noticed_nothing_is_said_of_now() -> None:
     # on plain keys the filter, which does not know what ends a phrase, hears Hüseynî; the cadence
     # on dügâh speaks for Uşşak
     session = session_of("E5~ D5~ C5~ B4~ A4~ .", "huseyni", "ussak")
     view = view_of(session)
+    assert announced(session.model, session.line.states[-1]) == 0
     assert view.leanings[0].name == "Uşşak"
-    assert view.now == "right now it sounds like Hüseynî"
+    assert view.now == ""
+
+
+@pytest.mark.parametrize(
+    ("n_modes", "said"),
+    [
+        (1, "right now it sounds like {0}, since note 14"),
+        (2, "right now it sounds like {0} or {1}, since note 14"),
+        (3, "right now it sounds like one of the hicaz family, since note 14"),
+    ],
+)
+def test_a_stretch_is_called_by_one_name_by_two_or_by_its_family(
+    monkeypatch: pytest.MonkeyPatch, n_modes: int, said: str
+) -> None:
+    session = session_of("A4 B4-1 C5")
+    places = tuple(i for i, mode in enumerate(session.model.modes) if mode.family == "hicaz family")[:n_modes]
+    stretch = Stretch(14, places, "hicaz family")
+    monkeypatch.setattr("melodycoach.screen.view_of.stretch_of", lambda model, state, leader: stretch)
+    names = [session.model.modes[place].name for place in places]
+    assert view_of(session).now == said.format(*names)
 
 
 # the leanings
