@@ -27,8 +27,8 @@ ELSEWHERE_OCTAVES = 1 / 3
 """A line lies in another octave when that brings its notes nearer to home by more than this, on
 average."""
 
-_OCTAVES = 1 / 24
-"""A note so little outside the compass counts as inside: a quarter tone."""
+MIDDLE_SHARE = 1 / 4
+"""With any pitch as the final: the weight of the line's middle beside that of where it rests."""
 
 _OCTAVES = (-1, 1, -2, 2, -3, 3)
 
@@ -83,11 +83,11 @@ def moved_final(mode: Mode, final_units: int, heard: Sequence[Heard], system: To
 def placed_final(model: ScoringModel, hypothesis: int, heard: Sequence[Heard]) -> int:
     """Give where a hypothesis stands, in units from A4, in the octave that a line is in.
 
-    A hypothesis of `PitchReading.ANY` has a final but no octave. It is put where the pitches on
-    which the line rests (all of them, until it rests) lie nearest to its home, which holds the
-    final and the opening region and what is between them. Where octaves are alike in that, the
-    middle of the opening region comes nearest to the middle note of the line. Any other hypothesis
-    stays where it is written.
+    A hypothesis of `PitchReading.ANY` has a final but no octave. It is put where two distances are
+    smallest together: how far the pitches on which the line rests (all of them, until it rests) lie
+    outside its home, on average; and `MIDDLE_SHARE` of how far the middle note of the line lies from
+    the middle of the opening region. Home holds the final, the opening region, and what is between
+    them. Any other hypothesis stays where it is written.
     """
     final = int(model.final_units[hypothesis])
     if model.reading is not PitchReading.ANY or not heard:
@@ -98,9 +98,9 @@ def placed_final(model: ScoringModel, hypothesis: int, heard: Sequence[Heard]) -
     low, high = min(0, mode.opening[0]), max(0, mode.opening[1])
     middle = median(above) - sum(mode.opening) / 2
 
-    def away(octaves: int) -> tuple[float, float]:
-        outside = _outside(rests, low + octaves * size, high + octaves * size)
-        return round(outside, 6), abs(middle - octaves * size)
+    def away(octaves: int) -> float:
+        outside = _outside(rests, low + octaves * size, high + octaves * size) / len(rests)
+        return outside + MIDDLE_SHARE * abs(middle - octaves * size)
 
     first, last = (round(edge / size) for edge in (min(above), max(above)))
     return final + size * min(range(first - 2, last + 2), key=away)

@@ -192,7 +192,7 @@ class ScoringParameters:
     change_notes: int = 4
     change_window: int = 64
     same_final_nats: float = 1.1
-    announce_lead_nats: float = 1.0
+    announce_lead_nats: float = 3.0
     stretch_power: float = 0.6
     stretch_at: float = 0.7
     stretch_other: float = 0.1

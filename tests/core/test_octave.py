@@ -97,6 +97,7 @@ def final_of(model: ScoringModel, mode: Mode, final: int) -> int:
         (HUSEYNI, "0 8 13 8 0!"),
         (HUSEYNI, "8 0! 8 13 22 31"),
         (MUHAYYER, "53 61 53!"),  # it opens on the octave and may rest there
+        (MUHAYYER, HIGH_IN_MUHAYYER),
         (MUHAYYER, MUHAYYER_LINE),
     ],
 )

@@ -132,6 +132,35 @@ def test_a_whole_step_may_stand_in_any_octave(octave: int) -> None:
     assert heard_at(one_step(13, 22), moved) == 2
 
 
+@pytest.mark.parametrize(
+    ("kind", "degrees"),
+    [
+        (KIND.FINAL_CADENCE, (13, 8, 0)),
+        (KIND.LEADING_TONE, (8, 0, -9, 0)),
+        (KIND.HALF_CADENCE, (61, 53)),  # a dominant an octave over the final: lower, it would be the final
+    ],
+)
+def test_a_step_to_the_final_or_its_octave_counts_only_where_it_is_written(
+    kind: StepKind, degrees: tuple[int, ...]
+) -> None:
+    mode = one_step(*degrees, kind=kind)
+
+    def line(octave: int) -> str:
+        return " ".join(str(degree + 53 * octave) for degree in degrees) + "!"
+
+    assert heard_at(mode, line(0)) == len(degrees)
+    assert [heard_at(mode, line(octave)) for octave in (-2, -1, 1, 2)] == [None] * 4
+    assert heard_at(mode, line(-1), final=-53) == len(degrees)
+
+
+@pytest.mark.parametrize("octave", [-2, 0, 1])
+@pytest.mark.parametrize("kind", [TYPED, InputKind.KEYS, InputKind.RECORDED])
+def test_the_track_knows_in_which_octave_a_step_was_heard(octave: int, kind: InputKind) -> None:
+    line = f"{13 + 53 * octave} {22 + 53 * octave}!"
+    assert track(one_step(13, 22), line, kind).heard_octave == (octave,)
+    assert track(one_step(13, 22), line.split()[0], kind).heard_octave == (0,)
+
+
 def test_the_degrees_of_a_step_stand_in_one_octave() -> None:
     assert heard_at(one_step(13, 22), "13 75 66") is None
     assert heard_at(one_step(13, 22), "13 75 22") == 3  # the foreign note is 22 in another octave

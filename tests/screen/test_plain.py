@@ -108,3 +108,15 @@ def test_settings_input_and_warnings_are_said_when_they_change(views: Mapping[st
 def test_a_line_stays_without_next_step_once_all_are_heard(views: Mapping[str, ViewState]) -> None:
     owed = (OwedRow("half cadence", "core", ("eviç",), ("F#5",), ("F#5",), heard_at=2),)
     assert "next:" not in plain_line(replace(views["decided"], owed=owed), None)
+
+
+def test_the_next_step_is_the_first_one_owed_and_colour_is_only_welcome(
+    views: Mapping[str, ViewState],
+) -> None:
+    view = views["decided"]
+    loud = tuple(replace(row, gain_nats=7.8) if row.is_colour else row for row in view.owed)
+    assert "; next: final cadence on dügâh (karar)," in plain_line(replace(view, owed=loud), None)
+    done = tuple(row if row.is_colour else replace(row, heard_at=1) for row in view.owed)
+    assert "; welcome: register: up to muhayyer, gerdâniye muhayyer" in plain_line(
+        replace(view, owed=done), None
+    )

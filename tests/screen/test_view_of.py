@@ -156,7 +156,9 @@ def test_before_a_change_is_noticed_nothing_is_said_of_now() -> None:
     # on dügâh speaks for Uşşak
     session = session_of("E5~ D5~ C5~ B4~ A4~ .", "huseyni", "ussak")
     view = view_of(session)
-    assert announced(session.model, session.line.states[-1]) == 0
+    now = announced(session.model, session.line.states[-1])
+    assert now is not None
+    assert session.model.modes[now].name == "Hüseynî"
     assert view.leanings[0].name == "Uşşak"
     assert view.now == ""
 
