@@ -259,7 +259,7 @@ def _place(known: Balance, note: Heard) -> _Place:
     where = [
         final + degree for final, degree in zip(known.finals, degrees, strict=True) if degree is not None
     ]
-    units_named = min(where, key=lambda unit: abs(unit - units_heard), default=round(units_heard))
+    units_named = next(iter(where), round(units_heard))
     keys = [DegreeKey(degrees[0], degrees[1], units_named, rests) for rests in (False, True)]
     place = _Place(keys[0], keys[1], RegisterKey(inside[0], inside[1]), register_nats)
     known._places[at] = place

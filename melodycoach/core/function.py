@@ -100,6 +100,18 @@ def find_degree(
     return degree if away <= tolerance_units(kind, system) else None
 
 
+def meant_units(
+    mode: Mode, final_units: int, pitch_cents: float, kind: InputKind, system: ToneSystem
+) -> float:
+    """Give where a pitch is meant to lie, in units from A4.
+
+    A key of a plain keyboard stands for every pitch near it: it means the degree of the mode that
+    lies on it. Any other pitch, and a key on which the mode has none, means itself.
+    """
+    degree = find_degree(mode, final_units, pitch_cents, kind, system) if kind is InputKind.KEYS else None
+    return system.cents_to_units(pitch_cents) if degree is None else float(final_units + degree)
+
+
 def function_of(mode: Mode, degree: int | None, divisions: int) -> Function:
     """Say what a placed degree does in its mode; None stands for a pitch outside the mode.
 

@@ -11,7 +11,7 @@ from typing import TYPE_CHECKING, NamedTuple
 from melodycoach.core.change import NONE
 from melodycoach.core.event import PitchReading
 from melodycoach.core.evidence import Balance, balance
-from melodycoach.core.function import Function, function_of
+from melodycoach.core.function import Function, function_of, meant_units
 from melodycoach.core.mode import Mode, Need
 from melodycoach.core.note import InputKind, Mark, Note
 from melodycoach.core.octave import moved_final, standing_final
@@ -303,12 +303,14 @@ def _line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[Li
         marks = [item for item in items[at + 1 : until] if isinstance(item, Mark)]
         off = off_mode(judge, stands_on, note, system)
         wrong, mend = off_mode_words(off, judge, names) if off is not None else ("", "")
+        height = meant_units(judge, stands_on, note.pitch_cents, note.kind, system)
+        cents = system.units_to_cents(height)
         rows.append(
             LineNote(
                 number=number + 1,
-                height=round(system.cents_to_units(note.pitch_cents), 2),
-                name=names.name(note.pitch_cents),
-                written=str(names.spell(note.pitch_cents)),
+                height=round(height, 2),
+                name=names.name(cents),
+                written=str(names.spell(cents)),
                 length_s=note.length_s,
                 rests=note.rests,
                 off_mode=wrong,

@@ -8,12 +8,14 @@ from melodycoach.core.function import (
     Function,
     find_degree,
     function_of,
+    meant_units,
     nearest_degree,
     tolerance_units,
 )
 from melodycoach.core.mode import Course, Mode
 from melodycoach.core.note import InputKind
 from melodycoach.core.pitch import COMMAS_53, SEMITONES_12, key_of
+from melodycoach.sources.pack_file import load_pack
 
 TYPED, KEYS, RECORDED = InputKind.TYPED, InputKind.KEYS, InputKind.RECORDED
 
@@ -151,3 +153,19 @@ def test_an_octave_that_is_a_dominant_is_no_final() -> None:
     upper = mode(dominants=(53, 31))
     assert function_of(upper, 53, 53) is Function.DOMINANT
     assert function_of(upper, 0, 53) is Function.FINAL
+
+
+def test_a_plain_key_means_the_degree_of_the_mode_that_lies_on_it() -> None:
+    # common practice: segâh is a comma under the B key's bûselik; Uşşak has segâh, Bûselik has bûselik
+    pack = load_pack("makam")
+    b4 = 7100.0
+    for slug, units in (("ussak", 8), ("buselik", 9)):
+        makam = pack.find(slug)
+        assert meant_units(makam, makam.final_units, b4, InputKind.KEYS, pack.system) == units
+    rast = pack.find("rast")
+    assert meant_units(rast, rast.final_units, b4 + 3.8, InputKind.TYPED, pack.system) == pytest.approx(
+        9, abs=0.01
+    )
+    assert meant_units(rast, rast.final_units, 7000.0, InputKind.KEYS, pack.system) == pytest.approx(
+        100 / (1200 / 53)
+    )

@@ -29,8 +29,10 @@ HUSEYNI = (
 )
 KARCIGAR = (
     "A4 B4-1 C5 D5:2 , Eb5+1 D5 Eb5+1 F#5 G5 F#5 Eb5+1 D5:2 , D5 Eb5+1 D5 C5 B4-1 A4:3 .",
-    "D5:2 Eb5+1 F#5 G5 F#5 Eb5+1 D5:2 , Eb5+1 F#5 G5:2 F#5 Eb5+1 D5 Eb5+1 D5:3 , "
-    "D5 Eb5+1 D5 C5 B4-1 C5 B4-1 A4:3 .",
+    (
+        "D5:2 Eb5+1 F#5 G5 F#5 Eb5+1 D5:2 , Eb5+1 F#5 G5:2 F#5 Eb5+1 D5 Eb5+1 D5:3 , "
+        "D5 Eb5+1 D5 C5 B4-1 C5 B4-1 A4:3 ."
+    ),
 )
 SABA = (
     "A4 B4-1 C5:2 Db5 C5 B4-1 C5:3 , C5 Db5 C5 B4-1 A4 B4-1 C5:2 Db5 C5 B4-1 A4:3 .",
@@ -39,8 +41,10 @@ SABA = (
 HICAZ = ("A4 Bb4+1 C#5 D5 C#5 Bb4+1 A4:2 , A4 Bb4+1 C#5 D5:2 C#5 Bb4+1 A4:3 .",)
 BESTENIGAR = (
     "A4 B4-1 C5:2 Db5 C5 B4-1 A4 , C5 Db5 C5:2 B4-1 A4:2 , C5 B4-1 A4 G4 A4 G4 F#4:3 .",
-    "C5:2 Db5 C5 B4-1 C5 Db5 E5 Db5 C5:2 , Db5 C5 B4-1 A4 B4-1 C5 B4-1 A4:2 , "
-    "A4 B4-1 A4 G4 A4 G4 F#4:3 . A4 G4 F#4 G4 A4 B4-1 C5 B4-1 A4 G4 F#4:3 .",
+    (
+        "C5:2 Db5 C5 B4-1 C5 Db5 E5 Db5 C5:2 , Db5 C5 B4-1 A4 B4-1 C5 B4-1 A4:2 , "
+        "A4 B4-1 A4 G4 A4 G4 F#4:3 . A4 G4 F#4 G4 A4 B4-1 C5 B4-1 A4 G4 F#4:3 ."
+    ),
 )
 
 
