@@ -134,6 +134,16 @@ def test_a_seam_is_looked_for_among_the_last_notes_only() -> None:
     assert (state.changed_at, state.seam_at) == (94, 31)
 
 
+def test_many_small_doubts_do_not_unseat_a_mode_that_is_much_likelier_than_each() -> None:
+    # fifty rivals with 5.2 nats each: ln(.1 e^5.2) = 2.9, but each one alone ln(.002) + 5.2 = -1
+    prior = np.log([0.9] + [0.1 / 50] * 50)
+    field = Field(51, prior, np.arange(51))
+    state = run(start_change(prior), [[3.0] + [0.0] * 50] * 3, field=field)
+    state = run(state, [[0.0] + [1.3] * 50] * 4, first=4, field=field)
+    assert departure_nats(state.gain[1:], prior[1:]) > PARAMETERS.change_nats
+    assert (state.announced, state.changed_at) == (0, None)
+
+
 def test_gains_count_by_their_prior() -> None:
     # ln(.5 e^2 + .5 e^0) = ln 4.19
     assert departure_nats(np.array([2.0, 0.0]), np.log([0.5, 0.5])) == pytest.approx(np.log(4.1945), abs=1e-4)

@@ -189,4 +189,4 @@ def test_on_clean_spliced_lines_the_whole_pack_gives_few_wrong_words() -> None:
     assert n_said >= 300
     assert len(wrong) <= 0.03 * n_said
     # the one that lasts: Hicaz on dügâh after Nihavend on rast has the notes of Nikriz on rast
-    assert len({note for before, after, note in wrong if (before, after) != ("nihavend", "hicaz")}) <= 3
+    assert sum((before, after) != ("nihavend", "hicaz") for before, after, _ in wrong) <= 5
