@@ -1,7 +1,7 @@
 """The guided demo: a line of our own, played as real MIDI bytes into the live path.
 
 The line was composed for this program and is nobody's repertoire. It opens in Hüseynî, comes down
-to its final, sounds one note that the makam does not have, and turns to Hicaz.
+to its final, sounds one note that the makam does not have, and turns to the hicaz family.
 """
 
 from __future__ import annotations
@@ -56,11 +56,11 @@ STAGES = (
     ),
     Stage(
         "one note that Hüseynî does not have: see its mark and the perde that mends it",
-        "E5 D5 C5 D5 E5:2 D5 C#5 D5 E5:2 ,",
+        "E5 D5 C5 Bb4 C5 D5 E5:2 D5 E5 F#5 E5:2 ,",
     ),
     Stage(
-        "the line turns to Hicaz on the same karar: watch the change being noticed",
-        "D5 E5 D5 C#5 Bb4+1 A4:2 Bb4+1 C#5 D5:3 , D5 E5 F#5 G5 F5 E5 D5:3 , "
+        "the line turns to the hicaz family on the same karar: watch it being noticed",
+        "D5 C#5 Bb4+1 A4 Bb4+1 C#5 D5:3 , D5 E5 F#5 G5 F5 E5 D5:3 , "
         "D5 C#5 Bb4+1 C#5 D5:2 C#5 Bb4+1 A4:2 G4 A4:3 .",
     ),
 )

@@ -124,8 +124,8 @@ def test_a_note_breaks_the_mode_and_its_mend_is_named(views: list[ViewState]) ->
     before = stage_views(views, 1)[-1]
     assert not any(note.off_mode for note in before.line)
     off = [note for note in stage_views(views, 2)[-1].line if note.off_mode]
-    assert [note.name for note in off] == ["nim hicaz"]
-    assert off[0].mend == "çargâh"
+    assert [note.name for note in off] == ["kürdî"]
+    assert off[0].mend == "segâh"
 
 
 def test_the_turn_to_another_makam_is_noticed(views: list[ViewState]) -> None:

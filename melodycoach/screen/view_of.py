@@ -234,6 +234,10 @@ def _owed_row(session: SessionState, track: StepTrack, index: int, gain_nats: fl
     )
 
 
+SHORTEST_STRETCH = 8
+"""Notes that a change of mode has to last before it counts as one when another follows."""
+
+
 class Judge(NamedTuple):
     """The mode that notes are judged by: from a note on, counted from 1, until the next judge's."""
 
@@ -253,8 +257,9 @@ def judges(
 
     With a target, or while no change of mode was noticed, that is the mode in view for the whole
     line. After a change each stretch is judged by the mode that was announced for it, so what was
-    right before the change stays right after it. The newest stretch is judged by the mode in view
-    as long as nothing else is said of it.
+    right before the change stays right after it; a stretch of less than `SHORTEST_STRETCH` notes is
+    no change but an excursion, judged by the mode before it. The newest stretch is judged by the
+    mode in view as long as nothing else is said of it.
 
     Parameters
     ----------
@@ -273,8 +278,11 @@ def judges(
         found.append(Judge(change.seam_at, *in_view))
         change = _before(states, change)
     while change.announced != NONE:
-        mode, final_units = model.mode_of(change.announced), standing_final(model, change.announced, heard)
-        found.append(Judge(change.seam_at or 1, mode, final_units))
+        since = change.seam_at or 1
+        is_excursion = since > 1 and bool(found) and found[-1].since - since < SHORTEST_STRETCH
+        if not is_excursion:
+            final_units = standing_final(model, change.announced, heard)
+            found.append(Judge(since, model.mode_of(change.announced), final_units))
         if change.seam_at is None:
             break
         change = _before(states, change)
