@@ -90,7 +90,7 @@ def port_sentence(status: PortStatus) -> str:
         case PortState.ABSENT:
             return "no keyboard found; type notes, or plug one in at any time"
         case PortState.SEVERAL:
-            return f"several keyboards: {choices}; choose one"
+            return f"several keyboards: {choices}; choose one with F6, or start with --port"
         case PortState.REFUSED:
             return f"{status.name} does not open ({status.reason}); another program may hold it; trying on"
         case PortState.UNAVAILABLE:
