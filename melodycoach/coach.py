@@ -315,13 +315,17 @@ class Coach:
         return replace(view, handled=self._handled, refusals=tuple(self._refusals))
 
     def _tokens(self) -> tuple[str, ...]:
-        """Write the line as note text; what was written for the last view is kept."""
-        items, (known, tokens) = entry_items(self.session.line), self._written
-        kept = 0
-        for old, new in zip(known, items, strict=False):
-            if old != new:
+        """Write the line as note text; what was written for the last view is kept.
+
+        A token depends on its item and on the one after it, and the newest note is still growing.
+        """
+        line, (known, tokens) = self.session.line, self._written
+        same = 0
+        for old, new in zip(known, line.items, strict=False):
+            if old is not new:
                 break
-            kept += 1
-        fresh = (item_token(item, self.names, self._page.tempo) for item in items[kept:])
-        self._written = (items, (*tokens[:kept], *fresh))
+            same += 1
+        kept = max(min(same - 1, line.last_note_at), 0)
+        fresh = (item_token(item, self.names, self._page.tempo) for item in entry_items(line, kept))
+        self._written = (line.items, (*tokens[:kept], *fresh))
         return self._written[1]

@@ -101,15 +101,16 @@ def _note_from(items: Sequence[Item], place: int) -> Note | None:
     return next((item for item in items[place:] if isinstance(item, Note)), None)
 
 
-def entry_items(line: Line) -> tuple[Item, ...]:
-    """Give the line as the entry shows it: a played note counts one beat, or two where it rests.
+def entry_items(line: Line, first: int = 0) -> tuple[Item, ...]:
+    """Give the line from an item on as the entry shows it: a played note counts one beat, or two.
 
-    So the entry stays readable, and a token that is edited keeps what the scorer heard in it. Before
-    a breath or a phrase end the rest is said already.
+    It counts two where the line rests on it and no breath or phrase end says so already. So the
+    entry stays readable, and a token that is edited keeps what the scorer heard in it.
     """
     shown: list[Item] = []
-    heard = iter(line.heard)
-    for item, after in zip_longest(line.items, line.items[1:]):
+    n_before = sum(isinstance(item, Note) for item in line.items[:first])
+    heard = iter(line.heard[n_before:])
+    for item, after in zip_longest(line.items[first:], line.items[first + 1 :]):
         if isinstance(item, Note):
             marked = isinstance(after, Mark)
             beats = 2.0 if next(heard).rests and not marked else 1.0

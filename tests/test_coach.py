@@ -3,13 +3,15 @@
 from pathlib import Path
 
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 
 from melodycoach.coach import REFUSALS_KEPT, Coach
 from melodycoach.core.event import Event, NoteOff, NoteOn, PitchReading
 from melodycoach.core.note import InputKind, Mark, Note
 from melodycoach.core.session import SessionState, begin
 from melodycoach.errors import UnknownNameError
-from melodycoach.line_text import read_final
+from melodycoach.line_text import entry_items, read_final
 from melodycoach.screen.command import (
     Fresh,
     Open,
@@ -24,6 +26,7 @@ from melodycoach.screen.command import (
     Undo,
 )
 from melodycoach.screen.view import ViewState
+from melodycoach.sources.note_text import item_token
 from melodycoach.sources.pack_file import load_pack
 
 PACK = load_pack("makam")
@@ -332,3 +335,38 @@ def test_a_header_with_an_unknown_mode_leaves_the_line_as_it_was(coach: Coach, t
     view = asked(coach, Open(str(path)))
     assert "did you mean 'rast'" in view.status.warning
     assert view.tokens == ("A4",)
+
+
+STEPS = st.lists(
+    st.one_of(
+        st.tuples(st.just("key"), st.integers(60, 72), st.sampled_from([0.2, 0.3, 1.2, 3.0])),
+        st.tuples(st.just("text"), st.integers(0, 6), st.sampled_from(["A4", "B4-1 ,", "C5:2 .", ""])),
+        st.tuples(st.just("undo"), st.just(0), st.just("")),
+        st.tuples(st.just("redo"), st.just(0), st.just("")),
+    ),
+    max_size=14,
+)
+
+
+@settings(max_examples=40, deadline=None)
+@given(STEPS)
+def test_the_tokens_kept_from_view_to_view_are_those_of_the_line(
+    steps: list[tuple[str, int, object]],
+) -> None:
+    clock, hands = StillClock(), Hands()
+    coach = Coach(begin(PACK, ("makam/rast",)), hands, clock)
+    for what, number, more in steps:
+        clock.now_s += 0.05
+        if what == "key":
+            hands.events = [NoteOn(clock.now_s, number, 100.0 * number, InputKind.KEYS)]
+            coach.turn()
+            clock.now_s += float(more)  # type: ignore[arg-type]
+            hands.events = [NoteOff(clock.now_s - 0.1, number)]
+            coach.turn()
+        elif what == "text":
+            asked(coach, ReplaceText(number, number + 1, str(more)))
+        else:
+            asked(coach, Undo() if what == "undo" else Redo())
+        coach.turn()
+        line = coach.session.line
+        assert coach.view.tokens == tuple(item_token(item, PACK.names) for item in entry_items(line))

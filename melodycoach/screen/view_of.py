@@ -297,28 +297,29 @@ def _before(states: Sequence[ScorerState], change: ChangeState) -> ChangeState:
 
 def _line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[LineNote, ...]:
     """Give the newest notes, each with the mark after it and with what is wrong with it."""
-    system, names = session.pack.system, session.pack.names
+    names = session.pack.names
     items, heard = session.line.items, session.line.heard
     places = [i for i, item in enumerate(items) if isinstance(item, Note)]
     first = max(len(places) - NOTES_SHOWN, 0)
     leader = leading(session.model, session.line.states[-1]).best if session.target is None else None
     judged_by = judges(session.model, session.line.states, heard, (mode, final_units), leader)
+    known: dict[tuple[float, InputKind, int], tuple[float, str, str, str, str]] = {}
     rows = []
     for number in range(first, len(places)):
         at, note = places[number], heard[number]
-        _, judge, stands_on = next(one for one in judged_by if one.since <= number + 1)
+        judge = next(one for one in judged_by if one.since <= number + 1)
         until = places[number + 1] if number + 1 < len(places) else len(items)
         marks = [item for item in items[at + 1 : until] if isinstance(item, Mark)]
-        off = off_mode(judge, stands_on, note, system)
-        wrong, mend = off_mode_words(off, judge, names) if off is not None else ("", "")
-        height = meant_units(judge, stands_on, note.pitch_cents, note.kind, system)
-        cents = system.units_to_cents(height)
+        key = (note.pitch_cents, note.kind, judge.since)
+        if key not in known:
+            known[key] = _judged(note, judge, names)
+        height, name, written, wrong, mend = known[key]
         rows.append(
             LineNote(
                 number=number + 1,
-                height=round(height, 2),
-                name=names.name(cents),
-                written=str(names.spell(cents)),
+                height=height,
+                name=name,
+                written=written,
                 length_s=note.length_s,
                 rests=note.rests,
                 off_mode=wrong,
@@ -328,6 +329,16 @@ def _line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[Li
             )
         )
     return tuple(rows)
+
+
+def _judged(note: Heard, judge: Judge, names: PitchNames) -> tuple[float, str, str, str, str]:
+    """Give height, name and written name of a note, what is wrong with it, and what mends it."""
+    mode, final_units = judge.mode, judge.final_units
+    off = off_mode(mode, final_units, note, names.system)
+    wrong, mend = off_mode_words(off, mode, names) if off is not None else ("", "")
+    height = meant_units(mode, final_units, note.pitch_cents, note.kind, names.system)
+    cents = names.system.units_to_cents(height)
+    return round(height, 2), names.name(cents), str(names.spell(cents)), wrong, mend
 
 
 def _ladder(mode: Mode, final_units: int, names: PitchNames) -> tuple[Rung, ...]:
