@@ -377,7 +377,10 @@ SENTENCES = [
         PortStatus(PortState.ABSENT, wanted="Keys"),
         "no keyboard 'Keys' yet, there is none at all; it is taken as soon as it appears",
     ),
-    (PortStatus(PortState.SEVERAL, choices=("Keys", "Pad")), "several keyboards: Keys, Pad; choose one with F6, or start with --port"),
+    (
+        PortStatus(PortState.SEVERAL, choices=("Keys", "Pad")),
+        "several keyboards: Keys, Pad; choose one with F6, or start with --port",
+    ),
     (
         PortStatus(PortState.REFUSED, "Keys", reason="busy"),
         "Keys does not open (busy); another program may hold it; trying on",
