@@ -26,7 +26,7 @@ from melodycoach.coach import TURN_S, Coach
 from melodycoach.core.event import PitchReading
 from melodycoach.core.session import begin
 from melodycoach.errors import EventLogError, MelodycoachError, PortError
-from melodycoach.line_text import read_final
+from melodycoach.line_text import open_line, read_final
 from melodycoach.players import DemoKeyboard, Keyboard, Player, Replay
 from melodycoach.screen.plain import plain_line
 from melodycoach.sources.event_json import LogHeader
@@ -122,6 +122,10 @@ def _prepare(settings: Settings, clock: Clock) -> tuple[SessionState, Player, Ev
         reading = PitchReading.ANY
     elif settings.final is not None:
         reading, final_cents = read_final(settings.final, pack.names)
+    if settings.open_file is not None:
+        page, _ = open_line(settings.open_file, pack.names)
+        if page.headers.mode:
+            pack.find(page.headers.mode)
     only = tuple(mode.id for mode in pack.restrict(settings.only)) if settings.only else ()
     session = begin(pack, only, reading, final_cents, settings.target)
     if settings.port is not None:
@@ -286,8 +290,8 @@ class _Printer:
 
     def begin(self, coach: Coach) -> None:
         self._say(f"{coach.view.theory}. {coach.view.caution}")
+        self._previous = coach.view  # before anything is heard, even in haste
         coach.turn()  # the ports are looked at: there is something true to say of them
-        self._previous = coach.view
         self.world(coach.view)
 
     def note(self, view: ViewState) -> None:

@@ -6,15 +6,17 @@ Nothing heavy is imported before the arguments are understood, so that ``--help`
 from __future__ import annotations
 
 import argparse
+import codecs
 import io
 import json
 import os
 import sys
+from difflib import get_close_matches
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, NoReturn
 
 from melodycoach import DEFAULT_PACK, __version__
-from melodycoach.errors import MelodycoachError, UsageError
+from melodycoach.errors import MelodycoachError, UsageError, system_reason
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Sequence
@@ -24,6 +26,7 @@ if TYPE_CHECKING:
 
 DONE, ANSWER_IS_NO, BAD_INPUT, INTERRUPTED = 0, 1, 2, 130
 DEFAULT_COMMAND = "listen"
+PLAIN_LETTERS = "melodycoach.plain-letters"
 
 _EPILOG = """\
 examples:
@@ -37,11 +40,18 @@ examples:
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run the program and give its exit code: 0 done, 1 the answer is no, 2 bad usage or input."""
-    if isinstance(sys.stdout, io.TextIOWrapper):
-        sys.stdout.reconfigure(errors="replace")  # a letter that a terminal lacks is no reason to stop
+    codecs.register_error(PLAIN_LETTERS, _plain_letters)
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors=PLAIN_LETTERS)  # a letter that a terminal lacks is no reason to stop
     words = list(sys.argv[1:] if argv is None else argv)
     parser, commands = _parser()
     if not words or words[0] not in (*commands, "-h", "--help", "--version"):
+        meant = get_close_matches(words[0], commands, n=1, cutoff=0.7) if words else []
+        if meant and not Path(words[0]).exists():
+            says = f"no command and no file {words[0]!r}; did you mean melodycoach {meant[0]}?"
+            print(f"melodycoach: {says}", file=sys.stderr)
+            return BAD_INPUT
         words.insert(0, DEFAULT_COMMAND)
     options = parser.parse_args(words)
     try:
@@ -56,8 +66,29 @@ def main(argv: Sequence[str] | None = None) -> int:
     except KeyboardInterrupt:
         return INTERRUPTED
     except BrokenPipeError:
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())  # nobody reads on: say no more
+        _silence_stdout()  # nobody reads on: say no more
         return DONE
+    except OSError as error:  # whatever can be said more exactly was said by who met it
+        if options.debug:
+            raise
+        _silence_stdout()
+        where = error.filename or "output"
+        print(f"melodycoach: {where}: {system_reason(error)}; --debug shows where it arose", file=sys.stderr)
+        return BAD_INPUT
+
+
+def _plain_letters(error: UnicodeError) -> tuple[str, int]:
+    """Write plain letters for what an output's encoding does not have."""
+    from melodycoach.screen.text import to_ascii
+
+    if not isinstance(error, UnicodeEncodeError):
+        raise error
+    return to_ascii(error.object[error.start : error.end]), error.end
+
+
+def _silence_stdout() -> None:
+    """Drop what is still to be written, so that the interpreter's own flush at the exit cannot fail."""
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
 
 
 def _run(options: argparse.Namespace) -> int:
@@ -126,7 +157,7 @@ def _add_live(command: Any) -> None:
 
 def _add_listen(commands: Any) -> None:
     says = "play or type a line and see which mode it implies (the default command)"
-    command = _command(commands, "listen", _listen, says, "listen --target huseyni --port Keystation")
+    command = _command(commands, "listen", _listen, says, "listen --target huseyni --port usb")
     command.add_argument("file", nargs="?", metavar="FILE", help="a line in note text to begin with")
     _add_pack(command)
     _add_only(command)
@@ -332,7 +363,7 @@ class _Progress:
 
 
 def _count(text: str) -> int:
-    value = int(text)
+    value = int(text) if text.isdecimal() else -1
     if not 0 <= value <= 100_000:
         raise argparse.ArgumentTypeError(f"{text!r} is not a number from 0 to 100000")
     return value

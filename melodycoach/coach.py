@@ -137,7 +137,7 @@ class Coach:
                 break
             self._carry_out(command)
         self._tick(now_s)
-        return self._publish()
+        return self._publish(now_s)
 
     def take(self, event: Event) -> None:
         """Apply one event and log it."""
@@ -279,8 +279,7 @@ class Coach:
 
     # --- the view ---------------------------------------------------------------------------
 
-    def _publish(self) -> bool:
-        now_s = self._clock()
+    def _publish(self, now_s: float) -> bool:
         shown = (
             self.session.line,
             self.session.model,
@@ -295,7 +294,7 @@ class Coach:
         if shown == self._shown:
             return False
         self._shown = shown
-        self.view = self._make_view()
+        self.view = self._make_view(now_s)
         return True
 
     def _make_view(self, at_s: float | None = None) -> ViewState:

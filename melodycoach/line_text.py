@@ -14,10 +14,12 @@ from typing import TYPE_CHECKING
 from melodycoach.core.event import PitchReading
 from melodycoach.core.note import Item, Mark, Note
 from melodycoach.errors import NoteTextError, StorageError, UnknownNameError, system_reason
+from melodycoach.sources.near_files import near_files
 from melodycoach.sources.note_text import (
     DEFAULT_TEMPO,
     Comment,
     Headers,
+    find_faults,
     read_note_text,
     read_tokens,
     write_note_text,
@@ -64,7 +66,8 @@ def open_line(path: Path, names: PitchNames) -> tuple[Page, tuple[Item, ...]]:
     try:
         text = path.read_text(encoding="utf-8-sig")
     except OSError as error:
-        raise StorageError(f"{path}: {system_reason(error)}; name a file of note text") from error
+        advice = near_files(path) or "name a file of note text"
+        raise StorageError(f"{path}: {system_reason(error)}; {advice}") from error
     except UnicodeDecodeError as error:
         raise StorageError(f"{path}: byte {error.start} is not UTF-8 text; save the file as UTF-8") from error
     read = read_note_text(text, names, path.name)
@@ -157,7 +160,9 @@ def read_final(text: str, names: PitchNames) -> tuple[PitchReading, float | None
     except NoteTextError:
         items = ()
     if len(items) != 1 or not isinstance(items[0], Note):
+        faults = find_faults(word, names, with_headers=False)
+        advice = f"; {faults[0].advice}" if len(faults) == 1 and faults[0].nearest else ""
         raise UnknownNameError(
-            f"final: found {text!r}, expected one pitch such as A4 or dügâh, or 'written' or 'any'"
+            f"final: found {text!r}, expected one pitch such as A4 or dügâh, or 'written' or 'any'{advice}"
         )
     return PitchReading.FINAL, items[0].pitch_cents

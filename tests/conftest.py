@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import shutil
+import signal
 import subprocess
 import sys
 import time
@@ -17,6 +18,10 @@ if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
 
     from pseudo_terminal import PseudoTerminal
+
+# A shell that runs the tests in the background has them ignore Ctrl-C, and what they start inherits that.
+if signal.getsignal(signal.SIGINT) is signal.SIG_IGN:
+    signal.signal(signal.SIGINT, signal.default_int_handler)
 
 KEYBOARD = Path(__file__).with_name("keyboard.py")
 DEADLINE_S = 10.0

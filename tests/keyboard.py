@@ -8,8 +8,6 @@ standard input ends, or the process is ended, the port is gone: the keyboard was
 import sys
 import time
 
-import rtmidi
-
 
 def say(word: str) -> None:
     sys.stdout.write(f"{word}\n")
@@ -17,6 +15,8 @@ def say(word: str) -> None:
 
 
 def main() -> None:
+    import rtmidi  # not at the top: pytest looks for doctests here, also where there is none
+
     out = rtmidi.MidiOut(rtmidi.API_UNIX_JACK, name=sys.argv[1])
     out.open_virtual_port("out")
     say("ready")

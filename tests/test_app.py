@@ -16,14 +16,17 @@ import pytest
 
 from melodycoach import app
 from melodycoach.app import Settings, listen, ports
+from melodycoach.clock import Clock
 from melodycoach.core.event import LineEdited, NoteOn, TimePassed
-from melodycoach.core.note import InputKind
-from melodycoach.demo import HAND_OVER, DemoPlayer
-from melodycoach.errors import EventLogError, PortError, StorageError, UnknownModeError
+from melodycoach.core.note import InputKind, Note
+from melodycoach.demo import HAND_OVER, STAGES, DemoPlayer
+from melodycoach.errors import EventLogError, NoteTextError, PortError, StorageError, UnknownModeError
+from melodycoach.line_text import Page
 from melodycoach.report.ports import ports_text
 from melodycoach.screen.command import ReplaceText
 from melodycoach.sources.event_log import RecordedLog, read_event_log
 from melodycoach.sources.midi_system import PortList, PortName
+from melodycoach.sources.note_text import read_tokens
 from melodycoach.sources.pack_file import SHIPPED, load_pack
 
 if TYPE_CHECKING:
@@ -34,6 +37,7 @@ KEYS = PortName("Upright 20:0", "ALSA")
 THREE = ("hicaz", "huseyni", "rast")
 THREE_IDS = ["makam/rast", "makam/huseyni", "makam/hicaz"]  # in the pack's order
 DEADLINE_S = 20.0
+NAMES = load_pack("makam").names
 
 
 class Wire:
@@ -126,7 +130,7 @@ def test_typed_lines_give_a_line_a_note_after_the_words_about_the_world(
     run_plain: Callable[..., list[str]],
 ) -> None:
     said = run_plain(Settings(only=THREE), "D5 C#5\nBb4+1 A4 .\n")
-    assert "where this pack and your teacher disagree" in said[0]
+    assert "follow your teacher" in said[0]
     assert said[1] == "(no keyboard found; type notes, or plug one in at any time)"
     assert said[2] == f"(log: {logs()[0]})"
     assert [line.split()[0] for line in notes_in(said)] == ["1", "2", "3", "4"]
@@ -222,13 +226,30 @@ def test_a_file_to_begin_with_is_said_note_by_note(
 
 
 @pytest.mark.parametrize("full_screen", [False, True])
-def test_a_file_that_cannot_be_opened_ends_the_session_with_a_whole_log(
-    tmp_path: Path, full_screen: bool
+def test_a_file_that_goes_before_it_is_opened_ends_the_session_with_a_whole_log(
+    tmp_path: Path, full_screen: bool, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     settings = Settings(only=THREE, open_file=tmp_path / "nowhere.txt")
+    monkeypatch.setattr(app, "open_line", lambda *_: (Page(), ()))  # it was there a moment ago
     with pytest.raises(StorageError):
         listen(settings, full_screen=full_screen, say=print)
     assert [type(event) for event in only_log().events] == [TimePassed]
+
+
+@pytest.mark.parametrize(
+    ("text", "fault"),
+    [(None, StorageError), ("A4 zz", NoteTextError), ("mode: nowhere\n\nA4", UnknownModeError)],
+)
+def test_a_file_that_cannot_be_used_is_refused_before_there_is_a_log(
+    tmp_path: Path, text: str | None, fault: type[Exception]
+) -> None:
+    path = tmp_path / "line.txt"
+    if text is not None:
+        path.write_text(text, encoding="utf-8")
+    said: list[str] = []
+    with pytest.raises(fault):
+        listen(Settings(only=THREE, open_file=path), full_screen=False, say=said.append)
+    assert (said, logs()) == ([], [])
 
 
 def test_the_demo_ends_by_itself_where_nobody_types(run_plain: Callable[..., list[str]]) -> None:
@@ -236,6 +257,26 @@ def test_the_demo_ends_by_itself_where_nobody_types(run_plain: Callable[..., lis
     assert len(notes_in(said)) > 40
     assert HAND_OVER in said[-1]
     assert any(isinstance(event, NoteOn) for event in only_log().events)
+
+
+def test_a_hurried_demo_tells_every_note_once_and_its_words_in_order(
+    run_plain: Callable[..., list[str]], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    began = Clock.__init__
+
+    def late(clock: Clock, speed: float = 1.0) -> None:
+        began(clock, speed)
+        clock._began_s -= 0.07  # a slow machine: at the demo's pace, 28 s have gone when it begins
+
+    monkeypatch.setattr(Clock, "__init__", late)
+    said = run_plain(Settings(demo=True, fast=True, only=THREE, log=False))
+    n_notes = sum(
+        isinstance(item, Note) for stage in STAGES for item in read_tokens(stage.line, NAMES, 0.0, 60)
+    )
+    assert [line.split()[0] for line in notes_in(said)] == [str(number + 1) for number in range(n_notes)]
+    assert not [line for line in said if line.startswith("the line now has")]
+    words = [line for line in said if line.startswith("(")]
+    assert [line for line in words if HAND_OVER in line] == words[-1:]
 
 
 def test_what_is_typed_ahead_of_the_demo_waits_for_its_end(run_plain: Callable[..., list[str]]) -> None:

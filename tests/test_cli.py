@@ -80,7 +80,12 @@ def test_help_loads_nothing_heavy() -> None:
         (["listen", "--target", "rasst"], "no mode 'rasst' in pack 'makam'; did you mean 'rast'?"),
         (["listen", "--only", "rast,nothing"], "no mode 'nothing'"),
         (["listen", "--final", "H4"], "final: found 'H4', expected one pitch such as A4 or dügâh"),
+        (["listen", "--final", "dugha"], "did you mean 'dügâh'?"),
         (["listen", "nowhere.txt", "--plain", "--no-log"], "nowhere.txt: no such file or directory"),
+        (
+            ["evalute", "collection.jsonl"],
+            "did you mean melodycoach evaluate?",
+        ),
         (["listen", "--replay", "nowhere.jsonl"], "nowhere.jsonl"),
         (["listen", "--fast"], "--fast goes with --replay"),
         (["listen", "a.txt", "--replay", "b.jsonl"], "one line to begin with at a time"),
@@ -104,6 +109,42 @@ def test_wrong_usage_points_to_the_help(arguments: list[str], capsys: pytest.Cap
         main(arguments)
     assert ended.value.code == 2
     assert "--help" in capsys.readouterr().err
+
+
+def test_a_missing_file_is_refused_before_anything_is_said_or_logged(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.setenv("XDG_DATA_HOME", str(tmp_path / "data"))
+    (tmp_path / "evening.txt").write_text("A4", encoding="utf-8")
+    assert main(["listen", str(tmp_path / "evning.txt"), "--plain"]) == 2
+    said = capsys.readouterr()
+    assert said.out == ""
+    assert said.err.endswith("evning.txt: no such file or directory; did you mean 'evening.txt'?\n")
+    assert not (tmp_path / "data").exists()
+
+
+def test_a_missing_log_is_said_with_the_one_beside_it(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    (tmp_path / "monday.events.jsonl").write_text("", encoding="utf-8")
+    assert main(["listen", "--replay", str(tmp_path / "mondy.events.jsonl")]) == 2
+    assert capsys.readouterr().err.endswith("; did you mean 'monday.events.jsonl'?\n")
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs /dev/full, a disk that is always full")
+@pytest.mark.parametrize("arguments", [["modes"], ["--plain", "--no-log"]])
+def test_an_output_that_takes_nothing_is_said_in_one_line(arguments: list[str]) -> None:
+    with Path("/dev/full").open("w") as full:
+        ran = subprocess.run(
+            [sys.executable, "-m", "melodycoach", *arguments],
+            stdin=subprocess.DEVNULL,
+            stdout=full,
+            stderr=subprocess.PIPE,
+            text=True,
+            check=False,
+        )
+    assert ran.returncode == 2
+    assert ran.stderr == "melodycoach: output: no space left on device; --debug shows where it arose\n"
 
 
 def test_debug_shows_where_an_error_arose() -> None:
@@ -312,7 +353,8 @@ def test_a_letter_that_the_output_cannot_write_is_no_reason_to_stop(monkeypatch:
     raw = io.BytesIO()
     monkeypatch.setattr(sys, "stdout", io.TextIOWrapper(raw, encoding="ascii"))
     assert main(["modes", "karcigar"]) == 0
-    assert b"Karc??ar" in raw.getvalue()
+    assert b"Karcigar" in raw.getvalue()
+    assert raw.getvalue().isascii()
 
 
 def test_a_pack_that_can_be_used_is_said_to_be(capsys: pytest.CaptureFixture[str]) -> None:

@@ -19,6 +19,7 @@ from melodycoach.sources.event_json import (
     header_from_json,
     header_to_json,
 )
+from melodycoach.sources.near_files import near_files
 
 if TYPE_CHECKING:
     from datetime import datetime
@@ -181,7 +182,10 @@ def read_event_log(path: Path) -> RecordedLog:
     try:
         raw = path.read_bytes()
     except OSError as error:
-        raise StorageError(f"{path}: {system_reason(error)}, expected an event log to read") from error
+        advice = f"; {near}" if (near := near_files(path)) else ""
+        raise StorageError(
+            f"{path}: {system_reason(error)}, expected an event log to read{advice}"
+        ) from error
     lines = raw.split(b"\n")
     tail = lines.pop()  # what follows the last line end: nothing, or a line cut short
     if not lines:
