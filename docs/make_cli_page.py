@@ -13,10 +13,10 @@ OPENING = """# The command line
 
 This page is written by `docs/make_cli_page.py` from the program's own help; a test compares the two.
 
-Exit codes: 0 done, 1 the answer is no, 2 wrong usage or input, 130 interrupted. `NO_COLOR` is
-honoured. Your own mode packs are looked for in `packs/` under the configuration folder of
-melodycoach (on Linux `~/.config/melodycoach/packs`), and event logs are kept in `sessions/` under its
-data folder (on Linux `~/.local/share/melodycoach/sessions`).
+Exit codes: 0 done, 1 the answer is no, 2 wrong usage or input, 70 a fault of the program, 130
+interrupted. `NO_COLOR` is honoured. Your own mode packs are looked for in `packs/` under the
+configuration folder of melodycoach (on Linux `~/.config/melodycoach/packs`), and event logs are kept
+in `sessions/` under its data folder (on Linux `~/.local/share/melodycoach/sessions`).
 """
 
 

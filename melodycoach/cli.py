@@ -11,6 +11,7 @@ import io
 import json
 import os
 import sys
+import traceback
 from difflib import get_close_matches
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, NoReturn
@@ -24,7 +25,7 @@ if TYPE_CHECKING:
     from melodycoach.app import Settings
     from melodycoach.core.mode import ModePack
 
-DONE, ANSWER_IS_NO, BAD_INPUT, INTERRUPTED = 0, 1, 2, 130
+DONE, ANSWER_IS_NO, BAD_INPUT, OUR_FAULT, INTERRUPTED = 0, 1, 2, 70, 130
 DEFAULT_COMMAND = "listen"
 PLAIN_LETTERS = "melodycoach.plain-letters"
 
@@ -39,7 +40,7 @@ examples:
 
 
 def main(argv: Sequence[str] | None = None) -> int:
-    """Run the program and give its exit code: 0 done, 1 the answer is no, 2 bad usage or input."""
+    """Run the program and give its exit code; docs/cli.md says what each means."""
     codecs.register_error(PLAIN_LETTERS, _plain_letters)
     for stream in (sys.stdout, sys.stderr):
         if isinstance(stream, io.TextIOWrapper):
@@ -75,6 +76,13 @@ def main(argv: Sequence[str] | None = None) -> int:
         where = error.filename or "output"
         print(f"melodycoach: {where}: {system_reason(error)}; --debug shows where it arose", file=sys.stderr)
         return BAD_INPUT
+    except Exception:  # noqa: BLE001  (the last door: a fault of ours is shown whole, and told from an answer)
+        traceback.print_exc()
+        print(
+            "melodycoach: this is a fault of the program, not yours; the log of the session is kept",
+            file=sys.stderr,
+        )
+        return OUR_FAULT
 
 
 def _plain_letters(error: UnicodeError) -> tuple[str, int]:

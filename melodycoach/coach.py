@@ -20,6 +20,7 @@ from melodycoach.core.event import (
     ModesRestricted,
     NoteOff,
     NoteOn,
+    PitchReading,
     ReadingChosen,
     Redone,
     TargetChosen,
@@ -28,7 +29,7 @@ from melodycoach.core.event import (
 )
 from melodycoach.core.note import Item, Mark
 from melodycoach.core.session import SessionState, apply
-from melodycoach.errors import MelodycoachError, NoteTextError, StorageError
+from melodycoach.errors import MelodycoachError, StorageError
 from melodycoach.line_text import Page, entry_items, notes_with_marks, open_line, read_final, save_line
 from melodycoach.screen.command import (
     Command,
@@ -232,14 +233,13 @@ class Coach:
     def append_text(self, text: str) -> None:
         """Put typed text behind the line, note by note; each note goes to ``on_note``.
 
-        A word that cannot be read is warned of, and nothing of the text is taken.
+        A word that cannot be read is warned of and left out.
         """
-        self._warning = ""
-        try:
-            items = read_tokens(text, self.names, self._clock(), self._page.tempo)
-        except NoteTextError as error:
-            self._warning = str(error)
-            return
+        faults = find_faults(text, self.names, with_headers=False)
+        self._warning = "; ".join(fault.sentence for fault in faults)
+        bad = {fault.token for fault in faults}
+        good = " ".join(word for word in text.split() if word not in bad) if bad else text
+        items = read_tokens(good, self.names, self._clock(), self._page.tempo)
         for group in notes_with_marks(items):
             n_items = len(self.session.line.items)
             self.take(LineEdited(self._clock(), n_items, n_items, group))
@@ -249,9 +249,10 @@ class Coach:
         if path.exists() and path not in self._own_files:
             self._own_files.add(path)
             raise StorageError(f"{path} is there already; save again to replace it, or choose another name")
-        target = self.session.target
-        if target is not None:
-            self._page = replace(self._page, headers=replace(self._page.headers, mode=target.slug))
+        session, headers = self.session, self._page.headers
+        mode = session.target.slug if session.target is not None else headers.mode
+        headers = replace(headers, mode=mode, final_cents=session.final_cents)
+        self._page = replace(self._page, headers=headers)
         save_line(path, self._page, self.session.line, self.names)
         self._own_files.add(path)
         self._notice = f"saved as {path}"
@@ -273,6 +274,8 @@ class Coach:
         now_s = self._clock()
         if target is not None:
             self.take(TargetChosen(now_s, target.id))
+        if page.headers.final_cents is not None:
+            self.take(ReadingChosen(now_s, PitchReading.FINAL, page.headers.final_cents))
         self._page = page
         self._own_files.add(path)
         self.take(LineEdited(now_s, 0, len(self.session.line.items), items))

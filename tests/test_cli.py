@@ -189,7 +189,8 @@ def test_a_bad_word_in_a_pipe_is_explained_and_the_rest_goes_on() -> None:
     ran = run("--plain", "--no-log", "--only", "hicaz,huseyni", typed="D5 Q5\nA4\n")
     assert ran.returncode == 0
     assert "'Q5'" in ran.stdout
-    assert any(line.startswith("1 ") and "A4" in line for line in ran.stdout.splitlines())
+    notes = [line.split(";")[0] for line in ran.stdout.splitlines() if line[:1].isdigit()]
+    assert notes == ["1 nevâ D5", "2 dügâh A4"]
 
 
 def test_a_line_of_note_text_can_be_opened(tmp_path: Path) -> None:
@@ -466,3 +467,13 @@ def test_debug_lets_an_error_through(capsys: pytest.CaptureFixture[str]) -> None
     with pytest.raises(UnknownModeError):
         main(["modes", "nothing-such", "--debug"])
     assert capsys.readouterr().err == ""
+
+
+def test_a_fault_of_ours_is_shown_whole_and_told_from_an_answer(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    Asked(monkeypatch, ZeroDivisionError("a slip"))
+    assert main([]) == 70
+    error = capsys.readouterr().err
+    assert "ZeroDivisionError: a slip" in error
+    assert "a fault of the program, not yours" in error

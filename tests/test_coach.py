@@ -8,7 +8,7 @@ from hypothesis import strategies as st
 
 from melodycoach.coach import REFUSALS_KEPT, Coach
 from melodycoach.core.event import Event, NoteOff, NoteOn, PitchReading
-from melodycoach.core.note import InputKind, Mark, Note
+from melodycoach.core.note import InputKind, Note
 from melodycoach.core.session import SessionState, begin
 from melodycoach.errors import UnknownNameError
 from melodycoach.line_text import entry_items, read_final
@@ -242,10 +242,13 @@ def test_text_put_behind_the_line_is_told_note_by_note_with_its_marks(
     coach = Coach(begin(PACK, ONLY), hands, clock, on_note=told.append)
     coach.append_text("E5 D5 , A4 .")
     assert [view.tokens for view in told] == [("E5",), ("E5", "D5", ","), ("E5", "D5", ",", "A4", ".")]
-    coach.append_text("E5 X9")
-    assert coach.session.line.items[-1] is Mark.PHRASE_END
+
+
+def test_a_word_that_cannot_be_read_is_left_out_of_what_is_put_behind_the_line(coach: Coach) -> None:
+    coach.append_text("E5 X9 D5 .")
     coach.turn()
-    assert "X9" in coach.view.status.warning
+    assert coach.view.tokens == ("E5", "D5", ".")
+    assert coach.view.status.warning.startswith("'X9' is neither a note nor a pitch name")
 
 
 def test_a_sounding_note_grows_in_the_view_while_the_clock_runs(
@@ -370,3 +373,11 @@ def test_the_tokens_kept_from_view_to_view_are_those_of_the_line(
         coach.turn()
         line = coach.session.line
         assert coach.view.tokens == tuple(item_token(item, PACK.names) for item in entry_items(line))
+
+
+def test_a_final_in_the_header_is_taken_as_given_and_saved_again(coach: Coach, tmp_path: Path) -> None:
+    path = tmp_path / "line.txt"
+    path.write_text("final: D5\n\nG5 F5 E5-1 D5 .\n", encoding="utf-8")
+    assert asked(coach, Open(str(path))).reading == "final given: nevâ"
+    asked(coach, Save(str(path)))
+    assert path.read_text(encoding="utf-8").startswith("final: D5\n")
