@@ -7,6 +7,7 @@ new `ViewState` by swapping a reference. Other threads only `send` commands and 
 
 from __future__ import annotations
 
+import os
 from collections import deque
 from dataclasses import replace
 from pathlib import Path
@@ -67,6 +68,12 @@ REFUSALS_KEPT = 8
 COMMENT_REFUSED = (
     "{!r} begins a comment, which the live line does not keep; a sharp stands behind its letter: F#5"
 )
+
+
+def _from_home(path: Path) -> str:
+    """Write a path as short as the player knows it: ``~`` is the player's own folder."""
+    home, whole = os.path.expanduser("~") + os.sep, str(path)  # noqa: PTH111 (does not fail without a home)
+    return f"~{os.sep}{whole[len(home) :]}" if whole.startswith(home) else whole
 
 
 class Coach:
@@ -293,6 +300,7 @@ class Coach:
             len(self._refusals),
             self._player.input_line(now_s),
             self._player.tuning_line(),
+            self._player.asks_input(),
         )
         if shown == self._shown:
             return False
@@ -305,13 +313,14 @@ class Coach:
         at_s = self._clock() if at_s is None else at_s
         log_line = ""
         if self._log is not None:
-            log_line = "no log: see the warning" if self._log.fault else f"log: {self._log.path}"
+            log_line = "no log: see the warning" if self._log.fault else f"log: {_from_home(self._log.path)}"
         status = Status(
             input_line=self._player.input_line(at_s),
             tuning_line=self._player.tuning_line(),
             log_line=log_line,
             warning=self._warning,
             notice=self._notice,
+            asks_input=self._player.asks_input(),
         )
         view = self._view_maker.view_of(self.session, status, self._tokens())
         return replace(view, handled=self._handled, refusals=tuple(self._refusals))

@@ -38,6 +38,9 @@ class Player(Protocol):
     def inputs(self) -> tuple[str, ...]:
         """Name the inputs that can be listened to; any thread may ask."""
 
+    def asks_input(self) -> bool:
+        """Whether there are several inputs, and the player has to say which one."""
+
     def choose(self, name: str) -> None:
         """Listen to the input of this name, or to a part of it."""
 
@@ -100,6 +103,10 @@ class Keyboard:
         """Name the inputs that can be listened to."""
         return tuple(port.name for port in self.port.inputs)
 
+    def asks_input(self) -> bool:
+        """Whether there are several, and none of them was named."""
+        return self.port.status.state is PortState.SEVERAL
+
     def choose(self, name: str) -> None:
         """Listen to another input from now on."""
         self.port.choose(name)
@@ -117,11 +124,11 @@ def tuning_sentence(tracker: PitchTracker) -> str:
     """Say which tuning a keyboard is believed to have, and why.
 
     >>> tuning_sentence(PitchTracker())
-    'plain keys (no bend was sent): each stands for every perde near it'
+    'plain keys: each stands for every perde near it'
     """
     tunings = tracker.tunings()
     if not tunings:
-        return "plain keys (no bend was sent): each stands for every perde near it"
+        return "plain keys: each stands for every perde near it"
     bent = max(tunings, key=lambda tuning: abs(tuning.bend_cents) + abs(tuning.tuning_cents))
     reason = "sent by the keyboard" if bent.range_sent else "none was sent: MIDI's default"
     return f"bends read on channel {bent.channel}, range ±{bent.range_cents / 100:g} semitones ({reason})"
@@ -167,6 +174,10 @@ class DemoKeyboard:
     def inputs(self) -> tuple[str, ...]:
         """Name the inputs that can be listened to."""
         return self._keyboard.inputs()
+
+    def asks_input(self) -> bool:
+        """Whether the player has to choose a keyboard; not before the demo is over."""
+        return self._handed_over and self._keyboard.asks_input()
 
     def choose(self, name: str) -> None:
         """Choose the player's keyboard."""
@@ -219,6 +230,10 @@ class Replay:
     def inputs(self) -> tuple[str, ...]:
         """Name none: a replay listens to nothing."""
         return ()
+
+    def asks_input(self) -> bool:
+        """Never: a replay listens to nothing."""
+        return False
 
     def choose(self, name: str) -> None:
         """Refuse: a replay listens to nothing.

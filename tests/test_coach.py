@@ -1,5 +1,6 @@
 """The coach: what is played, typed and asked for becomes one session, one log and one view."""
 
+from datetime import datetime
 from pathlib import Path
 
 import pytest
@@ -26,6 +27,8 @@ from melodycoach.screen.command import (
     Undo,
 )
 from melodycoach.screen.view import ViewState
+from melodycoach.sources.event_json import LogHeader
+from melodycoach.sources.event_log import EventLog
 from melodycoach.sources.note_text import item_token
 from melodycoach.sources.pack_file import load_pack
 
@@ -47,6 +50,7 @@ class Hands:
     def __init__(self) -> None:
         self.events: list[Event] = []
         self.chosen: list[str] = []
+        self.asks = False
         self.closed = False
 
     def poll(self, now_s: float) -> list[Event]:
@@ -62,6 +66,9 @@ class Hands:
 
     def inputs(self) -> tuple[str, ...]:
         return ()
+
+    def asks_input(self) -> bool:
+        return self.asks
 
     def choose(self, name: str) -> None:
         self.chosen.append(name)
@@ -105,6 +112,29 @@ def test_played_notes_appear_in_the_view_as_tokens(coach: Coach, hands: Hands, c
     assert coach.turn()
     assert coach.view.tokens[0].startswith("A4~")
     assert [note.number for note in coach.view.line] == [1, 2]
+
+
+@pytest.mark.parametrize(
+    ("home", "shown"), [("", str(Path("~") / "sessions" / "may.jsonl")), ("elsewhere", "")]
+)
+def test_where_the_log_goes_is_said_from_the_player_s_own_folder_on(
+    hands: Hands, clock: StillClock, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, home: str, shown: str
+) -> None:
+    for variable in ("HOME", "USERPROFILE"):  # the second one on Windows
+        monkeypatch.setenv(variable, str(tmp_path / home))
+    path = tmp_path / "sessions" / "may.jsonl"
+    header = LogHeader("0.1.0", datetime(2026, 5, 1, 18, 4, 9), "makam")
+    coach = Coach(begin(PACK, ONLY), hands, clock, EventLog(path, header))
+    assert coach.view.status.log_line == f"log: {shown or path}"
+    coach.close()
+
+
+def test_the_view_says_when_the_player_has_to_choose_an_input(coach: Coach, hands: Hands) -> None:
+    coach.turn()
+    assert not coach.view.status.asks_input
+    hands.asks = True
+    assert coach.turn()
+    assert coach.view.status.asks_input
 
 
 def test_a_turn_with_nothing_new_publishes_nothing(coach: Coach) -> None:

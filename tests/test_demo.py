@@ -37,6 +37,9 @@ class Playing:
     def inputs(self) -> tuple[str, ...]:
         return ()
 
+    def asks_input(self) -> bool:
+        return False
+
     def choose(self, name: str) -> None:
         raise AssertionError(name)
 

@@ -147,11 +147,27 @@ def test_with_several_keyboards_the_player_is_asked(
     plug_in("left hand")
     right = plug_in("right hand")
     terminal = open_terminal("listen", "--no-log")
-    terminal.wait_for("several keyboards")
+    terminal.wait_for("several keyboards", "listen to which input?", "left hand")
+    terminal.type("right\r")
+    terminal.wait_for("listening to right hand", gone="listen to which input?")
+    right.play("90 45 50", "wait 0.2", "80 45 00")
+    terminal.wait_for("1 note")
+
+
+@pytest.mark.jack
+def test_with_several_keyboards_a_player_who_would_rather_type_can_choose_later(
+    plug_in: Callable[[str], Keyboard], open_terminal: Callable[..., PseudoTerminal]
+) -> None:
+    plug_in("left hand")
+    plug_in("right hand")
+    terminal = open_terminal("listen", "--no-log")
+    terminal.wait_for("listen to which input?")
+    terminal.type("\x1b")
+    terminal.wait_for("several keyboards", gone="listen to which input?")
+    terminal.type("E5 ")
+    terminal.wait_for("1 note", gone="listen to which input?")
     terminal.type("\x1bOP")  # F1: help, and away again
     terminal.read(0.3)
     terminal.type("\x1bOP")
-    terminal.type("\x1b[17~right hand\r")  # F6: which input?
-    terminal.wait_for("listening to right hand")
-    right.play("90 45 50", "wait 0.2", "80 45 00")
-    terminal.wait_for("1 note")
+    terminal.type("\x1b[17~left hand\r")  # F6: which input?
+    terminal.wait_for("listening to left hand")

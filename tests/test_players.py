@@ -26,7 +26,7 @@ if TYPE_CHECKING:
 NAMES = load_pack("makam").names
 KEYS = PortName("Upright 20:0", "ALSA")
 PAD = PortName("Pad 28:0", "ALSA")
-PLAIN = "plain keys (no bend was sent): each stands for every perde near it"
+PLAIN = "plain keys: each stands for every perde near it"
 
 
 class Wire:
@@ -145,6 +145,17 @@ def test_choosing_another_input_ends_what_sounds_and_forgets_how_it_was_tuned() 
     assert keyboard.input_line(0.0) == "listening to Pad 28:0"
 
 
+def test_the_player_is_asked_when_there_are_several_inputs_and_none_was_named() -> None:
+    room = Room(KEYS, PAD)
+    assert not room.keyboard("upright").asks_input()
+    keyboard = room.keyboard()
+    assert keyboard.asks_input()
+    keyboard.choose("Pad")
+    room.later(keyboard, 0.125)
+    assert not keyboard.asks_input()
+    assert not Room().keyboard().asks_input()
+
+
 def test_an_input_that_is_not_there_is_waited_for() -> None:
     room = Room(KEYS)
     keyboard = room.keyboard()
@@ -235,6 +246,15 @@ def test_after_the_demo_the_line_is_the_players() -> None:
     assert demo.tuning_line() == PLAIN
 
 
+def test_the_demo_asks_for_an_input_only_when_it_is_over() -> None:
+    room = Room(KEYS, PAD)
+    demo, ends_s = demo_in(room)
+    demo.poll(1.0)
+    assert not demo.asks_input()
+    demo.poll(ends_s)
+    assert demo.asks_input()
+
+
 def test_a_keyboard_chosen_during_the_demo_is_opened_after_it() -> None:
     room = Room(KEYS, PAD)
     demo, ends_s = demo_in(room)
@@ -306,6 +326,7 @@ def test_a_replay_has_nothing_to_listen_to() -> None:
     replay = replay_of()
     assert replay.is_over(0.0)
     assert replay.inputs() == ()
+    assert not replay.asks_input()
     assert replay.tuning_line() == "pitches as they were recorded"
     with pytest.raises(PortError) as error:
         replay.choose("Upright")

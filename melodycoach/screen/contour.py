@@ -121,18 +121,24 @@ def _window(line: Sequence[LineNote], room: int, focus: int | None) -> tuple[Seq
 
 
 def _choose_rows(ladder: Sequence[Rung], notes: Sequence[LineNote], rows: int) -> list[_Row]:
-    """Pick the rungs to draw, the highest first: where notes are, where functions are, the rest.
+    """Pick the rungs to draw, the highest first.
 
-    A note between two rungs gets a rung of its own while there is room.
+    The notes off the mode and the degrees that mend them come first, the newest before the others;
+    then final and dominants, then rungs with notes, then the rest. A note between two rungs gets a
+    rung of its own while there is room.
     """
     if rows <= 0:
         return []
-    heights = sorted({rung.height for rung in ladder})
     by_height: dict[float, _Row] = {
         rung.height: _Row(rung.height, rung.name, rung.function, rung.role or rung.function)
         for rung in ladder
     }
+    for note in notes:  # what was off in another mode may be mended by a degree that this one lacks
+        if note.off_mode and note.mend_height is not None and note.mend_height not in by_height:
+            by_height[note.mend_height] = _Row(note.mend_height, note.mend, "", "")
+    heights = sorted(by_height)
     n_notes: dict[float, int] = {}
+    faults: list[tuple[float, ...]] = []
     for note in notes:
         near = _nearest(heights, note.height)
         own = near is None or abs(near - note.height) > _ON_A_RUNG
@@ -140,8 +146,15 @@ def _choose_rows(ladder: Sequence[Rung], notes: Sequence[LineNote], rows: int) -
         if own and height not in by_height:
             by_height[height] = _Row(height, note.name, "", "")
         n_notes[height] = n_notes.get(height, 0) + 1
-    chosen = [row for row in by_height.values() if row.role == "final"][: max(rows // 2, 1)]
-    chosen += [row for row in by_height.values() if row.role == "dominant"][: max(rows // 3, 0)]
+        if note.off_mode:
+            faults.append((height,) if note.mend_height is None else (height, note.mend_height))
+    chosen: list[_Row] = []
+    for fault in reversed(faults):
+        wanted = [by_height[height] for height in dict.fromkeys(fault) if by_height[height] not in chosen]
+        if len(chosen) + len(wanted) < rows:  # one row is left, for the final
+            chosen += wanted
+    for role, most in (("final", max(rows // 2, 1)), ("dominant", rows // 3)):
+        chosen += [row for row in by_height.values() if row.role == role and row not in chosen][:most]
     left = {height: row for height, row in by_height.items() if row not in chosen}
     while left and len(chosen) < rows:
         chosen.append(left.pop(_most_wanted(left, [row.height for row in chosen], n_notes)))
@@ -186,7 +199,6 @@ def _plot(
     ruler = [_Cell(" ", "class:faint")] * max(room, 0)
     heights = sorted(row.height for row in ladder)
     place_of = {row.height: place for place, row in enumerate(ladder)}
-    place_of_name = {row.name: place for place, row in enumerate(ladder)}
     free = 0
     column = 0
     for place, note in enumerate(notes):
@@ -199,9 +211,10 @@ def _plot(
             cells[column] = _Cell(_note_sign(note, note.height - near, signs), style)
             if note.rests and column + 1 < room:
                 cells[column + 1] = _Cell(signs.held, style)
-            if note.off_mode and note.mend in place_of_name and place_of_name[note.mend] != place_of[near]:
-                grid[place_of_name[note.mend]][column] = _Cell(signs.mend, "class:mend")
             if note.off_mode:
+                mended = None if note.mend_height is None else place_of.get(note.mend_height)
+                if mended is not None and mended != place_of[near]:
+                    grid[mended][column] = _Cell(signs.mend, "class:mend")
                 ruler[column] = _Cell(signs.off, "class:off")
             number = str(note.number)
             wanted = note.off_mode or note.number % 5 == 0 or note.number == 1

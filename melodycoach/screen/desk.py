@@ -16,9 +16,9 @@ from melodycoach.screen import entry as typing
 from melodycoach.screen import entry_edit, entry_merge
 from melodycoach.screen import question as asking
 from melodycoach.screen.command import Fresh, Redo, ReplaceText, Undo
-from melodycoach.screen.draw import draw_help, help_lines, picture
+from melodycoach.screen.draw import draw_help, help_lines, picture, standing_words
 from melodycoach.screen.entry_lines import Drawn, moved_up_or_down
-from melodycoach.screen.panels import theory_words
+from melodycoach.screen.question import QuestionKind
 from melodycoach.screen.signs import ASCII, UNICODE
 
 if TYPE_CHECKING:
@@ -26,7 +26,7 @@ if TYPE_CHECKING:
 
     from melodycoach.screen.command import Command
     from melodycoach.screen.entry import Entry
-    from melodycoach.screen.question import Question, QuestionKind
+    from melodycoach.screen.question import Question
     from melodycoach.screen.view import ViewState
 
 
@@ -60,6 +60,7 @@ class Desk:
         self._columns, self._rows = 80, 24
         self._help_from: int | None = None
         self.question: Question | None = None
+        self._asked_unbidden: Question | None = None
         self.view = latest_view()
         self.entry: Entry = typing.entry_of(self.view.tokens)
 
@@ -86,7 +87,11 @@ class Desk:
     # ------------------------------------------------------------------------------- frames
 
     def take_view(self) -> None:
-        """Take in the newest view, and hand over what waited for it."""
+        """Take in the newest view for a frame: hand over what waited for it, ask what it wants asked."""
+        self._take_in()
+        self._ask_for_input()
+
+    def _take_in(self) -> None:
         view = self.view = self._latest_view()
         if self.question is not None:
             self.question = asking.answer_arrived(self.question, view.handled, view.refusals)
@@ -97,8 +102,8 @@ class Desk:
         """Draw everything for a terminal of this size."""
         self._columns, self._rows = columns, rows
         if self._help_from is not None:
-            theory = theory_words(self.view)
-            return Drawn(draw_help(columns, rows, self._help_from, self._ascii, theory), 0, 0)
+            standing = standing_words(self.view)
+            return Drawn(draw_help(columns, rows, self._help_from, self._ascii, standing), 0, 0)
         return picture(self.view, columns, rows, self.entry, self.question, self._ascii)
 
     def _hand_over(self) -> None:
@@ -122,7 +127,7 @@ class Desk:
     def scroll_help(self, step: int) -> None:
         """Move the help by so many lines, as far as it goes."""
         signs = ASCII if self._ascii else UNICODE
-        last = len(help_lines(self._columns, signs, theory_words(self.view))) - self._rows + 1
+        last = len(help_lines(self._columns, signs, standing_words(self.view))) - self._rows + 1
         self._help_from = max(0, min((self._help_from or 0) + step, last))
 
     # ---------------------------------------------------------------------------- questions
@@ -130,6 +135,18 @@ class Desk:
     def ask(self, kind: QuestionKind) -> None:
         """Ask the player for something, in a line above the entry."""
         self.question = asking.ask(kind, self._choices(kind))
+
+    def _ask_for_input(self) -> None:
+        """Ask once which of several inputs to listen to, but not amid a word that is being typed.
+
+        The question goes by itself when there is only one left, unless something is typed in it.
+        """
+        unbidden, wanted = self._asked_unbidden, self.view.status.asks_input
+        if wanted and unbidden is None and self.editing and not typing.has_pending(self.entry):
+            self.ask(QuestionKind.PORT)
+            self._asked_unbidden = self.question
+        elif not wanted and unbidden is not None and self.question is unbidden:
+            self.question = self._asked_unbidden = None
 
     def drop_question(self) -> None:
         """Go back to the entry without an answer."""
@@ -164,7 +181,7 @@ class Desk:
 
         The newest view is taken in first, so that an answer need not wait for the next frame.
         """
-        self.take_view()
+        self._take_in()
         self.entry = change(self.entry)
         self._hand_over()
 

@@ -28,6 +28,7 @@ from melodycoach.screen.panels import (
     draw_status,
     draw_verdict,
     draw_why,
+    log_left_out,
     owed_title,
     theory_words,
     title_line,
@@ -114,7 +115,11 @@ def picture(
         row, column = len(above) + typed.row, typed.column
     else:
         row, column = len(above) - 1, columns - 1
-    lines = [*above, *asked.lines, *_filled(typed.lines, layout.entry), *below]
+    entry_lines = _filled(typed.lines, layout.entry)
+    if len(typed.lines) < layout.entry and layout.status:  # the entry does not need its last row
+        log = log_left_out(view, columns, layout.status, signs)
+        entry_lines[-1] = [("class:status", cut(log, columns, signs.more))]
+    lines = [*above, *asked.lines, *entry_lines, *below]
     lines = tidy_lines(_filled(lines, rows), ascii_only)
     fitted = [fit(line, columns, signs.more) for line in lines]
     return Drawn(fitted, min(max(row, 0), rows - 1), min(column, columns - 1))
@@ -137,7 +142,8 @@ def _attention(view: ViewState, columns: int, layout: Layout, signs: Signs) -> L
     """Say what wants to be noticed now: a change of mode, a note off the mode, else the standing words."""
     off = _fresh_off(view)
     if view.now or off is None:
-        return draw_now(view, columns, signs, theory=bool(view.line) and layout.status < 2)
+        has_its_row = layout.status >= 3 and not (view.status.warning or view.status.notice)
+        return draw_now(view, columns, signs, theory=bool(view.line) and not has_its_row)
     return [("class:off", cut(f"{signs.off} {off_words(off)}", columns, signs.more))]
 
 
@@ -266,15 +272,19 @@ _HELP: tuple[tuple[str, str], ...] = (
 
 
 def draw_help(
-    columns: int, rows: int, first: int = 0, ascii_only: bool = False, theory: str = ""
+    columns: int,
+    rows: int,
+    first: int = 0,
+    ascii_only: bool = False,
+    standing: Sequence[str] = (),
 ) -> list[Line]:
     """Draw the help, from its line number ``first`` on; the last row says how to leave it.
 
-    ``theory`` is said at the end: whose theory the pack shows, and to whom it defers.
+    ``standing`` is said at the end: `standing_words`.
     """
     columns, rows = max(columns, 1), max(rows, 1)
     signs = ASCII if ascii_only else UNICODE
-    lines = help_lines(columns, signs, theory)
+    lines = help_lines(columns, signs, standing)
     room = max(rows - 1, 0)
     first = max(0, min(first, len(lines) - room))
     more = signs.more if first + room < len(lines) else ""
@@ -283,7 +293,12 @@ def draw_help(
     return [fit(line, columns, signs.more) for line in tidy_lines(shown, ascii_only)]
 
 
-def help_lines(columns: int, signs: Signs, theory: str = "") -> list[Line]:
+def standing_words(view: ViewState) -> tuple[str, ...]:
+    """Say whose theory the pack shows and to whom it defers, and where the log goes."""
+    return tuple(text for text in (theory_words(view), view.status.log_line) if text)
+
+
+def help_lines(columns: int, signs: Signs, standing: Sequence[str] = ()) -> list[Line]:
     """Lay out the whole help for a width."""
     values = {name: getattr(signs, name) for name in signs.__slots__}
     label = 15 if columns >= 56 else 2
@@ -299,7 +314,6 @@ def help_lines(columns: int, signs: Signs, theory: str = "") -> list[Line]:
         for place, row in enumerate(rows):
             head = key if place == 0 and label > 2 else ""
             lines.append([("class:key", head.ljust(label)), ("", row)])
-    if theory:
-        lines.append([])
-        lines += [[("class:faint", row)] for row in wrap(theory, columns)]
+    for text in standing:
+        lines += [[], *([("class:faint", row)] for row in wrap(text, columns))]
     return lines

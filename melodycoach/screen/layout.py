@@ -74,7 +74,7 @@ def lay_out(columns: int, rows: int, question_rows: int = 0, complaint: bool = F
         return Layout(Form.SENTENCE, question=question, entry=entry)
     entry = 3 if rows >= 36 else 2 if rows >= 20 else 1
     entry = max(entry, 2) if complaint else entry
-    status = 2 if rows >= 30 else 1 if rows >= 15 else 0
+    status = 3 if rows >= 36 else 2 if rows >= 30 else 1 if rows >= 15 else 0
     if columns < _TWO_COLUMNS or rows < _TWO_ROWS:
         return _stack(columns, rows, question_rows, entry, status)
     body = rows - 3 - question_rows - entry - status

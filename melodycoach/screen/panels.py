@@ -326,30 +326,43 @@ def draw_why(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Lin
 
 
 def draw_status(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line]:
-    """Write the newest warning, then input and tuning, then the theory, then where the log goes."""
+    """Write the newest warning, then input and tuning, then where the log goes, then the theory."""
+    news = _news(view, columns, rows, signs)
+    standing = _standing(view, columns, rows - len(news), signs)
+    return [*news, *([("class:status", cut(text, columns, signs.more))] for text in standing)]
+
+
+def log_left_out(view: ViewState, columns: int, rows: int, signs: Signs) -> str:
+    """Say where the log goes, if so many rows of status have no room for it; else nothing."""
+    log = view.status.log_line
+    standing = _standing(view, columns, rows - len(_news(view, columns, rows, signs)), signs)
+    return "" if any(text.endswith(log) for text in standing) else log
+
+
+def _news(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Line]:
+    """Write the warning, or what went well."""
+    status = view.status
     if rows <= 0:
         return []
-    lines: list[Line] = []
-    status = view.status
     if status.warning:
         texts = wrap_within(status.warning, columns - 2, rows, signs.more)
-        lines += [
+        return [
             [("class:warning", f"{signs.warning} " if place == 0 else "  "), ("class:warning", text)]
             for place, text in enumerate(texts)
         ]
-    elif status.notice:
-        lines.append([("class:heard", cut(f"{signs.heard} {status.notice}", columns, signs.more))])
-    gap = f" {signs.dot} "
+    if status.notice:
+        return [[("class:heard", cut(f"{signs.heard} {status.notice}", columns, signs.more))]]
+    return []
+
+
+def _standing(view: ViewState, columns: int, rows: int, signs: Signs) -> list[str]:
+    """Say what holds all the time, in one text for each row; a single row takes what fits into it."""
+    status, gap = view.status, f" {signs.dot} "
     world = gap.join(part for part in (status.input_line, status.tuning_line) if part)
     whole = gap.join(part for part in (world, status.log_line) if part)
-    if width(whole) <= columns:
-        world, log = whole, ""
-    else:
-        log = status.log_line
-    for text in (world, theory_words(view), log):
-        if text and len(lines) < rows:
-            lines.append([("class:status", cut(text, columns, signs.more))])
-    return lines[:rows]
+    if rows == 1 and width(whole) <= columns:
+        world = whole
+    return [text for text in (world, status.log_line, theory_words(view)) if text][: max(rows, 0)]
 
 
 HINTS = (

@@ -63,9 +63,9 @@ class LineNote:
     """One note of the line.
 
     ``height`` is in units from A4, for the contour. ``off_mode`` is empty, or says in a few words
-    what is wrong; ``mend`` is the perde that would mend it. ``mark`` is the breath, phrase end or
-    bar line that follows, or empty. ``item`` is the place of the note in `ViewState.tokens`, -1
-    where that is not known.
+    what is wrong; ``mend`` is the perde that would mend it and ``mend_height`` its height in units
+    from A4. ``mark`` is the breath, phrase end or bar line that follows, or empty. ``item`` is the
+    place of the note in `ViewState.tokens`, -1 where that is not known.
     """
 
     number: int
@@ -78,6 +78,7 @@ class LineNote:
     mend: str = ""
     mark: str = ""
     item: int = -1
+    mend_height: float | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -110,7 +111,8 @@ class Status:
     ``input_line`` says which port is open or lost, or that notes are typed. ``tuning_line`` says
     which tuning is believed and why. ``log_line`` says where the log goes. ``warning`` is the
     newest thing that needs the player's attention, or empty; ``notice`` is the newest thing that
-    went well and is worth a word.
+    went well and is worth a word. ``asks_input``: there are several inputs, and the player has to
+    say which one.
     """
 
     input_line: str = ""
@@ -118,6 +120,7 @@ class Status:
     log_line: str = ""
     warning: str = ""
     notice: str = ""
+    asks_input: bool = False
 
 
 @dataclass(frozen=True, slots=True)

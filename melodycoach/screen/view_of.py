@@ -303,7 +303,7 @@ def _line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[Li
     first = max(len(places) - NOTES_SHOWN, 0)
     leader = leading(session.model, session.line.states[-1]).best if session.target is None else None
     judged_by = judges(session.model, session.line.states, heard, (mode, final_units), leader)
-    known: dict[tuple[float, InputKind, int], tuple[float, str, str, str, str]] = {}
+    known: dict[tuple[float, InputKind, int], _Judgement] = {}
     rows = []
     for number in range(first, len(places)):
         at, note = places[number], heard[number]
@@ -313,32 +313,45 @@ def _line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[Li
         key = (note.pitch_cents, note.kind, judge.since)
         if key not in known:
             known[key] = _judged(note, judge, names)
-        height, name, written, wrong, mend = known[key]
+        same = known[key]
         rows.append(
             LineNote(
                 number=number + 1,
-                height=height,
-                name=name,
-                written=written,
+                height=same.height,
+                name=same.name,
+                written=same.written,
                 length_s=note.length_s,
                 rests=note.rests,
-                off_mode=wrong,
-                mend=mend,
+                off_mode=same.off_mode,
+                mend=same.mend,
                 mark=marks[-1].value if marks else "",
                 item=at,
+                mend_height=same.mend_height,
             )
         )
     return tuple(rows)
 
 
-def _judged(note: Heard, judge: Judge, names: PitchNames) -> tuple[float, str, str, str, str]:
+class _Judgement(NamedTuple):
+    """What notes of one pitch have in common; the words are those of `LineNote`."""
+
+    height: float
+    name: str
+    written: str
+    off_mode: str
+    mend: str
+    mend_height: float | None
+
+
+def _judged(note: Heard, judge: Judge, names: PitchNames) -> _Judgement:
     """Give height, name and written name of a note, what is wrong with it, and what mends it."""
     mode, final_units = judge.mode, judge.final_units
     off = off_mode(mode, final_units, note, names.system)
     wrong, mend = off_mode_words(off, mode, names) if off is not None else ("", "")
     height = meant_units(mode, final_units, note.pitch_cents, note.kind, names.system)
     cents = names.system.units_to_cents(height)
-    return round(height, 2), names.name(cents), str(names.spell(cents)), wrong, mend
+    mend_height = float(final_units + off.mend_degree) if off is not None else None
+    return _Judgement(round(height, 2), names.name(cents), str(names.spell(cents)), wrong, mend, mend_height)
 
 
 def _ladder(mode: Mode, final_units: int, names: PitchNames) -> tuple[Rung, ...]:

@@ -51,9 +51,11 @@ def notes_of(text: str) -> tuple[LineNote, ...]:
         written, _, units = BY_NAME[name]
         off = "not in Hüseynî, 2 commas below hüseynî" if "!" in word else ""
         mend = "hüseynî" if off else ""
+        height = 31 if off else None
         rests = ":" in word
+        length_s = 0.7 if rests else 0.3
         notes.append(
-            LineNote(len(notes) + 1, units, name, written, 0.7 if rests else 0.3, rests, off, mend, item=item)
+            LineNote(len(notes) + 1, units, name, written, length_s, rests, off, mend, "", item, height)
         )
     return tuple(notes)
 
@@ -106,9 +108,9 @@ WHY = (
 )
 
 WORLD = Status(
-    input_line="input: USB Keys 61 MIDI 1",
-    tuning_line="tuning: plain 12 keys, nothing else was received",
-    log_line="log: 2031-05-04T10-15.events.jsonl",
+    input_line="listening to USB Keys 61:USB Keys 61 MIDI 1 20:0",
+    tuning_line="plain keys: each stands for every perde near it",
+    log_line="log: ~/.local/share/melodycoach/sessions/2031-05-04-101502.events.jsonl",
 )
 
 
@@ -132,8 +134,8 @@ def base_view(phrase: str = PHRASE) -> ViewState:
         n_notes=len(line),
         reading="written pitch: each mode on its own final",
         restricted="all 48 modes of Makam",
-        theory="Arel-Ezgi-Uzdilek theory.",
-        caution="Schools differ: defer to your teacher.",
+        theory="Arel-Ezgi-Uzdilek theory, as commonly taught.",
+        caution="Schools and regions differ: where yours does, follow your teacher.",
         can_undo=True,
         can_redo=False,
         status=WORLD,
@@ -151,7 +153,7 @@ def hand_made_views() -> dict[str, ViewState]:
         owed=tuple(replace(row, heard_at=None) for row in OWED),
         why=(),
         can_undo=False,
-        status=replace(WORLD, input_line="no MIDI input; notes are typed", tuning_line=""),
+        status=replace(WORLD, input_line="no keyboard found; type notes, or plug one in at any time"),
     )
     undecided = replace(
         base_view("nevâ hüseynî nevâ çargâh: ,"),
@@ -191,7 +193,8 @@ def hand_made_views() -> dict[str, ViewState]:
         decided,
         status=replace(
             WORLD,
-            input_line="input lost: USB Keys 61 MIDI 1; it is opened again when it comes back",
+            input_line="USB Keys 61:USB Keys 61 MIDI 1 has gone; plug it in again and it goes on by itself",
+            log_line="no log: see the warning",
             warning="the log cannot be written: no space left on device; playing goes on without it",
         ),
         refusals=(Refusal(1, "entry: column 1: 'H5' is no note; did you mean 'A5'?", ("H5",)),),

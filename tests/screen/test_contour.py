@@ -61,11 +61,55 @@ def test_a_resting_note_is_held_and_a_breath_crosses_the_ladder(views: Mapping[s
 
 
 def test_a_note_off_the_mode_shows_its_sign_and_where_it_ought_to_be(views: Mapping[str, ViewState]) -> None:
-    view = small(views["decided"], note(1, 8, "segâh", off_mode="not in it", mend="çargâh"))
+    view = small(views["decided"], note(1, 8, "segâh", off_mode="not in it", mend="çargâh", mend_height=13.0))
     lines = drawn(view, 40, 6)
     assert "◌" in lines[0]
     assert "✗" in lines[1]
     assert lines[-1].strip() == "✗1"
+
+
+def rungs(lines: list[str]) -> list[str]:
+    return [line.split("┤")[0].split()[-1] for line in lines if "┤" in line]
+
+
+def test_when_rows_are_few_a_note_off_the_mode_and_the_degree_that_mends_it_keep_theirs(
+    views: Mapping[str, ViewState],
+) -> None:
+    kurdi = note(1, 4, "kürdî", off_mode="not in it", mend="segâh", mend_height=8.0)
+    others = [note(2 + i, 22 + 9 * (i % 2), ("nevâ", "hüseynî")[i % 2]) for i in range(12)]
+    lines = drawn(replace(views["decided"], line=(kurdi, *others)), 80, 4)
+    assert rungs(lines) == ["hüseynî", "segâh", "kürdî", "dügâh"]
+    assert "◌" in lines[1]
+    assert "✗" in lines[2]
+
+
+def test_of_many_notes_off_the_mode_the_newest_keep_their_rows_and_the_final_has_one(
+    views: Mapping[str, ViewState],
+) -> None:
+    notes = (
+        note(1, 4, "kürdî", off_mode="not in it", mend="segâh", mend_height=8.0),
+        note(2, 17, "hicaz", off_mode="not in it", mend="çargâh", mend_height=13.0),
+        note(3, 27, "bayatî", off_mode="not in it", mend="nevâ", mend_height=22.0),
+    )
+    lines = drawn(replace(views["decided"], line=notes), 80, 5)
+    assert rungs(lines) == ["bayatî", "nevâ", "hicaz", "çargâh", "dügâh"]
+
+
+def test_a_degree_that_mends_but_is_no_rung_of_this_ladder_gets_a_row(views: Mapping[str, ViewState]) -> None:
+    # it was off in the mode that the line has left since
+    off = note(1, 8, "segâh", off_mode="not in Kürdî", mend="kürdî", mend_height=4.0)
+    lines = drawn(small(views["decided"], off), 40, 4)
+    assert rungs(lines) == ["çargâh", "segâh", "kürdî", "dügâh"]
+    assert "◌" in lines[2]
+
+
+def test_without_room_for_the_degree_that_mends_it_only_the_note_is_marked(
+    views: Mapping[str, ViewState],
+) -> None:
+    off = note(1, 8, "segâh", off_mode="not in it", mend="çargâh", mend_height=13.0)
+    [line] = drawn(small(views["decided"], off), 40, 1)
+    assert "✗" in line
+    assert "◌" not in line
 
 
 def test_the_newest_notes_are_shown_and_numbered_when_there_is_no_room_for_all(

@@ -9,7 +9,7 @@ import pytest
 
 from melodycoach.screen import entry_edit
 from melodycoach.screen import question as asking
-from melodycoach.screen.command import Command, Fresh, Redo, ReplaceText, SetTarget, Undo
+from melodycoach.screen.command import Command, Fresh, Redo, ReplaceText, SetPort, SetTarget, Undo
 from melodycoach.screen.desk import Desk
 from melodycoach.screen.question import QuestionKind
 from melodycoach.screen.text import plain_text
@@ -101,6 +101,65 @@ def test_an_answer_of_nothing_closes_the_question_without_a_command(session: Ses
     assert session.desk.editing
 
 
+def with_inputs(session: Session, several: bool) -> None:
+    session.show(status=replace(session.view.status, asks_input=several))
+
+
+def test_which_of_several_inputs_is_asked_once_and_the_answer_is_sent(session: Session) -> None:
+    with_inputs(session, several=True)
+    assert "listen to which input?" in session.text()
+    assert "Hicaz" in session.text()  # what is on offer here
+    with_inputs(session, several=True)
+    session.desk.change_question(lambda question: asking.typed(question, "ra"))
+    session.desk.answer()
+    assert session.commands == [SetPort("Rast", 1)]
+    session.show(handled=1)
+    assert session.desk.editing
+    with_inputs(session, several=True)
+    assert session.desk.editing
+
+
+def test_a_player_who_escapes_from_the_question_of_inputs_is_not_asked_again(session: Session) -> None:
+    with_inputs(session, several=True)
+    session.desk.drop_question()
+    with_inputs(session, several=True)
+    with_inputs(session, several=False)
+    with_inputs(session, several=True)
+    assert session.desk.editing
+
+
+def test_the_question_of_inputs_waits_for_a_word_the_help_and_another_question(session: Session) -> None:
+    desk = session.desk
+    desk.open_help()
+    with_inputs(session, several=True)
+    assert desk.question is None
+    desk.close_help()
+    desk.ask(QuestionKind.TARGET)
+    desk.take_view()
+    assert desk.question is not None
+    assert desk.question.kind is QuestionKind.TARGET
+    desk.drop_question()
+    desk.type_text("C")
+    desk.take_view()
+    assert desk.question is None
+    desk.undo()
+    desk.take_view()
+    assert desk.asking
+
+
+def test_the_question_of_inputs_goes_when_only_one_is_left_unless_an_answer_was_begun(
+    session: Session,
+) -> None:
+    with_inputs(session, several=True)
+    with_inputs(session, several=False)
+    assert session.desk.editing
+    with_inputs(session, several=True)
+    assert session.desk.asking
+    session.desk.change_question(lambda question: asking.typed(question, "r"))
+    with_inputs(session, several=False)
+    assert session.desk.asking
+
+
 def test_the_help_covers_the_screen_and_scrolls_to_its_end_and_no_further(session: Session) -> None:
     desk = session.desk
     desk.open_help()
@@ -108,6 +167,7 @@ def test_the_help_covers_the_screen_and_scrolls_to_its_end_and_no_further(sessio
     assert (desk.helping, desk.asking, desk.editing) == (True, False, False)
     desk.scroll_help(999)
     assert "teacher." in session.text(60, 15)
+    assert "~/.local/share/melodycoach/sessions/" in session.text(60, 15)
     end = session.text(60, 15)
     desk.scroll_help(5)
     assert session.text(60, 15) == end

@@ -96,7 +96,7 @@ def test_plain_letters_are_as_in_the_golden_file(
 def test_the_help_is_as_in_the_golden_file(
     size: tuple[int, int], check_golden: Callable[[Path, str], None]
 ) -> None:
-    lines = draw_help(*size, theory="Arel-Ezgi-Uzdilek theory. Schools differ: defer to your teacher.")
+    lines = draw_help(*size, standing=("Arel-Ezgi-Uzdilek theory. Schools differ.", "log: ~/a.events.jsonl"))
     text = "".join(f"{plain_text(line)}|\n" for line in lines)
     check_golden(GOLDEN / f"help.{size[0]}x{size[1]}.txt", text)
 
@@ -146,6 +146,45 @@ def test_whose_theory_it_is_stands_on_the_first_screen_of_every_full_size(
 ) -> None:
     for size in SIZES:
         assert "Arel-Ezgi-Uzdilek theory" in text_of(views["nothing"], *size)
+
+
+LOG = "log: ~/.local/share/melodycoach/sessions/2031-05-04-101502.events.jsonl"
+
+
+def test_input_tuning_log_and_theory_are_all_there_from_thirty_six_rows_on(
+    views: dict[str, ViewState],
+) -> None:
+    for name in ("nothing", "decided", "long"):
+        text = text_of(views[name], 120, 36)
+        for words in (views[name].status.input_line, "stands for every perde near it", LOG):
+            assert words in text
+        assert "Arel-Ezgi-Uzdilek theory" in text
+
+
+@pytest.mark.parametrize("rows", [20, 24, 30])
+def test_where_the_log_goes_is_said_on_lower_screens_as_long_as_the_entry_leaves_a_row(
+    rows: int, views: dict[str, ViewState]
+) -> None:
+    lines = text_of(views["decided"], 80, rows).splitlines()
+    assert [line for line in lines if LOG in line] == [f"{LOG:80}|"]
+    assert sum("listening to USB Keys 61" in line for line in lines) == 1
+    assert (LOG in text_of(views["long"], 80, rows)) == (rows == 30)
+
+
+def test_a_warning_does_not_drive_out_where_the_log_goes(views: dict[str, ViewState]) -> None:
+    view = replace(views["decided"], status=replace(views["decided"].status, warning="no mode 'rats'"))
+    for size in ((80, 24), (120, 40)):
+        text = text_of(view, *size)
+        assert "! no mode 'rats'" in text
+        assert text.count(LOG) == 1
+        assert "Arel-Ezgi-Uzdilek theory" in text
+
+
+def test_a_log_that_stands_beside_the_input_is_not_said_twice(views: dict[str, ViewState]) -> None:
+    status = Status(input_line="listening to Pad", log_line="log: a.events.jsonl")
+    text = text_of(replace(views["decided"], status=status), 80, 24)
+    assert text.count("a.events.jsonl") == 1
+    assert "listening to Pad · log: a.events.jsonl" in text
 
 
 def test_a_refusal_is_not_said_twice(views: dict[str, ViewState]) -> None:
@@ -219,6 +258,7 @@ NOTES = st.builds(
     WORDS,
     st.sampled_from(["", ",", ".", "|"]),
     st.integers(-1, 500),
+    st.none() | st.floats(-80, 120),
 )
 RUNGS = st.builds(
     Rung,
@@ -278,7 +318,7 @@ def test_any_view_fills_any_size_exactly(
 def test_the_help_fills_any_size_exactly(
     columns: int, rows: int, first: int, ascii_only: bool, theory: str
 ) -> None:
-    lines = draw_help(columns, rows, first, ascii_only, theory)
+    lines = draw_help(columns, rows, first, ascii_only, (theory, theory))
     assert len(lines) == rows
     assert all(line_width(line) == columns for line in lines)
 

@@ -14,6 +14,7 @@ from melodycoach.screen.panels import (
     draw_verdict,
     draw_why,
     gain_words,
+    log_left_out,
     owed_title,
     theory_words,
     title_line,
@@ -205,13 +206,27 @@ def test_a_warning_comes_before_everything_else(views: Mapping[str, ViewState]) 
 
 def test_the_status_says_input_tuning_log_and_theory_as_room_allows(views: Mapping[str, ViewState]) -> None:
     view = views["decided"]
-    one, two = texts(draw_status(view, 120, 2, UNICODE))
-    assert one == (
-        "input: USB Keys 61 MIDI 1 · tuning: plain 12 keys, nothing else was received · "
-        "log: 2031-05-04T10-15.events.jsonl"
+    world = (
+        "listening to USB Keys 61:USB Keys 61 MIDI 1 20:0 · plain keys: each stands for every perde near it"
     )
-    assert two.startswith("Arel-Ezgi-Uzdilek theory")
-    assert texts(draw_status(view, 80, 3, UNICODE))[2].startswith("log: ")
+    log = view.status.log_line
+    assert texts(draw_status(view, 120, 3, UNICODE)) == [world, log, theory_words(view)]
+    assert texts(draw_status(view, 120, 2, UNICODE)) == [world, log]
+    assert texts(draw_status(view, 200, 1, UNICODE)) == [f"{world} · {log}"]
+    assert texts(draw_status(view, 120, 1, UNICODE)) == [world]
+
+
+def test_where_the_log_goes_is_left_out_only_where_the_rows_do_not_hold_it(
+    views: Mapping[str, ViewState],
+) -> None:
+    view = views["decided"]
+    log = view.status.log_line
+    assert log_left_out(view, 120, 1, UNICODE) == log
+    assert log_left_out(view, 200, 1, UNICODE) == ""
+    assert log_left_out(view, 40, 2, UNICODE) == ""
+    noticed = replace(view, status=replace(view.status, notice="saved as a.txt"))
+    assert log_left_out(noticed, 120, 2, UNICODE) == log
+    assert log_left_out(replace(view, status=replace(view.status, log_line="")), 9, 0, UNICODE) == ""
 
 
 def test_theory_and_caution_are_two_sentences(views: Mapping[str, ViewState]) -> None:

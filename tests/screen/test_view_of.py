@@ -272,7 +272,8 @@ def test_a_note_off_the_mode_is_marked_with_the_perde_that_mends_it() -> None:
     view = typed("E5 D5 C#5 D5", "huseyni", "rast", target="huseyni")
     assert [note.number for note in view.line if note.off_mode] == [3]
     off = view.line[2]
-    assert (off.name, off.mend) == ("nim hicaz", "çargâh")
+    assert (off.name, off.mend, off.mend_height) == ("nim hicaz", "çargâh", 13.0)
+    assert {note.mend_height for note in view.line if not note.off_mode} == {None}
     # C#5 is 17 commas above A4, çargâh 13: Arel-Ezgi-Uzdilek, nine commas to a whole tone
     assert off.off_mode == "not in Hüseynî, 4 commas above çargâh"
 
