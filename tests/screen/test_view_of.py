@@ -29,16 +29,10 @@ from melodycoach.core.parameters import ScoringParameters
 from melodycoach.core.scorer import announced, leading, log_odds, mode_posterior
 from melodycoach.core.session import SessionState, apply, begin
 from melodycoach.core.stretch import Stretch
+from melodycoach.screen.line_of import NOTES_SHOWN, Judge, judges
+from melodycoach.screen.text import percent
 from melodycoach.screen.view import Status, ViewState
-from melodycoach.screen.view_of import (
-    LEANINGS_SHOWN,
-    NOTES_SHOWN,
-    REASONS_SHOWN,
-    Judge,
-    ViewMaker,
-    judges,
-    percent,
-)
+from melodycoach.screen.view_of import LEANINGS_SHOWN, REASONS_SHOWN, ViewMaker
 from melodycoach.sources.note_text import read_tokens
 from melodycoach.sources.pack_file import load_pack
 
