@@ -158,7 +158,9 @@ def ladder(mode: Mode, final_units: int, names: PitchNames) -> tuple[Rung, ...]:
     for degree in mode.degrees:
         if degree in mode.passing:
             continue
-        function = function_of(mode, degree, names.system.divisions)
+        # what a degree is itself comes before what it is as the octave of another: yegâh in Rast
+        own = degree in mode.suspended and degree not in (*mode.dominants, *mode.leading)
+        function = Function.SUSPENDED if own else function_of(mode, degree, names.system.divisions)
         leads = degree == 0 or degree in mode.dominants  # their octaves get no guide line
         at_home = leads or degree in (*mode.leading, *mode.suspended)  # nor is their octave the karar
         height = final_units + degree

@@ -313,6 +313,14 @@ def test_octaves_of_final_and_dominant_get_no_guide_line() -> None:
     assert [rung.function for rung in ladder if rung.height == 53] == [""]
 
 
+def test_a_degree_that_is_an_asma_karar_itself_is_not_called_by_what_its_octave_is() -> None:
+    # the pack: in Rast yegâh is a place of asma karar, nevâ the dominant; in Sûzinâk gerdâniye is one
+    rast = {rung.name: rung.function for rung in typed("", "rast", target="rast").ladder}
+    assert (rast["yegâh"], rast["nevâ"], rast["rast"]) == ("asma karar", "güçlü", "karar")
+    suzinak = {rung.name: rung.function for rung in typed("", "suzinak", target="suzinak").ladder}
+    assert (suzinak["gerdâniye"], suzinak["rast"]) == ("asma karar", "karar")
+
+
 def test_passing_colours_are_no_rungs() -> None:
     mode = next(mode for mode in MAKAM.modes if mode.passing)
     shown = {rung.height - mode.final_units for rung in typed("", target=mode.slug).ladder}
