@@ -411,3 +411,36 @@ def test_a_final_in_the_header_is_taken_as_given_and_saved_again(coach: Coach, t
     assert asked(coach, Open(str(path))).reading == "final given: nevâ"
     asked(coach, Save(str(path)))
     assert path.read_text(encoding="utf-8").startswith("final: D5\n")
+
+
+@pytest.mark.parametrize(("word", "aim", "mend"), [("B4", "rast", "segâh"), ("Bb4+1", "nihavend", "kürdî")])
+def test_a_typed_note_a_comma_off_is_another_perde_and_is_marked(
+    coach: Coach, word: str, aim: str, mend: str
+) -> None:
+    # bûselik lies a comma over Rast's segâh, dik kürdî a comma over Nihavend's kürdî: common practice
+    view = asked(coach, SetTarget(aim), ReplaceText(0, 0, f"G4 A4 {word} A4"))
+    assert [(note.number, note.mend) for note in view.line if note.off_mode] == [(3, mend)]
+
+
+def test_leanings_and_ladder_agree_on_the_octave_of_a_low_line(coach: Coach) -> None:
+    low = "G3:2 A3 B3-1 C4 D4:2 , D4 E4 D4 C4 B3-1:2 , C4 B3-1 A3 G3:2 F#3 G3:3 ."
+    view = asked(coach, SetFinal("any"), SetOnly("rast, hicaz"), ReplaceText(0, 0, low))
+    [karar] = [rung.name for rung in view.ladder if rung.role == "final"]
+    assert (view.leanings[0].name, view.leanings[0].final, karar) == ("Rast", "kaba rast", "kaba rast")
+
+
+def test_an_opening_is_not_what_to_play_next_once_a_phrase_has_ended(coach: Coach) -> None:
+    phrase = "D5 Eb5+1 D5:2 , D5 Eb5+1 D5 C5 B4-1:2 Bb4 B4-1:3"
+    view = asked(coach, SetOnly(""), SetTarget("huzzam"), ReplaceText(0, 0, f"{phrase} ."))
+    owed = [row for row in view.owed if row.heard_at is None and row.need != "colour"]
+    openings = [place for place, row in enumerate(owed) if row.kind.startswith("opening")]
+    assert openings == list(range(len(owed) - len(openings), len(owed)))
+
+
+def test_a_change_of_mode_does_not_reach_back_over_the_end_of_a_phrase(coach: Coach) -> None:
+    huseyni = "D5 E5 D5 E5 F#5 E5:2 , F#5 G5 F#5 E5:2 , G5 F5 E5 D5 C5:2 , D5 C5 B4-1 A4 G4 A4:3 ."
+    karcigar = "D5 Eb5+1 F#5 G5 F#5 Eb5+1 D5:2 , D5 Eb5+1 F#5 G5 F#5 Eb5+1 D5:2"
+    asked(coach, SetOnly(""), ReplaceText(0, 0, f"{huseyni} {karcigar}"))
+    change = coach.session.line.states[-1].change
+    assert change.seam_at is not None
+    assert change.seam_at >= 22  # the first phrase has 21 notes

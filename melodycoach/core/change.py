@@ -96,6 +96,8 @@ class ChangeState:
         The note at which a mode gave way to another one last, or None.
     seam_at
         The first note of the stretch in that other mode, as found at ``changed_at``, or None.
+    phrase_from
+        The first note of the phrase: a seam does not reach back over a phrase end.
     """
 
     log_belief: FloatArray
@@ -110,6 +112,7 @@ class ChangeState:
     announced: int = NONE
     changed_at: int | None = None
     seam_at: int | None = None
+    phrase_from: int = 1
 
 
 def start_change(log_prior: FloatArray) -> ChangeState:
@@ -119,7 +122,12 @@ def start_change(log_prior: FloatArray) -> ChangeState:
 
 
 def advance_change(
-    state: ChangeState, nats: FloatArray, field: Field, n_notes: int, parameters: ScoringParameters
+    state: ChangeState,
+    nats: FloatArray,
+    field: Field,
+    n_notes: int,
+    parameters: ScoringParameters,
+    opens_phrase: bool = False,
 ) -> ChangeState:
     """Give the filter's state after one more note.
 
@@ -131,7 +139,11 @@ def advance_change(
         Who competes, the same at every note.
     n_notes
         The number of this note.
+    opens_phrase
+        The note before it ended a phrase.
     """
+    if opens_phrase:
+        state = replace(state, phrase_from=n_notes)
     past = (*state.past, state.total)[-parameters.change_window :]
     state = replace(state, total=sealed(state.total + nats), past=past)
     if state.reference == NONE:
@@ -188,7 +200,10 @@ def _next(
     grown[state.reference] = -np.inf
     best = int((grown + field.log_prior).argmax())
     if grown[best] > 0 and departure_nats(grown, field.log_prior) >= parameters.change_nats:
-        back = min(n_notes + 1 - int(risen_from[best]), len(state.past))
+        rose = int(risen_from[best])
+        if state.phrase_from <= n_notes + 1 - parameters.change_notes:
+            rose = max(rose, state.phrase_from)
+        back = min(n_notes + 1 - rose, len(state.past))
         keeps_final = field.final_units == field.final_units[state.reference]
         base = sealed(state.past[-back] - parameters.same_final_nats * keeps_final)
         to = int((field.log_prior + state.total - base).argmax())
@@ -201,7 +216,7 @@ def _next(
                 reference=to,
                 announced=to,
                 changed_at=n_notes if moved else state.changed_at,
-                seam_at=n_notes + 1 - back if moved else state.seam_at,
+                seam_at=max(n_notes + 1 - back, state.phrase_from) if moved else state.seam_at,
             )
     return _followed(state, field.log_prior, parameters)
 

@@ -29,8 +29,9 @@ if TYPE_CHECKING:
 
     _Places: TypeAlias = tuple[tuple[int, float], ...]
 
-TOLERANCE_COMMAS = {InputKind.TYPED: 1.5, InputKind.TUNED: 1.5, InputKind.RECORDED: 2.0}
-"""How far a pitch may lie from the degree that it stands for; plain keys are compared as keys."""
+TOLERANCE_COMMAS = {InputKind.TYPED: 0.75, InputKind.TUNED: 1.5, InputKind.RECORDED: 2.0}
+"""How far a pitch may lie from the degree that it stands for, as written or as played; plain keys are
+compared as keys. What is typed is meant: a comma off is another perde."""
 
 
 class Function(StrEnum):

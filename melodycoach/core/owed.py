@@ -101,6 +101,8 @@ class StepTrack:
         while it is owed.
     n_notes
         How many notes were followed.
+    has_closed
+        A phrase has ended: the line can no longer open.
     """
 
     mode: Mode
@@ -110,6 +112,7 @@ class StepTrack:
     n_notes: int
     _plan: _Plan = field(repr=False)
     _under_way: tuple[tuple[int, int], ...] = field(default=(), repr=False)
+    has_closed: bool = False
 
     @property
     def owed(self) -> tuple[CharacteristicStep, ...]:
@@ -225,7 +228,10 @@ def follow(track: StepTrack, heard: Heard) -> StepTrack:
     if heard_at is not track.heard_at:
         after = {c: n for c, n in after.items() if heard_at[plan.step_at[c % plan.n_places]] is None}
     under_way = () if heard.closes else tuple(after.items())
-    return StepTrack(track.mode, track.final_units, heard_at, heard_octave, number, plan, under_way)
+    has_closed = track.has_closed or heard.closes
+    return StepTrack(
+        track.mode, track.final_units, heard_at, heard_octave, number, plan, under_way, has_closed
+    )
 
 
 def _places(plan: _Plan, heard: Heard) -> tuple[int, ...]:

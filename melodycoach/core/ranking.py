@@ -18,7 +18,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from melodycoach.core.mode import Need
+from melodycoach.core.mode import Need, StepKind
 from melodycoach.core.note import Heard, InputKind
 from melodycoach.core.pitch import KEY_CENTS, key_of
 from melodycoach.core.scorer import advance, temper
@@ -93,7 +93,7 @@ def rank_owed(
     -------
     tuple of OwedStep
         The best next step first: those owed by gain, core before usual at like gain, then colour
-        by gain.
+        by gain; openings last once a phrase has ended, since the line is open.
     """
     before = _nats(model, state)
     odds = _log_odds(before, hypothesis, rival)
@@ -107,12 +107,13 @@ def rank_owed(
         lost[model.mode_index[hypothesis]] = -np.inf
         rules_out = int(lost.argmax()) if len(lost) > 1 else None
         ranked.append(OwedStep(step, pitches, _log_odds(after, hypothesis, rival) - odds, rules_out))
-    return tuple(sorted(ranked, key=_order))
+    return tuple(sorted(ranked, key=lambda owed: _order(owed, track.has_closed)))
 
 
-def _order(owed: OwedStep) -> tuple[bool, float]:
+def _order(owed: OwedStep, has_closed: bool) -> tuple[bool, bool, float]:
     worth = owed.gain_nats + (CORE_NATS if owed.step.need is Need.CORE else 0.0)
-    return owed.step.need is Need.COLOUR, -worth
+    too_late = has_closed and owed.step.kind is StepKind.OPENING
+    return owed.step.need is Need.COLOUR, too_late, -worth
 
 
 def _log_odds(nats: FloatArray, hypothesis: int, rival: int | None) -> float:

@@ -145,7 +145,8 @@ def advance(model: ScoringModel, state: ScorerState, heard: Heard) -> ScorerStat
     latest = (*state.latest, heard)[-model.parameters.closing_notes :]
     fresh *= model.parameters.hearing[heard.kind].change_power
     field = Field(model.n_modes, model.log_prior, model.final_units)
-    change = advance_change(state.change, fresh, field, n_notes, model.parameters)
+    opens_phrase = bool(state.latest) and state.latest[-1].closes
+    change = advance_change(state.change, fresh, field, n_notes, model.parameters, opens_phrase)
     return ScorerState(loglik, state.weight + weight, n_notes, sealed(context), memory, latest, change)
 
 

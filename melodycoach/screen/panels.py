@@ -193,7 +193,7 @@ def draw_owed(view: ViewState, columns: int, rows: int, signs: Signs) -> list[Li
 def _best(row: OwedRow, columns: int, signs: Signs) -> list[Line]:
     """Draw the best owed step: what it is, its perdes, its written notes, the keys to press."""
     right = f"{row.need} {gain_words(row.gain_nats, signs)}"
-    head = f"{signs.next} play next: {row.kind}"
+    head = f"{signs.next} {'play next' if row.gain_nats > 0 else 'still owed'}: {row.kind}"
     if width(head) + width(right) + 1 > columns:
         head = f"{signs.next} next: {row.kind}"
     lines = [_spread([("class:next", head)], [("class:next", right)], columns, signs)]

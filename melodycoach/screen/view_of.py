@@ -31,6 +31,9 @@ if TYPE_CHECKING:
     from melodycoach.core.session import Line, SessionState
 
 LEANINGS_SHOWN = 12
+LEAST_LIKELY = 0.01
+"""A mode below this is listed with its final as written, in whatever octave the line lies."""
+
 REASONS_SHOWN = 8
 
 
@@ -175,12 +178,14 @@ def _leaning_rows(session: SessionState, state: ScorerState) -> tuple[LeaningRow
     rows = []
     for index in shown:
         mode = model.modes[index]
-        final = model.final_units.reshape(-1, model.n_modes)[by_hypothesis[:, index].argmax(), index]
+        hypothesis = int(by_hypothesis[:, index].argmax()) * model.n_modes + index
+        is_likely = by_mode[index] >= LEAST_LIKELY  # where the others stand is not worth the work
+        final = standing_final(model, hypothesis, session.line.heard if is_likely else ())
         rows.append(
             LeaningRow(
                 mode_id=mode.id,
                 name=mode.name,
-                final=session.pack.names.name_at(int(final)),
+                final=session.pack.names.name_at(final),
                 probability=float(by_mode[index]),
                 change=float(by_mode[index] - before[index]),
                 target=target is not None and mode.id == target.id,

@@ -53,8 +53,9 @@ def found(units: float, kind: InputKind = TYPED, of: Mode | None = None) -> int 
         (0, 0),
         (8, 8),
         (7, 8),  # as played
-        (5.6, 8),  # 1.4 commas under the played degree
-        (5.4, None),  # 1.6 commas under it, 2.6 under the written one
+        (6.3, 8),  # 0.7 commas under the played degree
+        (6.2, None),  # 0.8 commas under it, 1.8 under the written one
+        (9, None),  # a comma over the written one: another perde
         (10, None),
         (27, 27),  # a passing colour belongs to the mode
         (35, 35),  # so does the falling form
@@ -110,9 +111,9 @@ def test_a_key_stands_for_a_degree_of_the_scale_before_a_passing_colour() -> Non
 
 
 def test_the_tolerance_is_a_pitch_difference_whatever_the_tone_system() -> None:
-    # 1.5 commas = 1.5 * 1200 / 53 = 33.96 cents
-    assert tolerance_units(TYPED, COMMAS_53) == pytest.approx(1.5)
-    assert tolerance_units(TYPED, SEMITONES_12) == pytest.approx(0.3396, abs=1e-4)
+    # 0.75 commas = 0.75 * 1200 / 53 = 16.98 cents
+    assert tolerance_units(TYPED, COMMAS_53) == pytest.approx(0.75)
+    assert tolerance_units(TYPED, SEMITONES_12) == pytest.approx(0.1698, abs=1e-4)
     assert tolerance_units(KEYS, SEMITONES_12) == 0.5
 
 
