@@ -245,20 +245,6 @@ class _Runner(threading.Thread):
         self.join(timeout=5.0)
 
 
-@contextlib.contextmanager
-def _signals(leave: Callable[[], None]) -> Iterator[None]:
-    """Leave in good order when the system asks the program to end."""
-    asked = [getattr(signal, name) for name in ("SIGTERM", "SIGHUP") if hasattr(signal, name)]
-    if threading.current_thread() is not threading.main_thread():
-        asked = []  # signals belong to the main thread; a test may run the screen elsewhere
-    before = {number: signal.signal(number, lambda *_: leave()) for number in asked}
-    try:
-        yield
-    finally:
-        for number, handler in before.items():
-            signal.signal(number, handler)
-
-
 def _choices(coach: Coach) -> Callable[[str], tuple[str, ...]]:
     """Give the names that a question of the screen can be answered with, by its kind."""
 
@@ -371,11 +357,21 @@ class _Ended(BaseException):
 
 @contextlib.contextmanager
 def _ending_by_signal() -> Iterator[None]:
-    def end() -> None:
+    """Leave in good order when the system asks the program to end."""
+
+    def end(*_: object) -> None:
         raise _Ended
 
-    with contextlib.suppress(_Ended), _signals(end):
-        yield
+    asked = [getattr(signal, name) for name in ("SIGTERM", "SIGHUP") if hasattr(signal, name)]
+    if threading.current_thread() is not threading.main_thread():
+        asked = []  # signals belong to the main thread; a test may run the session elsewhere
+    before = {number: signal.signal(number, end) for number in asked}
+    with contextlib.suppress(_Ended):
+        try:
+            yield
+        finally:
+            for number, handler in before.items():
+                signal.signal(number, handler)
 
 
 # --- ports -------------------------------------------------------------------------------------

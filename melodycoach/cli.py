@@ -6,10 +6,7 @@ Nothing heavy is imported before the arguments are understood, so that ``--help`
 from __future__ import annotations
 
 import argparse
-import codecs
-import io
 import json
-import os
 import sys
 import traceback
 from difflib import get_close_matches
@@ -18,6 +15,7 @@ from typing import TYPE_CHECKING, Any, NoReturn
 
 from melodycoach import DEFAULT_PACK, __version__
 from melodycoach.errors import MelodycoachError, UsageError, system_reason
+from melodycoach.output import accept_every_letter, silence_stdout
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Sequence
@@ -27,7 +25,6 @@ if TYPE_CHECKING:
 
 DONE, ANSWER_IS_NO, BAD_INPUT, OUR_FAULT, INTERRUPTED = 0, 1, 2, 70, 130
 DEFAULT_COMMAND = "listen"
-PLAIN_LETTERS = "melodycoach.plain-letters"
 
 _EPILOG = """\
 examples:
@@ -41,10 +38,7 @@ examples:
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run the program and give its exit code; docs/cli.md says what each means."""
-    codecs.register_error(PLAIN_LETTERS, _plain_letters)
-    for stream in (sys.stdout, sys.stderr):
-        if isinstance(stream, io.TextIOWrapper):
-            stream.reconfigure(errors=PLAIN_LETTERS)  # a letter that a terminal lacks is no reason to stop
+    accept_every_letter()
     words = list(sys.argv[1:] if argv is None else argv)
     parser, commands = _parser()
     if not words or words[0] not in (*commands, "-h", "--help", "--version"):
@@ -67,12 +61,12 @@ def main(argv: Sequence[str] | None = None) -> int:
     except KeyboardInterrupt:
         return INTERRUPTED
     except BrokenPipeError:
-        _silence_stdout()  # nobody reads on: say no more
+        silence_stdout()  # nobody reads on: say no more
         return DONE
     except OSError as error:  # whatever can be said more exactly was said by who met it
         if options.debug:
             raise
-        _silence_stdout()
+        silence_stdout()
         where = error.filename or "output"
         print(f"melodycoach: {where}: {system_reason(error)}; --debug shows where it arose", file=sys.stderr)
         return BAD_INPUT
@@ -83,20 +77,6 @@ def main(argv: Sequence[str] | None = None) -> int:
             file=sys.stderr,
         )
         return OUR_FAULT
-
-
-def _plain_letters(error: UnicodeError) -> tuple[str, int]:
-    """Write plain letters for what an output's encoding does not have."""
-    from melodycoach.screen.text import to_ascii
-
-    if not isinstance(error, UnicodeEncodeError):
-        raise error
-    return to_ascii(error.object[error.start : error.end]), error.end
-
-
-def _silence_stdout() -> None:
-    """Drop what is still to be written, so that the interpreter's own flush at the exit cannot fail."""
-    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
 
 
 def _run(options: argparse.Namespace) -> int:
@@ -381,7 +361,9 @@ def _count(text: str) -> int:
 
 
 def _names(text: str) -> tuple[str, ...]:
-    return tuple(name.strip() for name in text.split(",") if name.strip())
+    from melodycoach.core.mode import names_in
+
+    return names_in(text)
 
 
 def _pack(name: str) -> ModePack:

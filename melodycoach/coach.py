@@ -28,7 +28,8 @@ from melodycoach.core.event import (
     TimePassed,
     Undone,
 )
-from melodycoach.core.note import Item, Mark
+from melodycoach.core.mode import names_in
+from melodycoach.core.note import Item, Mark, shared_start
 from melodycoach.core.session import SessionState, apply
 from melodycoach.errors import MelodycoachError, StorageError
 from melodycoach.line_text import Page, entry_items, notes_with_marks, open_line, read_final, save_line
@@ -210,7 +211,7 @@ class Coach:
                 reading, final_cents = read_final(command.text, self.names)
                 self.take(ReadingChosen(now_s, reading, final_cents))
             case SetOnly():
-                wanted = tuple(name.strip() for name in command.text.split(",") if name.strip())
+                wanted = names_in(command.text)
                 ids = tuple(mode.id for mode in self.session.pack.restrict(wanted)) if wanted else ()
                 self.take(ModesRestricted(now_s, ids))
             case SetPort():
@@ -331,12 +332,7 @@ class Coach:
         A token depends on its item and on the one after it, and the newest note is still growing.
         """
         line, (known, tokens) = self.session.line, self._written
-        same = 0
-        for old, new in zip(known, line.items, strict=False):
-            if old is not new:
-                break
-            same += 1
-        kept = max(min(same - 1, line.last_note_at), 0)
+        kept = max(min(shared_start(known, line.items) - 1, line.last_note_at), 0)
         fresh = (item_token(item, self.names, self._page.tempo) for item in entry_items(line, kept))
         self._written = (line.items, (*tokens[:kept], *fresh))
         return self._written[1]

@@ -79,11 +79,18 @@ def nearest_names(wanted: str, known: Iterable[str], count: int = 3) -> str:
     'known: mahur, rast'
     """
     names = sorted(set(known))
-    close = get_close_matches(wanted, names, n=count, cutoff=0.6)
-    if close:
-        return "did you mean " + " or ".join(repr(name) for name in close) + "?"
     shown = ", ".join(names[:12])
-    return f"known: {shown}" + (", …" if len(names) > 12 else "")
+    return did_you_mean(wanted, names, count) or f"known: {shown}" + (", …" if len(names) > 12 else "")
+
+
+def did_you_mean(wanted: str, names: Sequence[str], count: int = 3, cutoff: float = 0.6) -> str:
+    """Name the words closest to a wrong one, or give an empty text if none is close.
+
+    >>> did_you_mean("husseyni", ["huseyni", "rast"]), did_you_mean("zzz", ["rast"])
+    ("did you mean 'huseyni'?", '')
+    """
+    close = get_close_matches(wanted, names, n=count, cutoff=cutoff)
+    return f"did you mean {' or '.join(repr(name) for name in close)}?" if close else ""
 
 
 def system_reason(error: OSError) -> str:

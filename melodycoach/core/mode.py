@@ -186,6 +186,15 @@ class Source:
     title: str
 
 
+def names_in(text: str) -> tuple[str, ...]:
+    """Read names with commas between them.
+
+    >>> names_in("rast, ,uşşak")
+    ('rast', 'uşşak')
+    """
+    return tuple(name.strip() for name in text.split(",") if name.strip())
+
+
 @dataclass(frozen=True)
 class ModePack:
     """A set of modes that share a tone system, pitch names and a body of theory.

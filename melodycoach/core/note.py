@@ -166,3 +166,15 @@ def _gap_s(note: Note, following: Item) -> float:
     if not isinstance(following, Note) or note.beats is not None or following.beats is not None:
         return 0.0
     return max(following.onset_s - note.onset_s - note.duration_s, 0.0)
+
+
+def shared_start(old: Sequence[object], new: Sequence[object]) -> int:
+    """Count the members that two sequences have in common at their start.
+
+    >>> shared_start((1, 2, 3), (1, 2, 4, 5)), shared_start((), (1,))
+    (2, 0)
+    """
+    for place, (one, other) in enumerate(zip(old, new, strict=False)):
+        if one is not other and one != other:
+            return place
+    return min(len(old), len(new))

@@ -32,7 +32,7 @@ from melodycoach.core.event import (
     Undone,
 )
 from melodycoach.core.model import build_model
-from melodycoach.core.note import PACE_NOTES, Heard, Item, Mark, Note, hear
+from melodycoach.core.note import PACE_NOTES, Heard, Item, Mark, Note, hear, shared_start
 from melodycoach.core.scorer import ScorerState, advance, start
 
 if TYPE_CHECKING:
@@ -111,11 +111,7 @@ def _scored(
     model: ScoringModel, line: Line, items: tuple[Item, ...], tail: tuple[Heard, ...], done: int, last: int
 ) -> Line:
     """Score the notes after the first ``done``, from the first one on that is heard differently."""
-    kept = done
-    for old, new in zip(line.heard[done:], tail, strict=False):
-        if old != new:
-            break
-        kept += 1
+    kept = done + shared_start(line.heard[done:], tail)
     states = list(line.states[done : kept + 1])
     for note in tail[kept - done :]:
         states.append(advance(model, states[-1], note))

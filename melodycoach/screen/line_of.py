@@ -13,7 +13,6 @@ from melodycoach.core.mode import Mode
 from melodycoach.core.note import InputKind, Mark, Note
 from melodycoach.core.octave import standing_final
 from melodycoach.core.offmode import off_mode, off_mode_words
-from melodycoach.core.scorer import leading
 from melodycoach.core.stretch import stretch_of
 from melodycoach.screen.view import LineNote, Rung
 
@@ -93,14 +92,14 @@ def _before(states: Sequence[ScorerState], change: ChangeState) -> ChangeState:
     return states[change.changed_at - 1].change
 
 
-def line_notes(session: SessionState, mode: Mode, final_units: int) -> tuple[LineNote, ...]:
+def line_notes(session: SessionState, mode: Mode, final_units: int, leader: int) -> tuple[LineNote, ...]:
     """Give the newest notes, each with the mark after it and with what is wrong with it."""
     names = session.pack.names
     items, heard = session.line.items, session.line.heard
     places = [i for i, item in enumerate(items) if isinstance(item, Note)]
     first = max(len(places) - NOTES_SHOWN, 0)
-    leader = leading(session.model, session.line.states[-1]).best if session.target is None else None
-    judged_by = judges(session.model, session.line.states, heard, (mode, final_units), leader)
+    led_by = leader if session.target is None else None
+    judged_by = judges(session.model, session.line.states, heard, (mode, final_units), led_by)
     known: dict[tuple[float, InputKind, int], _Judgement] = {}
     rows = []
     for number in range(first, len(places)):

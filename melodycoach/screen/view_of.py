@@ -11,7 +11,7 @@ from typing import TYPE_CHECKING
 from melodycoach.core.event import PitchReading
 from melodycoach.core.evidence import Balance, balance
 from melodycoach.core.mode import Mode, Need
-from melodycoach.core.note import InputKind
+from melodycoach.core.note import InputKind, shared_start
 from melodycoach.core.octave import moved_final, standing_final
 from melodycoach.core.owed import StepTrack, follow, start_track
 from melodycoach.core.pitch import key_name
@@ -73,7 +73,7 @@ class ViewMaker:
             rival=model.mode_of(rival).name if rival is not None else "",
             is_target=session.target is not None,
             owed=_owed_rows(session, hypothesis, rival, track),
-            line=line_notes(session, mode, final_units),
+            line=line_notes(session, mode, final_units, lean.best),
             ladder=ladder(mode, final_units, names),
             why=self._why_rows(session, hypothesis, rival) if heard_anything else (),
             keyboard_note=_keyboard_note(session, hypothesis, rival),
@@ -95,13 +95,7 @@ class ViewMaker:
         if not same:
             self._tracks = [start_track(mode, final_units, session.pack.system)]
         else:
-            before = self._followed[3:]
-            kept = 0
-            for old, new in zip(before, heard, strict=False):
-                if old is not new and old != new:
-                    break
-                kept += 1
-            del self._tracks[kept + 1 :]
+            del self._tracks[shared_start(self._followed[3:], heard) + 1 :]
         for note in heard[len(self._tracks) - 1 :]:
             self._tracks.append(follow(self._tracks[-1], note))
         self._followed = (mode.id, final_units, session.pack.id, *heard)
@@ -167,10 +161,10 @@ def _now(model: ScoringModel, line: Line, lean: Leaning) -> str:
 
 def _leaning_rows(session: SessionState, state: ScorerState) -> tuple[LeaningRow, ...]:
     model = session.model
-    by_mode = mode_posterior(model, state)
+    by_hypothesis = posterior(model, state).reshape(-1, model.n_modes)
+    by_mode = by_hypothesis.sum(axis=0)
     states = session.line.states
     before = mode_posterior(model, states[-2]) if len(states) > 1 else by_mode
-    by_hypothesis = posterior(model, state).reshape(-1, model.n_modes)
     ranked = sorted(range(model.n_modes), key=lambda index: -by_mode[index])
     shown = ranked[:LEANINGS_SHOWN]
     target = session.target

@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from difflib import get_close_matches
 from typing import TYPE_CHECKING
+
+from melodycoach.errors import did_you_mean
 
 if TYPE_CHECKING:
     from pathlib import Path
@@ -30,5 +31,4 @@ def near_files(path: Path) -> str:
         names = [] if path.exists() else sorted(one.name for one in path.parent.iterdir() if one.is_file())
     except OSError:
         return ""
-    close = get_close_matches(path.name, names, n=3, cutoff=0.75)
-    return f"did you mean {' or '.join(repr(name) for name in close)}?" if close else ""
+    return did_you_mean(path.name, names, cutoff=0.75)
