@@ -36,6 +36,10 @@ class NoteTextError(MelodycoachError, ValueError):
     """Note text with tokens that cannot be read; `faults` has one line for each."""
 
 
+class MusicFileError(MelodycoachError, ValueError):
+    """A MIDI file or a score that cannot be read, or that holds no melody."""
+
+
 class PackError(MelodycoachError, ValueError):
     """A mode pack that cannot be used; `faults` has one line for each fault."""
 

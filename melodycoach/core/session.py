@@ -7,8 +7,7 @@ events alone give it again.
 
 Conventions
 -----------
-One melody line is taken out of what is played: the newest note wins, and ends the one before it.
-A silence of `BREATH_GAP_S` is written as a breath, one of `PHRASE_GAP_S` as the end of a phrase.
+One melody line is taken out of what is played by the rules of `melodycoach.core.melody`.
 """
 
 from __future__ import annotations
@@ -31,6 +30,7 @@ from melodycoach.core.event import (
     TimePassed,
     Undone,
 )
+from melodycoach.core.melody import is_struck_with, mark_of_silence
 from melodycoach.core.model import build_model
 from melodycoach.core.note import PACE_NOTES, Heard, Item, Mark, Note, hear, shared_start
 from melodycoach.core.scorer import ScorerState, advance, start
@@ -41,12 +41,6 @@ if TYPE_CHECKING:
     from melodycoach.core.mode import Mode, ModePack
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.parameters import ScoringParameters
-
-BREATH_GAP_S = 1.0
-"""A silence of at least so long between played notes is a breath."""
-
-PHRASE_GAP_S = 2.5
-"""A silence of at least so long after a played note ends the phrase."""
 
 UNDO_LIMIT = 200
 """How many changes of the line can be taken back."""
@@ -245,9 +239,7 @@ def _last_replaced(model: ScoringModel, line: Line, note: Note) -> Line:
 
 def _silence_marked(model: ScoringModel, line: Line, silence_s: float) -> Line:
     """Write a played silence down as a breath or a phrase end, once it is long enough."""
-    mark = (
-        Mark.PHRASE_END if silence_s >= PHRASE_GAP_S else Mark.BREATH if silence_s >= BREATH_GAP_S else None
-    )
+    mark = mark_of_silence(silence_s)
     after = line.items[line.last_note_at + 1 :]
     if mark is None or after == (mark,) or after not in ((), (Mark.BREATH,)):
         return line  # too short, written already, or the player has written something else
@@ -255,7 +247,12 @@ def _silence_marked(model: ScoringModel, line: Line, silence_s: float) -> Line:
 
 
 def _note_on(session: SessionState, event: NoteOn) -> SessionState:
-    note = Note(event.pitch_cents, session.now_s, 0.0, event.kind)
+    note, last = Note(event.pitch_cents, session.now_s, 0.0, event.kind), session.line.last_note
+    if session.sounding is not None and last is not None and is_struck_with(last, session.now_s):
+        if note.pitch_cents <= last.pitch_cents:
+            return session
+        line = _last_replaced(session.model, session.line, replace(note, onset_s=last.onset_s))
+        return replace(session, line=line, sounding=event.voice)
     line = extend(session.model, session.line, note)
     return replace(_changed(session, line), sounding=event.voice, played_last=True)
 

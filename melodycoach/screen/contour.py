@@ -18,8 +18,9 @@ from melodycoach.screen.text import Line, pad, pad_left, width
 if TYPE_CHECKING:
     from collections.abc import Mapping, Sequence
 
+    from melodycoach.core.ladder import Rung
     from melodycoach.screen.signs import Signs
-    from melodycoach.screen.view import LineNote, Rung, ViewState
+    from melodycoach.screen.view import LineNote, ViewState
 
 WIDEST_SLOT = 3
 """More cells than this for a note would tear the line apart."""

@@ -9,7 +9,8 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from melodycoach.screen.text import percent, tidy
+from melodycoach.core.verdict import percent
+from melodycoach.screen.text import tidy
 
 if TYPE_CHECKING:
     from melodycoach.screen.view import LineNote, ViewState

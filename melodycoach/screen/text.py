@@ -229,14 +229,3 @@ def tidy_lines(lines: Iterable[Line], ascii_only: bool = False) -> list[Line]:
 def plain_text(line: Iterable[Fragment]) -> str:
     """Give the characters of a line without its styles."""
     return "".join(text for _, text in line)
-
-
-def percent(probability: float) -> str:
-    """Write a probability without promising certainty.
-
-    >>> percent(0.732), percent(0.9999), percent(0.001)
-    ('73 %', 'over 99 %', 'under 1 %')
-    """
-    if probability > 0.99:
-        return "over 99 %"
-    return "under 1 %" if 0 < probability < 0.01 else f"{100 * probability:.0f} %"

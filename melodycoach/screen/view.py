@@ -9,6 +9,10 @@ objects. All rounding, sorting and labelling is done when it is built; drawing o
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from melodycoach.core.ladder import Rung
 
 
 @dataclass(frozen=True, slots=True)
@@ -79,21 +83,6 @@ class LineNote:
     mark: str = ""
     item: int = -1
     mend_height: float | None = None
-
-
-@dataclass(frozen=True, slots=True)
-class Rung:
-    """One step of the ladder beside the contour.
-
-    ``function`` is what it does in the mode in view, in the words of the trade, or empty. ``role``
-    is the same for the drawing: ``final``, ``dominant`` or any other word; where it is not given,
-    the function is taken for it.
-    """
-
-    height: int
-    name: str
-    function: str = ""
-    role: str = ""
 
 
 @dataclass(frozen=True, slots=True)

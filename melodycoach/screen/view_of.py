@@ -8,11 +8,12 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from melodycoach.core.event import PitchReading
 from melodycoach.core.evidence import Balance, balance
+from melodycoach.core.judge import in_view
+from melodycoach.core.ladder import ladder
 from melodycoach.core.mode import Mode, Need
 from melodycoach.core.note import InputKind, shared_start
-from melodycoach.core.octave import moved_final, standing_final
+from melodycoach.core.octave import standing_final
 from melodycoach.core.owed import StepTrack, follow, start_track
 from melodycoach.core.pitch import key_name
 from melodycoach.core.plain_keys import keyboard_note
@@ -20,9 +21,9 @@ from melodycoach.core.ranking import rank_owed, step_pitches
 from melodycoach.core.scorer import leading, mode_posterior, posterior
 from melodycoach.core.step_words import step_label
 from melodycoach.core.stretch import stretch_of
+from melodycoach.core.verdict import competing_words, reading_words, verdict
 from melodycoach.core.why import reasons_of_balance
-from melodycoach.screen.line_of import ladder, line_notes
-from melodycoach.screen.text import percent
+from melodycoach.screen.line_of import line_notes
 from melodycoach.screen.view import LeaningRow, OwedRow, Status, ViewState, WhyRow
 
 if TYPE_CHECKING:
@@ -60,12 +61,12 @@ class ViewMaker:
         model, line, names = session.model, session.line, session.pack.names
         state = line.states[-1]
         lean = leading(model, state)
-        shown = _hypothesis_in_view(session, lean)
+        shown = in_view(model, line.states, line.heard, session.target, lean)
         mode, final_units, hypothesis, rival = shown
         track = self._track(session, mode, final_units)
         heard_anything = bool(line.heard)
         return ViewState(
-            verdict=_verdict(model, state, lean),
+            verdict=verdict(model, lean, state.n_notes),
             now=_now(model, line, lean),
             decided=heard_anything and lean.decided,
             leanings=_leaning_rows(session, state),
@@ -79,8 +80,8 @@ class ViewMaker:
             keyboard_note=_keyboard_note(session, hypothesis, rival),
             tokens=tokens,
             n_notes=len(line.heard),
-            reading=_reading(session),
-            restricted=_restricted(session),
+            reading=reading_words(session.reading, session.final_cents, names),
+            restricted=competing_words(model),
             theory=session.pack.theory,
             caution=session.pack.caution,
             can_undo=bool(session.past),
@@ -111,41 +112,6 @@ class ViewMaker:
         self._balance = balance(session.model, line.states, line.heard, hypothesis, rival, self._balance)
         found = reasons_of_balance(self._balance, line.heard, REASONS_SHOWN)
         return tuple(WhyRow(text=reason.text, nats=reason.nats) for reason in found)
-
-
-def _hypothesis_in_view(session: SessionState, lean: Leaning) -> tuple[Mode, int, int | None, int | None]:
-    """Give the mode that owed steps and ladder speak of, its final, its hypothesis and its rival.
-
-    That is the target, where it competes, and else the leading mode. A target that does not
-    compete has no hypothesis.
-    """
-    model, line = session.model, session.line
-    if session.target is None:
-        mode = model.mode_of(lean.best)
-        return mode, standing_final(model, lean.best, line.heard), lean.best, lean.rival
-    candidates = [i for i, index in enumerate(model.mode_index) if model.modes[index].id == session.target.id]
-    if not candidates:
-        final_units = moved_final(session.target, session.target.final_units, line.heard, session.pack.system)
-        return session.target, final_units, None, None
-    nats = posterior(model, line.states[-1])
-    best = max(candidates, key=lambda i: nats[i])
-    rival = lean.rival if model.mode_index[lean.best] == model.mode_index[best] else lean.best
-    return session.target, standing_final(model, best, line.heard), best, rival
-
-
-def _verdict(model: ScoringModel, state: ScorerState, lean: Leaning) -> str:
-    if state.n_notes == 0:
-        return "nothing heard yet: play or type a note"
-    names = [model.modes[index].name for index in lean.among]
-    if model.n_modes == 1:
-        return f"{names[0]} alone competes: choose more modes to compare it with"
-    if lean.decided:
-        return f"leaning to {names[0]}, {percent(lean.p_best)}"
-    if len(names) == 1:
-        return f"undecided; {names[0]} is nearest"
-    count = "both" if len(names) == 2 else "all"
-    family = f", {count} of the {lean.family}" if lean.family else ""
-    return f"undecided between {', '.join(names[:-1])} and {names[-1]}{family}"
 
 
 def _now(model: ScoringModel, line: Line, lean: Leaning) -> str:
@@ -228,22 +194,3 @@ def _keyboard_note(session: SessionState, hypothesis: int | None, rival: int | N
     if not plain or hypothesis is None or rival is None:
         return ""
     return keyboard_note(session.model, hypothesis, rival)
-
-
-def _reading(session: SessionState) -> str:
-    names = session.pack.names
-    match session.reading:
-        case PitchReading.WRITTEN:
-            return "written pitch: each mode on its own final"
-        case PitchReading.FINAL:
-            assert session.final_cents is not None
-            return f"final given: {names.name(session.final_cents)}"
-        case PitchReading.ANY:
-            return "any pitch: each mode on every final"
-
-
-def _restricted(session: SessionState) -> str:
-    n_modes = len(session.model.modes)
-    if not session.only:
-        return f"all {n_modes} modes of {session.pack.name}"
-    return "only " + ", ".join(mode.name for mode in session.model.modes)

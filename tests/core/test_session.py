@@ -22,9 +22,10 @@ from melodycoach.core.event import (
     TimePassed,
     Undone,
 )
+from melodycoach.core.melody import BREATH_GAP_S, PHRASE_GAP_S
 from melodycoach.core.note import InputKind, Mark, Note, hear
 from melodycoach.core.scorer import advance, mode_posterior, start
-from melodycoach.core.session import BREATH_GAP_S, PHRASE_GAP_S, UNDO_LIMIT, SessionState, apply, begin
+from melodycoach.core.session import UNDO_LIMIT, SessionState, apply, begin
 from melodycoach.errors import UnknownModeError
 from melodycoach.sources.pack_file import load_pack
 

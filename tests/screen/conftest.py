@@ -6,12 +6,12 @@ from dataclasses import replace
 
 import pytest
 
+from melodycoach.core.ladder import Rung
 from melodycoach.screen.view import (
     LeaningRow,
     LineNote,
     OwedRow,
     Refusal,
-    Rung,
     Status,
     ViewState,
     WhyRow,

@@ -5,10 +5,11 @@ from __future__ import annotations
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
+from melodycoach.core.ladder import Rung
 from melodycoach.screen.contour import draw_contour, mending, off_words
 from melodycoach.screen.signs import ASCII, UNICODE
 from melodycoach.screen.text import plain_text
-from melodycoach.screen.view import LineNote, Rung
+from melodycoach.screen.view import LineNote
 
 if TYPE_CHECKING:
     from collections.abc import Mapping

@@ -12,6 +12,7 @@ import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
+from melodycoach.core.ladder import Rung
 from melodycoach.screen import entry as typing
 from melodycoach.screen import entry_edit, entry_merge
 from melodycoach.screen import question as asking
@@ -24,7 +25,6 @@ from melodycoach.screen.view import (
     LineNote,
     OwedRow,
     Refusal,
-    Rung,
     Status,
     ViewState,
     WhyRow,

@@ -24,13 +24,14 @@ from melodycoach.core.event import (
     TimePassed,
     Undone,
 )
+from melodycoach.core.judge import Judge, judges
 from melodycoach.core.note import InputKind
 from melodycoach.core.parameters import ScoringParameters
 from melodycoach.core.scorer import announced, leading, log_odds, mode_posterior
 from melodycoach.core.session import SessionState, apply, begin
 from melodycoach.core.stretch import Stretch
-from melodycoach.screen.line_of import NOTES_SHOWN, Judge, judges
-from melodycoach.screen.text import percent
+from melodycoach.core.verdict import percent
+from melodycoach.screen.line_of import NOTES_SHOWN
 from melodycoach.screen.view import Status, ViewState
 from melodycoach.screen.view_of import LEANINGS_SHOWN, REASONS_SHOWN, ViewMaker
 from melodycoach.sources.note_text import read_tokens
