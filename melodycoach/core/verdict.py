@@ -8,7 +8,6 @@ from melodycoach.core.event import PitchReading
 
 if TYPE_CHECKING:
     from melodycoach.core.model import ScoringModel
-    from melodycoach.core.pitch import PitchNames
     from melodycoach.core.scorer import Leaning
 
 
@@ -28,14 +27,13 @@ def verdict(model: ScoringModel, lean: Leaning, n_notes: int) -> str:
     return f"undecided between {', '.join(names[:-1])} and {names[-1]}{family}"
 
 
-def reading_words(reading: PitchReading, final_cents: float | None, names: PitchNames) -> str:
+def reading_words(model: ScoringModel) -> str:
     """Say what is taken as known of the final."""
-    match reading:
+    match model.reading:
         case PitchReading.WRITTEN:
             return "written pitch: each mode on its own final"
         case PitchReading.FINAL:
-            assert final_cents is not None
-            return f"final given: {names.name(final_cents)}"
+            return f"final given: {model.pack.names.name_at(int(model.final_units[0]))}"
         case PitchReading.ANY:
             return "any pitch: each mode on every final"
 

@@ -80,7 +80,7 @@ class ViewMaker:
             keyboard_note=_keyboard_note(session, hypothesis, rival),
             tokens=tokens,
             n_notes=len(line.heard),
-            reading=reading_words(session.reading, session.final_cents, names),
+            reading=reading_words(model),
             restricted=competing_words(model),
             theory=session.pack.theory,
             caution=session.pack.caution,

@@ -24,7 +24,6 @@ from melodycoach.core.event import (
     TimePassed,
     Undone,
 )
-from melodycoach.core.judge import Judge, judges
 from melodycoach.core.note import InputKind
 from melodycoach.core.parameters import ScoringParameters
 from melodycoach.core.scorer import announced, leading, log_odds, mode_posterior
@@ -545,23 +544,3 @@ def test_a_target_judges_every_note() -> None:
     view = view_of(apply(changed_to_hicaz(), TargetChosen(0.0, "makam/hicaz")))
     assert set(off_notes(view).values()) == {"not in Hicaz"}
     assert min(off_notes(view)) < 13
-
-
-def test_while_no_change_is_noticed_the_mode_in_view_judges_every_note() -> None:
-    session = session_of("D5 C#5 Bb4+1 A4 B4-1", "hicaz", "huseyni")
-    model, line = session.model, session.line
-    assert line.states[-1].change.changed_at is None
-    in_view = (MAKAM.find("hicaz"), 0)
-    assert judges(model, line.states, line.heard, in_view, 0) == (Judge(1, *in_view),)
-
-
-def test_the_newest_stretch_is_judged_by_the_mode_in_view_until_another_is_named_for_it() -> None:
-    session = changed_to_hicaz()
-    model, line = session.model, session.line
-    slugs = [mode.slug for mode in model.modes]
-    seam = line.states[-1].change.seam_at
-    huseyni, hicaz = ((MAKAM.find(slug), 0) for slug in ("huseyni", "hicaz"))
-    assert seam is not None
-    for leads, in_view in (("hicaz", hicaz), ("huseyni", huseyni)):
-        found = judges(model, line.states, line.heard, in_view, slugs.index(leads))
-        assert found == (Judge(seam, *hicaz), Judge(1, *huseyni))
