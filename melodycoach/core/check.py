@@ -12,19 +12,19 @@ Notes are counted from 1. A *stretch* is what lies between two changes of mode.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from itertools import pairwise
 from typing import TYPE_CHECKING
 
 from melodycoach.core.course import Course, course_of
-from melodycoach.core.judge import InView, in_view, judges
+from melodycoach.core.judge import InView, in_view, stretch_judges
+from melodycoach.core.model import hypothesis_of
 from melodycoach.core.note import InputKind
 from melodycoach.core.offmode import OffMode, off_mode
 from melodycoach.core.owed import follow, start_track
 from melodycoach.core.plain_keys import keyboard_note
 from melodycoach.core.ranking import OwedStep, rank_owed
-from melodycoach.core.scorer import leading, mode_posterior
+from melodycoach.core.scorer import leading
 from melodycoach.core.session import Line, empty_line, rewrite
-from melodycoach.core.span import Span, bar_bounds, phrase_bounds, span, span_state
+from melodycoach.core.span import Span, bar_bounds, heard_instead, mode_probability, phrase_bounds, span
 from melodycoach.core.why import Reason, reasons
 
 if TYPE_CHECKING:
@@ -38,10 +38,6 @@ if TYPE_CHECKING:
     from melodycoach.core.sheet import Sheet
 
 REASONS_GIVEN = 10
-
-OUTWEIGHED = 4.0
-"""Notes are heard in another mode than the one they should be in when that is decided, and so many
-times as likely."""
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -202,19 +198,11 @@ def leaving(checked: Checked, target: Mode) -> Leaving | None:
         raise ValueError(f"the line was checked for {checked.target}, not for {target.id!r}")
     found = [Leaving(number, off=one[1]) for number, one in enumerate(checked.off, 1) if one is not None]
     for stretch in checked.stretches:
-        to = heard_instead(checked, stretch.span, target)
+        to = heard_instead(checked.model, checked.line.states, stretch.span, target)
         if to is not None:
-            found.append(Leaving(_turns_at(checked, stretch, target), to=to))
+            turned = _turns_at(checked, stretch, target)
+            found.append(Leaving(turned, to=checked.model.mode_of(to)))
     return min(found, key=lambda one: one.number, default=None)
-
-
-def heard_instead(checked: Checked, part: Span, mode: Mode) -> Mode | None:
-    """Give the mode that some notes are clearly heard in instead of the one they should be in, or None."""
-    lean, best = part.leaning, checked.model.mode_of(part.leaning.best)
-    if not lean.decided or best.id == mode.id:
-        return None
-    chance = mode_probability(checked.model, checked.line, mode, part.first, part.last)
-    return best if lean.p_best > OUTWEIGHED * chance else None
 
 
 def _turns_at(checked: Checked, stretch: Stretch, target: Mode) -> int:
@@ -225,57 +213,35 @@ def _turns_at(checked: Checked, stretch: Stretch, target: Mode) -> int:
     model, states = checked.model, checked.line.states
     turned = last
     for number in range(last, 0, -1):
-        if heard_instead(checked, span(model, states, first, number), target) is None:
+        if heard_instead(model, states, span(model, states, first, number), target) is None:
             break
         turned = number
     return turned
 
 
 def _stretches(model: ScoringModel, line: Line, whole: Leaning) -> tuple[Stretch, ...]:
-    """Cut the line where its mode changes; neighbours in the same mode are one stretch."""
+    """Cut the line where its mode changes."""
     if not line.heard:
         return ()
-    leader = in_view(model, line.states, line.heard, None, whole)
-    oldest_first = judges(model, line.states, line.heard, leader[:2], whole.best)[::-1]
-    kept: list[Judge] = []
-    for judge in oldest_first:
-        if not kept or judge[1:] != kept[-1][1:]:
-            kept.append(judge)
-    firsts = [1, *(judge.since for judge in kept[1:]), len(line.heard) + 1]
+    judged_by = stretch_judges(model, line.states, line.heard, whole)
+    firsts = [*(judge.since for judge in judged_by), len(line.heard) + 1]
     return tuple(
-        _stretch(model, line, judge, first, after - 1)
-        for judge, (first, after) in zip(kept, pairwise(firsts), strict=True)
+        _stretch(model, line, judge, after - 1) for judge, after in zip(judged_by, firsts[1:], strict=True)
     )
 
 
-def _stretch(model: ScoringModel, line: Line, judge: Judge, first: int, last: int) -> Stretch:
+def _stretch(model: ScoringModel, line: Line, judge: Judge, last: int) -> Stretch:
+    first, mode, final_units = judge
     part = span(model, line.states, first, last)
-    hypothesis = _hypothesis(model, judge)
-    rival = part.leaning.rival if model.mode_of(part.leaning.best) is judge.mode else part.leaning.best
-    view = InView(judge.mode, judge.final_units, hypothesis, rival)
+    rival = part.leaning.rival if model.mode_of(part.leaning.best) is mode else part.leaning.best
+    view = InView(mode, final_units, hypothesis_of(model, mode, final_units), rival)
     return Stretch(
         span=part,
-        mode=judge.mode,
-        final_units=judge.final_units,
+        mode=mode,
+        final_units=final_units,
         noticed_at=_noticed_at(line, first),
-        probability=mode_probability(model, line, judge.mode, first, last),
+        probability=mode_probability(model, line.states, mode, part),
         steps=_steps(model, line, view, first, last),
-    )
-
-
-def mode_probability(model: ScoringModel, line: Line, mode: Mode, first: int, last: int) -> float:
-    """Give the probability of a mode by what the notes from ``first`` to ``last`` say; 0 for an outsider."""
-    by_mode = mode_posterior(model, span_state(line.states, first, last))
-    return sum(float(p) for p, one in zip(by_mode, model.modes, strict=True) if one.id == mode.id)
-
-
-def _hypothesis(model: ScoringModel, judge: Judge) -> int:
-    """Give the hypothesis of a mode that competes and stands on a final, in whatever octave."""
-    divisions = model.pack.system.divisions
-    return next(
-        hypothesis
-        for hypothesis, (index, final) in enumerate(zip(model.mode_index, model.final_units, strict=True))
-        if model.modes[index].id == judge.mode.id and (final - judge.final_units) % divisions == 0
     )
 
 

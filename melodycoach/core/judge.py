@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, NamedTuple
 from melodycoach.core.change import NONE
 from melodycoach.core.octave import moved_final, standing_final
 from melodycoach.core.scorer import posterior
+from melodycoach.core.span import heard_instead, span
 from melodycoach.core.stretch import stretch_of
 
 if TYPE_CHECKING:
@@ -108,6 +109,36 @@ def judges(
             break
         change = _before(states, change)
     return tuple(found)
+
+
+def stretch_judges(
+    model: ScoringModel, states: Sequence[ScorerState], heard: Sequence[Heard], whole: Leaning
+) -> tuple[Judge, ...]:
+    """Say by which mode each stretch of a finished line is heard, the oldest first, from note 1 on.
+
+    They are the judges of the line without a target, mended by hindsight: a stretch that is clearly
+    heard in another mode than the one announced for it gets that one, and neighbours in the same mode
+    are one stretch.
+    """
+    leader = in_view(model, states, heard, None, whole)
+    found = judges(model, states, heard, leader[:2], whole.best)[::-1]
+    found = (found[0]._replace(since=1), *found[1:])
+    while True:
+        ends = [*(judge.since - 1 for judge in found[1:]), len(heard)]
+        named = [_renamed(model, states, heard, judge, last) for judge, last in zip(found, ends, strict=True)]
+        merged = tuple(one for at, one in enumerate(named) if not at or one[1:] != named[at - 1][1:])
+        if merged == found:
+            return found
+        found = merged
+
+
+def _renamed(
+    model: ScoringModel, states: Sequence[ScorerState], heard: Sequence[Heard], judge: Judge, last: int
+) -> Judge:
+    instead = heard_instead(model, states, span(model, states, judge.since, last), judge.mode)
+    if instead is None:
+        return judge
+    return Judge(judge.since, model.mode_of(instead), standing_final(model, instead, heard))
 
 
 def _before(states: Sequence[ScorerState], change: ChangeState) -> ChangeState:

@@ -203,6 +203,21 @@ def build_model(
     )
 
 
+def hypothesis_of(model: ScoringModel, mode: Mode, final_units: int) -> int:
+    """Give the hypothesis of a mode that competes and stands on a final, in whatever octave.
+
+    Raises
+    ------
+    ValueError
+        There is none.
+    """
+    divisions = model.pack.system.divisions
+    for hypothesis, (index, final) in enumerate(zip(model.mode_index, model.final_units, strict=True)):
+        if model.modes[index].id == mode.id and (final - final_units) % divisions == 0:
+            return hypothesis
+    raise ValueError(f"{mode.id!r} does not compete on {final_units!r}")
+
+
 def _build_tables(model: ScoringModel, kind: InputKind) -> HearingTables:
     parameters, system = model.parameters, model.pack.system
     hearing = parameters.hearing[kind]

@@ -12,11 +12,12 @@ from typing import TYPE_CHECKING
 
 from melodycoach.core.arrays import sealed
 from melodycoach.core.note import Mark, Note, Silence
-from melodycoach.core.scorer import leading
+from melodycoach.core.scorer import leading, mode_posterior
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
+    from melodycoach.core.mode import Mode
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.note import Item
     from melodycoach.core.scorer import Leaning, ScorerState
@@ -24,6 +25,11 @@ if TYPE_CHECKING:
 
 PHRASE_REST_BEATS = 1.0
 """A written rest of at least so long parts two phrases."""
+
+
+OUTWEIGHED = 4.0
+"""Notes are clearly heard in another mode than the one they should be in when that is decided, and so many
+times as likely."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,6 +75,21 @@ def span(model: ScoringModel, states: Sequence[ScorerState], first: int, last: i
         Note numbers from 1; the last one belongs to the span.
     """
     return Span(first, last, leading(model, span_state(states, first, last)))
+
+
+def mode_probability(model: ScoringModel, states: Sequence[ScorerState], mode: Mode, part: Span) -> float:
+    """Give the probability of a mode by what the notes of a span say; 0 for one that does not compete."""
+    by_mode = mode_posterior(model, span_state(states, part.first, part.last))
+    return sum(float(p) for p, one in zip(by_mode, model.modes, strict=True) if one.id == mode.id)
+
+
+def heard_instead(model: ScoringModel, states: Sequence[ScorerState], part: Span, mode: Mode) -> int | None:
+    """Give the hypothesis that some notes are clearly heard in, if that is another mode than this one."""
+    best = part.leaning.best
+    if not part.leaning.decided or model.mode_of(best).id == mode.id:
+        return None
+    outweighed = OUTWEIGHED * mode_probability(model, states, mode, part)
+    return best if part.leaning.p_best > outweighed else None
 
 
 def phrase_bounds(items: Sequence[Item]) -> tuple[tuple[int, int], ...]:

@@ -11,7 +11,7 @@ from __future__ import annotations
 from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.core.check import leaving, mode_probability
+from melodycoach.core.check import leaving
 from melodycoach.core.function import meant_units
 from melodycoach.core.ladder import ladder
 from melodycoach.core.note import Note
@@ -157,13 +157,14 @@ def _rival(checked: Checked) -> dict[str, Any] | None:
     if not checked.n_notes or view.rival is None:
         return None
     mode = model.mode_of(view.rival)
+    by_mode = mode_posterior(model, checked.line.states[-1])
     told = [
         (reason, {"says": reason.text, "nats": round(reason.nats, 3), "notes": list(reason.numbers)})
         for reason in checked.reasons
     ]
     return {
         **mode_data(mode),
-        "probability": rounded(mode_probability(model, checked.line, mode, 1, checked.n_notes)),
+        "probability": rounded(by_mode[view.rival % model.n_modes]),
         "for_leader": [data for reason, data in told if reason.nats > 0],
         "for_rival": [data for reason, data in told if reason.nats < 0],
     }

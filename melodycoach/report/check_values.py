@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.core.check import heard_instead
 from melodycoach.core.offmode import off_mode_words
 from melodycoach.core.ranking import step_pitches
+from melodycoach.core.span import heard_instead
 from melodycoach.core.step_words import step_label
 from melodycoach.core.verdict import verdict
 
@@ -72,7 +72,7 @@ def span_data(checked: Checked, one: Span) -> dict[str, Any]:
         **mode_data(best),
         "probability": rounded(lean.p_best),
         "stretch_mode": stretch.mode.name,
-        "fits": not off and heard_instead(checked, one, judge) is None,
+        "fits": not off and heard_instead(model, checked.line.states, one, judge) is None,
         "off_notes": off,
     }
 

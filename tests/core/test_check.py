@@ -9,7 +9,7 @@ import pytest
 from book_lines import BY_THE_BOOK
 from sheets import sheet_of
 
-from melodycoach.core.check import Checked, check_sheet, heard_instead, leaving
+from melodycoach.core.check import Checked, check_sheet, leaving
 from melodycoach.core.event import PitchReading
 from melodycoach.core.model import build_model
 from melodycoach.core.scorer import leading
@@ -104,6 +104,15 @@ def test_stretches_cover_the_line_and_neighbours_differ() -> None:
     )
 
 
+def test_a_stretch_is_named_after_what_its_own_notes_say() -> None:
+    """The live answer announces Dügâh here; with the whole stretch in hand it is clearly Sabâ."""
+    found = checked(
+        f"{BY_THE_BOOK['hicaz']} {BY_THE_BOOK['hicaz']} {BY_THE_BOOK['saba']} {BY_THE_BOOK['saba']}"
+    )
+    assert [one.mode.slug for one in found.stretches] == ["hicaz", "saba"]
+    assert all(MODEL.mode_of(one.span.leaning.best) is one.mode for one in found.stretches)
+
+
 def test_steps_of_a_stretch_are_counted_from_its_own_first_note() -> None:
     found = checked(f"{HUSEYNI} {HICAZ}")
     later = found.stretches[1].steps
@@ -147,7 +156,6 @@ def test_a_line_with_every_note_in_its_mode_leaves_it_when_it_is_clearly_heard_i
     assert first.to is not None
     assert first.off is None
     assert first.to.id != "makam/rast"
-    assert heard_instead(found, found.stretches[0].span, PACK.find("rast")) is first.to
 
 
 def test_a_turn_is_placed_at_its_seam() -> None:
