@@ -92,13 +92,12 @@ def take_melody_indexed(
         note = grown()
         match event:
             case NoteOn():
-                fresh = Note(event.pitch_cents, now_s, 0.0, event.kind)
                 if voice is None or note is None or not is_struck_with(note, now_s):
                     items += _with_silence(note, now_s)
-                    note, voice = fresh, event.voice
+                    note, voice = Note(event.pitch_cents, now_s, 0.0, event.kind), event.voice
                     places.append(place)
-                elif fresh.pitch_cents > note.pitch_cents:
-                    note, voice = replace(fresh, onset_s=note.onset_s), event.voice
+                elif event.pitch_cents > note.pitch_cents:
+                    note, voice = replace(note, pitch_cents=event.pitch_cents, kind=event.kind), event.voice
                     places[-1] = place
             case NoteOff(voice=ended) if ended == voice:
                 voice = None

@@ -40,6 +40,7 @@ if TYPE_CHECKING:
 
     from melodycoach.core.arrays import FloatArray, IntArray
     from melodycoach.core.mode import Mode, ModePack
+    from melodycoach.core.sounding import Sounding
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -72,7 +73,7 @@ class HearingTables:
 
 @dataclass(frozen=True, eq=False)
 class ScoringModel:
-    """Hypotheses and tables; nothing in it changes but the memory of tables already built.
+    """Hypotheses and tables; nothing in it changes but the memory of what was already worked out.
 
     Parameters
     ----------
@@ -87,6 +88,8 @@ class ScoringModel:
         In units; see the module's conventions.
     log_prior : float64, shape (n_hypotheses,), nats
         The same for all finals of a mode.
+    soundings
+        The memory of `melodycoach.core.sounding`.
     """
 
     pack: ModePack
@@ -101,6 +104,7 @@ class ScoringModel:
     _scales: tuple[FoldedScale, ...]
     _counts: Counts
     _tables: dict[InputKind, HearingTables] = field(default_factory=dict)
+    soundings: dict[tuple[int, InputKind, bool], Sounding] = field(default_factory=dict, repr=False)
 
     @property
     def n_modes(self) -> int:

@@ -17,6 +17,7 @@ Arrays have shape (n_hypotheses,) and the order of the model's hypotheses.
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -24,17 +25,15 @@ import numpy as np
 
 from melodycoach.core.arrays import sealed
 from melodycoach.core.change import NONE, ChangeState, Field, advance_change, start_change
-from melodycoach.core.model import register_columns
+from melodycoach.core.sounding import MEMORY_OCTAVES, sounding_of
 from melodycoach.core.theory import MOVING, RESTING
 from melodycoach.errors import ImpossibleEvidenceError
 
 if TYPE_CHECKING:
     from melodycoach.core.arrays import FloatArray, IntArray
     from melodycoach.core.model import ScoringModel
-    from melodycoach.core.note import Heard, InputKind
-
-MEMORY_OCTAVES, MEMORY_OCTAVES_BELOW = 12, 6
-"""Compass of a line's memory: more than MIDI has; pitches beyond it count as its ends."""
+    from melodycoach.core.note import Heard
+    from melodycoach.core.sounding import Sounding
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -136,11 +135,10 @@ def note_weight(model: ScoringModel, heard: Heard) -> float:
 
 def advance(model: ScoringModel, state: ScorerState, heard: Heard) -> ScorerState:
     """Give the state after one more note; the old one is left as it was."""
-    weight = note_weight(model, heard)
-    units, shares = model.shares(heard.pitch_cents, heard.kind)
-    fresh, evidence, context = _score(model, state, heard, weight, units, shares)
+    weight, sounding = note_weight(model, heard), sounding_of(model, heard)
+    fresh, evidence, context = _score(model, state, heard, weight, sounding)
     loglik = sealed(state.loglik + evidence.total)
-    memory = sealed(_remember(model, state.memory, heard.kind, units, weight * shares / shares.sum()))
+    memory = sealed(_remember(state.memory, model.tables(heard.kind).bell, sounding, weight))
     n_notes = state.n_notes + 1
     latest = (*state.latest, heard)[-model.parameters.closing_notes :]
     fresh *= model.parameters.hearing[heard.kind].change_power
@@ -152,8 +150,7 @@ def advance(model: ScoringModel, state: ScorerState, heard: Heard) -> ScorerStat
 
 def evidence_of(model: ScoringModel, state: ScorerState, heard: Heard) -> NoteEvidence:
     """Give what one more note would say, split into its degree and its octave."""
-    units, shares = model.shares(heard.pitch_cents, heard.kind)
-    return _score(model, state, heard, note_weight(model, heard), units, shares)[1]
+    return _score(model, state, heard, note_weight(model, heard), sounding_of(model, heard))[1]
 
 
 def increments(model: ScoringModel, state: ScorerState, heard: Heard) -> FloatArray:
@@ -162,43 +159,35 @@ def increments(model: ScoringModel, state: ScorerState, heard: Heard) -> FloatAr
 
 
 def _score(
-    model: ScoringModel,
-    state: ScorerState,
-    heard: Heard,
-    weight: float,
-    units: IntArray,
-    shares: FloatArray,
+    model: ScoringModel, state: ScorerState, heard: Heard, weight: float, sounding: Sounding
 ) -> tuple[FloatArray, NoteEvidence, IntArray]:
     """Give the evidence without the line's memory (for the change filter), with it, and the context."""
-    tables = model.tables(heard.kind)
-    role = RESTING if heard.rests else MOVING
-    size = model.pack.system.divisions
-    columns = (units[:, None] - model.final_units) % size
-    by_theory = shares @ tables.theory[model.mode_index, role, columns]
-    mass = model.parameters.memory_mass
-    places = _memory_places(state.memory, units, size)
-    known = (
-        sum(s * state.memory[at % size :: size].sum() for s, at in zip(shares, places, strict=True)) / mass
+    tables, size, mass = model.tables(heard.kind), model.pack.system.divisions, model.parameters.memory_mass
+    shares, memory = sounding.shares, state.memory
+    known = sum(
+        share * memory[at % size :: size].sum() for share, at in zip(shares, sounding.places, strict=True)
     )
+    known = float(known) / mass
     scale = weight / (1.0 if tables.grams is None else 1.0 + model.parameters.counts_power)
-    fresh = scale * np.log(by_theory)
-    total = scale * np.log(by_theory + known)
+    fresh = scale * sounding.log_theory
+    total = scale * np.log(sounding.by_theory + known)
     context = state.context
     if tables.grams is not None:
+        role = RESTING if heard.rests else MOVING
         rows = context if len(context) else tables.grams.root[model.mode_index]
-        by_counts = shares @ tables.grams.probability[role, rows, columns]
+        by_counts = shares @ tables.grams.probability[role, rows, sounding.columns]
         fresh += scale * model.parameters.counts_power * np.log(by_counts)
         total += scale * model.parameters.counts_power * np.log(by_counts + known)
         if len(context):
-            context = tables.grams.next_row[rows, _meant(columns, tables.theory, model.mode_index, shares)]
-    total -= weight * np.log1p(state.weight / mass)
-    register = np.zeros(len(fresh))
-    if tables.register is not None:
-        power = weight * tables.register_power
-        by_octave = shares @ tables.register[model.mode_index, register_columns(model, units)]
-        known = float(shares @ state.memory[places]) / mass
-        fresh += power * np.log(by_octave)
-        register = power * np.log((by_octave + known) / (1 + state.weight / mass))
+            meant = _meant(sounding.columns, tables.theory, model.mode_index, shares)
+            context = tables.grams.next_row[rows, meant]
+    total -= weight * math.log1p(state.weight / mass)
+    if sounding.by_octave is None or sounding.log_octave is None:
+        return fresh, NoteEvidence(total, np.zeros(len(fresh))), context
+    power = weight * tables.register_power
+    known = float(shares @ memory[sounding.places]) / mass
+    fresh += power * sounding.log_octave
+    register = power * np.log((sounding.by_octave + known) / (1 + state.weight / mass))
     return fresh, NoteEvidence(total, register), context
 
 
@@ -210,21 +199,13 @@ def _meant(columns: IntArray, theory: FloatArray, mode_index: IntArray, shares: 
     return np.asarray(columns[likely.argmax(axis=0), np.arange(columns.shape[1])], dtype=np.int64)
 
 
-def _memory_places(memory: FloatArray, units: IntArray, size: int) -> IntArray:
-    """Give where units from A4 stand in a line's memory."""
-    return np.clip(units + MEMORY_OCTAVES_BELOW * size, 0, len(memory) - 1)
-
-
-def _remember(
-    model: ScoringModel, memory: FloatArray, kind: InputKind, units: IntArray, weights: FloatArray
-) -> FloatArray:
+def _remember(memory: FloatArray, bell: FloatArray, sounding: Sounding, weight: float) -> FloatArray:
     """Give the memory with a note added, spread as widely as the input is blurred."""
-    bell = model.tables(kind).bell
     reach = len(bell) // 2
     memory = memory.copy()
-    for at, weight in zip(_memory_places(memory, units, model.pack.system.divisions), weights, strict=True):
+    for at, part in zip(sounding.places, weight * sounding.shares / sounding.shares.sum(), strict=True):
         at = min(max(at, reach), len(memory) - 1 - reach)
-        memory[at - reach : at + reach + 1] += weight * bell
+        memory[at - reach : at + reach + 1] += part * bell
     return memory
 
 
@@ -244,11 +225,9 @@ def closing(model: ScoringModel, state: ScorerState) -> FloatArray:
 def closing_if_ended(model: ScoringModel, state: ScorerState) -> FloatArray:
     """Give what the end of a phrase would say if it ended with the latest note."""
     total = np.zeros(len(state.loglik))
-    size = model.pack.system.divisions
     for heard in state.latest:
-        units, shares = model.shares(heard.pitch_cents, heard.kind)
-        columns = (units[:, None] - model.final_units) % size
-        likely = shares @ model.tables(heard.kind).closing[model.mode_index, columns]
+        sounding = sounding_of(model, heard)
+        likely = sounding.shares @ model.tables(heard.kind).closing[model.mode_index, sounding.columns]
         total += note_weight(model, heard) * np.log(likely)
     return model.parameters.closing_power * total
 

@@ -251,7 +251,8 @@ def _note_on(session: SessionState, event: NoteOn) -> SessionState:
     if session.sounding is not None and last is not None and is_struck_with(last, session.now_s):
         if note.pitch_cents <= last.pitch_cents:
             return session
-        line = _last_replaced(session.model, session.line, replace(note, onset_s=last.onset_s))
+        top = replace(last, pitch_cents=note.pitch_cents, kind=note.kind)
+        line = _last_replaced(session.model, session.line, top)
         return replace(session, line=line, sounding=event.voice)
     line = extend(session.model, session.line, note)
     return replace(_changed(session, line), sounding=event.voice, played_last=True)
