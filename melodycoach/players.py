@@ -12,6 +12,7 @@ from melodycoach.demo import DemoPlayer
 from melodycoach.errors import PortError
 from melodycoach.sources.midi_pitch import PitchTracker
 from melodycoach.sources.midi_port import LivePort, PortState, PortStatus, port_sentence
+from melodycoach.tuning_words import tuning_sentence
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Sequence
@@ -69,17 +70,22 @@ class Keyboard:
     ) -> None:
         self.port = LivePort(clock, wanted, system)
         self._tracker = PitchTracker()
+        self._tuning_line = tuning_sentence(self._tracker)
         self._has_played = False
-        self._n_openings = 0
+        self._opening = (0, False)
 
     def poll(self, now_s: float) -> Sequence[Event]:
         """Give what has been played since the last call."""
         events: list[Event] = []
-        for message, at_s in self.port.poll():
+        messages = self.port.poll()
+        for message, at_s in messages:
             events += self._tracker.decode(message, at_s)
-        if self.port.n_openings != self._n_openings or self.port.status.state is not PortState.OPEN:
+        opening = (self.port.n_openings, self.port.status.state is PortState.OPEN)
+        if opening != self._opening:
             events += self._tracker.start_over(now_s)  # no note-off comes from a port that has gone
-            self._n_openings = self.port.n_openings
+        if messages or opening != self._opening:
+            self._tuning_line = tuning_sentence(self._tracker)
+        self._opening = opening
         self._has_played = self._has_played or bool(events)
         return events
 
@@ -97,7 +103,7 @@ class Keyboard:
 
     def tuning_line(self) -> str:
         """Say which tuning is believed, and why."""
-        return tuning_sentence(self._tracker)
+        return self._tuning_line
 
     def inputs(self) -> tuple[str, ...]:
         """Name the inputs that can be listened to."""
@@ -118,20 +124,6 @@ class Keyboard:
     def close(self) -> None:
         """Close the port."""
         self.port.close()
-
-
-def tuning_sentence(tracker: PitchTracker) -> str:
-    """Say which tuning a keyboard is believed to have, and why.
-
-    >>> tuning_sentence(PitchTracker())
-    'plain keys: each stands for every perde near it'
-    """
-    tunings = tracker.tunings()
-    if not tunings:
-        return "plain keys: each stands for every perde near it"
-    bent = max(tunings, key=lambda tuning: abs(tuning.bend_cents) + abs(tuning.tuning_cents))
-    reason = "sent by the keyboard" if bent.range_sent else "none was sent: MIDI's default"
-    return f"bends read on channel {bent.channel}, range ±{bent.range_cents / 100:g} semitones ({reason})"
 
 
 class DemoKeyboard:

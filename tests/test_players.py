@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+import time
 from datetime import datetime
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import pytest
 
@@ -12,16 +13,15 @@ from melodycoach.core.event import Event, LineEdited, NoteOff, NoteOn, PitchMove
 from melodycoach.core.note import InputKind
 from melodycoach.demo import HAND_OVER, STAGES, DemoPlayer
 from melodycoach.errors import PortError
-from melodycoach.players import DemoKeyboard, Keyboard, Replay, tuning_sentence
+from melodycoach.players import DemoKeyboard, Keyboard, Replay
 from melodycoach.sources.event_json import LogHeader
 from melodycoach.sources.event_log import RecordedLog
-from melodycoach.sources.midi_pitch import PitchTracker
 from melodycoach.sources.midi_port import WATCH_EVERY_S, PortState
 from melodycoach.sources.midi_system import PortName
 from melodycoach.sources.pack_file import load_pack
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable
+    from collections.abc import Callable, Iterable
 
 NAMES = load_pack("makam").names
 KEYS = PortName("Upright 20:0", "ALSA")
@@ -192,28 +192,39 @@ def test_a_keyboard_is_never_over_and_closes_its_port() -> None:
 # tuning
 
 
-def tracked(*messages: str) -> str:
-    tracker = PitchTracker()
-    for message in messages:
-        tracker.decode(bytes.fromhex(message), 0.0)
-    return tuning_sentence(tracker)
+def test_a_tuning_message_changes_what_is_believed_until_the_keyboard_is_plugged_in_again() -> None:
+    room = Room(KEYS)
+    keyboard = room.keyboard()
+    keyboard.poll(0.0)
+    assert keyboard.tuning_line() == PLAIN
+    # MIDI Tuning Standard, scale/octave of single bytes on all channels: every E 23 c down
+    room.play("F0 7E 7F 08 08 03 7F 7F 40 40 40 40 29 40 40 40 40 40 40 40 F7", "90 40 50")
+    assert keyboard.poll(0.1) == [NoteOn(100.0, 64, 6377.0, InputKind.TUNED)]
+    assert keyboard.tuning_line() == "tuned by a message from the keyboard: E -23 c"
+    keyboard.choose(KEYS.name)
+    assert [type(event) for event in keyboard.poll(0.2)] == [NoteOff]
+    assert keyboard.tuning_line() == PLAIN
 
 
-def test_an_assumed_bend_range_is_said_to_be_assumed() -> None:
-    assert tracked("E1 00 30") == (
-        "bends read on channel 2, range ±2 semitones (none was sent: MIDI's default)"
-    )
-
-
-def test_a_bend_range_that_was_sent_is_said_to_be_sent() -> None:
-    # registered parameter 0, data entry 24 semitones and 50 cents (MIDI 1.0)
-    assert tracked("B0 65 00", "B0 64 00", "B0 06 18", "B0 26 32") == (
-        "bends read on channel 1, range ±24.5 semitones (sent by the keyboard)"
-    )
-
-
-def test_of_several_channels_the_one_that_is_bent_most_is_spoken_of() -> None:
-    assert "channel 3," in tracked("E0 00 3F", "E2 00 30", "E3 00 41")
+@pytest.mark.jack
+def test_a_bulk_dump_of_408_bytes_arrives_whole_over_jack(plug_in: Callable[[str], Any]) -> None:
+    # MIDI Tuning Standard, bulk dump: a word of three bytes for each key, here key 64 half a semitone down
+    words = "".join("3F4000" if key == 64 else f"{key:02X}0000" for key in range(128))
+    wire = plug_in("org")
+    keyboard = Keyboard(time.monotonic)
+    deadline_s = time.monotonic() + 10
+    events: list[Event] = []
+    is_sent = False
+    while len(events) < 1 and time.monotonic() < deadline_s:
+        events += keyboard.poll(time.monotonic())
+        if keyboard.status.state is PortState.OPEN and not is_sent:
+            wire.play(f"F07E7F0801004D616B616D2020202020202020202020{words}00F7", "90 40 50")
+            is_sent = True
+        time.sleep(0.001)
+    said = keyboard.tuning_line()
+    keyboard.close()
+    assert [(event.pitch_cents, event.kind) for event in events] == [(6350.0, InputKind.TUNED)]
+    assert said == "tuned by a message from the keyboard: E4 -50 c"
 
 
 # the demo

@@ -1,17 +1,15 @@
 """MIDI messages become events: one pitch tracker for live ports and for files.
 
 A tracker follows one stream of whole messages and remembers, for each of the sixteen channels,
-the bend and its range, the channel tuning, and which keys sound. It reads no clock and knows no
-port: bytes and a time go in, events come out, and whatever it cannot read is counted and skipped.
+the bend and its range, the tuning, and which keys sound. It reads no clock and knows no port:
+bytes and a time go in, events come out, and whatever it cannot read is counted and skipped.
 
-What a key sounds like, in cents on the MIDI scale::
-
-    100 * (key + coarse tuning) + fine tuning + bend / 8192 * bend range
+What a channel makes of a key is in `midi_channel`, what tuning messages say in `midi_tuning`, and
+which channels form an MPE zone in `midi_mpe`.
 
 References
 ----------
-MIDI 1.0 detailed specification: channel voice messages, registered parameters 0 (pitch bend
-sensitivity), 1 (channel fine tuning), 2 (channel coarse tuning), channel mode messages.
+MIDI 1.0 detailed specification: channel voice messages, registered parameters, channel mode messages.
 """
 
 from __future__ import annotations
@@ -20,38 +18,63 @@ from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 from melodycoach.core.event import NoteOff, NoteOn, PitchMoved
-from melodycoach.core.note import InputKind
+from melodycoach.sources.midi_channel import (
+    BEND_RANGE,
+    DATA_COARSE,
+    DATA_DOWN,
+    DATA_FINE,
+    DATA_UP,
+    DEFAULT_RANGE_CENTS,
+    FORMS,
+    MPE_ZONE,
+    NO_PARAMETER,
+    TUNING_BANK,
+    TUNING_PROGRAM,
+    Channel,
+    Master,
+    Sounding,
+)
+from melodycoach.sources.midi_mpe import CHANNELS, MANAGERS, MOST_MEMBERS, MpeZone, ZoneMap, set_up_zone
+from melodycoach.sources.midi_tuning import (
+    ALL_CHANNELS,
+    CENTRE,
+    KEYS,
+    MasterCoarse,
+    MasterFine,
+    Other,
+    TunedKeys,
+    TunedOctave,
+    TuningTables,
+    read_tuning,
+)
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Iterable, Mapping, Sequence
 
     from melodycoach.core.event import Event
 
-CHANNELS = 16
-KEYS = 128
+__all__ = [
+    "CHANNELS",
+    "DEFAULT_RANGE_CENTS",
+    "DRUM_CHANNEL",
+    "VOICES_PER_PORT",
+    "ChannelTuning",
+    "MpeZone",
+    "PitchTracker",
+]
+
 VOICES_PER_PORT = CHANNELS * KEYS
 DRUM_CHANNEL = 9
 """Channel 10 for people: by common practice it carries drums, whose keys are no pitches."""
-
-CENTRE = 8192
-"""Middle of a 14-bit value: no bend, no fine tuning."""
-
-COARSE_CENTRE = 64
-DEFAULT_RANGE_CENTS = 200
-"""What a bend spans until the keyboard says otherwise: two semitones (MIDI 1.0)."""
-
-PLAIN_CENTS = 1.0
-"""A key that is off by less than this is a plain key of twelve to the octave."""
 
 _NOTE_OFF, _NOTE_ON, _CONTROL, _BEND = 0x80, 0x90, 0xB0, 0xE0
 _LENGTH_BY_STATUS = {0x80: 3, 0x90: 3, 0xA0: 3, 0xB0: 3, 0xC0: 2, 0xD0: 2, 0xE0: 3}
 _SYSEX, _SYSTEM_RESET = 0xF0, 0xFF
 
-_DATA_COARSE, _DATA_FINE, _DATA_UP, _DATA_DOWN = 6, 38, 96, 97
+_DATA_ENTRY = frozenset({DATA_COARSE, DATA_FINE, DATA_UP, DATA_DOWN})
 _NRPN_FINE, _NRPN_COARSE, _RPN_FINE, _RPN_COARSE = 98, 99, 100, 101
-_ALL_SOUND_OFF, _RESET_CONTROLLERS, _ALL_NOTES_OFF = 120, 121, 123
-_NO_PARAMETER = (127, 127)
-_BEND_RANGE, _FINE_TUNING, _COARSE_TUNING = (0, 0), (0, 1), (0, 2)
+_RESET_CONTROLLERS = 121
+_END_NOTES = frozenset({120, 123, 124, 125, 126, 127})  # the last four change the mode, and end notes too
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,7 +82,8 @@ class ChannelTuning:
     """What is believed of one channel, for people.
 
     ``channel`` counts from 1. ``range_sent`` says whether the keyboard sent its bend range or the
-    usual two semitones are assumed.
+    usual two semitones are assumed. ``tuning_cents`` is fine and coarse tuning. ``key_cents`` says
+    how far the keys are off their places, by a tuning message; empty: none came.
     """
 
     channel: int
@@ -67,38 +91,7 @@ class ChannelTuning:
     range_cents: int
     range_sent: bool
     tuning_cents: float
-
-
-@dataclass(slots=True)
-class _Channel:
-    """State of one channel; every value stays in the range that its comment gives."""
-
-    bend: int = 0  # -8192 to 8191
-    range_cents: int = DEFAULT_RANGE_CENTS  # 0 to 12799
-    range_sent: bool = False
-    fine: int = CENTRE  # 0 to 16383
-    coarse: int = COARSE_CENTRE  # 0 to 127
-    parameter: tuple[int, int] = _NO_PARAMETER  # coarse and fine byte of the selected RPN
-    cents_by_key: dict[int, float] = field(default_factory=dict)  # the keys that sound
-    n_bends: int = 0  # bend messages since the last note-on
-    is_tuned: bool = False  # a single bend before a note has shown that bends tune, here
-
-    def bend_cents(self) -> float:
-        return self.bend * self.range_cents / CENTRE
-
-    def fine_cents(self) -> float:
-        return (self.fine - CENTRE) * 100 / CENTRE
-
-    def offset_cents(self) -> float:
-        return self.bend_cents() + self.fine_cents()
-
-    def sound(self, key: int) -> tuple[float, InputKind]:
-        """Say where a key sounds and how sure that is."""
-        plain = 100.0 * (key + self.coarse - COARSE_CENTRE)
-        offset = self.offset_cents()
-        if abs(offset) < PLAIN_CENTS and not self.is_tuned:
-            return plain, InputKind.KEYS
-        return plain + offset, InputKind.TUNED
+    key_cents: Mapping[int, float] = field(default_factory=dict)
 
 
 class PitchTracker:
@@ -109,11 +102,16 @@ class PitchTracker:
     - A key whose bend and fine tuning come to less than one cent gives a `KEYS` note on a multiple
       of 100 cents: it stands for every pitch near it. Any other gives a `TUNED` note.
     - A single bend message between two note-ons tunes the second one (a wheel that a hand moves sends
-      many). From then on every key of that channel is `TUNED`, unbent ones too.
-    - A bend or a tuning that changes while keys sound moves them, each with one `PitchMoved`.
+      many); in an MPE zone any bend at a note-on does. From then on every key of that channel, or of
+      that zone, is `TUNED`, unbent ones too.
+    - A tuning message that takes any key of a channel off its place makes every key of the channel
+      `TUNED`; one that puts them all back makes them plain again. Coarse tuning leaves plain keys plain.
+    - A master tuning that keeps A4 between 435 and 445 Hz is a concert pitch: it moves no note.
+    - A bend or a tuning that changes while keys sound moves them, each with one `PitchMoved`;
+      tuning messages of the non-real-time kind wait for the next note.
     - A key struck again before it was released ends and begins anew.
-    - Channel 10 is taken for drums and left out, and so are the notes of any channel in
-      ``ignored_channels``; `n_ignored_notes` counts them, so that the player can be told.
+    - Channel 10 is taken for drums and left out unless it belongs to a zone, and so are the notes of
+      any channel in ``ignored_channels``; `n_ignored_notes` counts them, so that the player can be told.
     - What is no whole, valid message is skipped and counted in `n_skipped`.
 
     An instance changes as it reads; it belongs to one thread.
@@ -125,6 +123,13 @@ class PitchTracker:
         with channel counted from 0.
     ignored_channels
         Channels counted from 0.
+    zones
+        MPE zones of a surface that does not announce them itself; what it does announce goes first.
+
+    Raises
+    ------
+    ValueError
+        Two zones share a channel.
 
     Examples
     --------
@@ -139,13 +144,20 @@ class PitchTracker:
     """
 
     def __init__(
-        self, port_number: int = 0, ignored_channels: frozenset[int] = frozenset({DRUM_CHANNEL})
+        self,
+        port_number: int = 0,
+        ignored_channels: frozenset[int] = frozenset({DRUM_CHANNEL}),
+        zones: tuple[MpeZone, ...] = (),
     ) -> None:
+        taken = [channel for zone in zones for channel in zone.channels]
+        if len(taken) != len(set(taken)):
+            raise ValueError(f"zones {zones!r} share a channel")
         self.port_number = port_number
         self.ignored_channels = ignored_channels
         self.n_skipped = 0
         self.n_ignored_notes = 0
-        self._channels = [_Channel() for _ in range(CHANNELS)]
+        self._first_zones = self._zones = ZoneMap(zones)
+        self._begin([{} for _ in ALL_CHANNELS])
 
     def decode(self, message: Sequence[int], at_s: float) -> tuple[Event, ...]:
         """Read one whole message.
@@ -153,7 +165,8 @@ class PitchTracker:
         Parameters
         ----------
         message
-            Status byte and data bytes. Anything is accepted; what is damaged is skipped.
+            Status byte and data bytes; a system exclusive message from F0 to F7. Anything is
+            accepted; what is damaged is skipped.
         at_s
             When it arrived, in seconds from the start of the session.
         """
@@ -177,21 +190,18 @@ class PitchTracker:
         if kind == _BEND:
             channel.bend = message[1] + 128 * message[2] - CENTRE
             channel.n_bends += 1
-            return self._moved(number, channel, at_s)
+            return self._moved(self._zones.reach[number], at_s)
         return ()  # pressure and programs say nothing of pitch
 
     def silence(self, at_s: float) -> tuple[NoteOff, ...]:
         """End everything that sounds: the port is gone, or the player stops."""
-        return tuple(
-            off
-            for number, channel in enumerate(self._channels)
-            for off in self._all_off(number, channel, at_s)
-        )
+        return self._all_off(ALL_CHANNELS, at_s)
 
     def start_over(self, at_s: float) -> tuple[NoteOff, ...]:
         """End everything that sounds and forget bends, ranges and tunings: a port was replugged."""
         ended = self.silence(at_s)
-        self._channels = [_Channel() for _ in range(CHANNELS)]
+        self._zones = self._first_zones
+        self._begin([{} for _ in ALL_CHANNELS])
         return ended
 
     @property
@@ -200,8 +210,18 @@ class PitchTracker:
         return tuple(
             self._voice(number, key)
             for number, channel in enumerate(self._channels)
-            for key in sorted(channel.cents_by_key)
+            for key in sorted(channel.sounding)
         )
+
+    @property
+    def zones(self) -> tuple[MpeZone, ...]:
+        """The MPE zones now in force."""
+        return self._zones.zones
+
+    @property
+    def concert_cents(self) -> float:
+        """How far the concert pitch that was sent is from A4 = 440 Hz, in cents; no note is moved by it."""
+        return self._master.concert_cents
 
     def tunings(self) -> tuple[ChannelTuning, ...]:
         """Say what is believed of each channel that is not plain: bent, retuned, or with a sent range."""
@@ -209,93 +229,159 @@ class PitchTracker:
             ChannelTuning(
                 channel=number + 1,
                 bend_cents=channel.bend_cents(),
-                range_cents=channel.range_cents,
+                range_cents=channel.values[BEND_RANGE],
                 range_sent=channel.range_sent,
-                tuning_cents=channel.fine_cents() + 100 * (channel.coarse - COARSE_CENTRE),
+                tuning_cents=channel.tuning_cents(),
+                key_cents=self._tables.table(number),
             )
             for number, channel in enumerate(self._channels)
-            if channel.bend or channel.range_sent or channel.fine != CENTRE or channel.coarse != COARSE_CENTRE
+            if channel.bend or channel.range_sent or channel.tuning_cents() or self._tables.table(number)
         )
+
+    def _begin(self, sounding: Sequence[dict[int, Sounding]]) -> None:
+        """Forget every bend, range and tuning; the zones stay."""
+        self._master = Master()
+        self._tables = TuningTables()
+        self._channels = [Channel(self._master, keys) for keys in sounding]
+        self._take_roles(ALL_CHANNELS)
 
     def _voice(self, number: int, key: int) -> int:
         return self.port_number * VOICES_PER_PORT + number * KEYS + key
 
-    def _note_on(self, number: int, channel: _Channel, key: int, at_s: float) -> tuple[Event, ...]:
-        if number in self.ignored_channels:
+    def _note_on(self, number: int, channel: Channel, key: int, at_s: float) -> tuple[Event, ...]:
+        if number in self._left_out:
             self.n_ignored_notes += 1
             return ()
         ended = self._note_off(number, channel, key, at_s)
-        tuned_now = channel.n_bends == 1 and abs(channel.offset_cents()) >= PLAIN_CENTS
-        channel.is_tuned = channel.is_tuned or tuned_now
+        if not channel.is_tuned and channel.shows_tuning():
+            for alike in self._zones.alike[number]:
+                self._channels[alike].is_tuned = True
         channel.n_bends = 0
-        cents, kind = channel.sound(key)
-        channel.cents_by_key[key] = cents
+        key_cents = self._tables.key_cents(number, key)
+        cents, kind = channel.sound(key, key_cents)
+        channel.sounding[key] = Sounding(key_cents, cents)
         return (*ended, NoteOn(at_s, self._voice(number, key), cents, kind))
 
-    def _note_off(self, number: int, channel: _Channel, key: int, at_s: float) -> tuple[Event, ...]:
-        if channel.cents_by_key.pop(key, None) is None:
+    def _note_off(self, number: int, channel: Channel, key: int, at_s: float) -> tuple[Event, ...]:
+        if channel.sounding.pop(key, None) is None:
             return ()
         return (NoteOff(at_s, self._voice(number, key)),)
 
-    def _all_off(self, number: int, channel: _Channel, at_s: float) -> tuple[NoteOff, ...]:
-        ended = tuple(NoteOff(at_s, self._voice(number, key)) for key in sorted(channel.cents_by_key))
-        channel.cents_by_key.clear()
-        return ended
+    def _all_off(self, numbers: Iterable[int], at_s: float) -> tuple[NoteOff, ...]:
+        ended: list[NoteOff] = []
+        for number in numbers:
+            keys = self._channels[number].sounding
+            ended += (NoteOff(at_s, self._voice(number, key)) for key in sorted(keys))
+            keys.clear()
+        return tuple(ended)
 
-    def _moved(self, number: int, channel: _Channel, at_s: float) -> tuple[Event, ...]:
+    def _moved(self, numbers: Iterable[int], at_s: float) -> tuple[Event, ...]:
+        """Say which of the keys that sound are no longer where they were."""
         moved: list[Event] = []
-        for key, before in channel.cents_by_key.items():
-            cents, kind = channel.sound(key)
-            if cents != before:
-                channel.cents_by_key[key] = cents
-                moved.append(PitchMoved(at_s, self._voice(number, key), cents, kind))
+        for number in numbers:
+            channel = self._channels[number]
+            for key, note in channel.sounding.items():
+                cents, kind = channel.sound(key, note.key_cents)
+                if cents != note.pitch_cents:
+                    note.pitch_cents = cents
+                    moved.append(PitchMoved(at_s, self._voice(number, key), cents, kind))
         return tuple(moved)
 
+    def _retuned(self, numbers: Iterable[int], at_s: float) -> tuple[Event, ...]:
+        """Take what sounds to where the tables say now."""
+        for number in numbers:
+            for key, note in self._channels[number].sounding.items():
+                note.key_cents = self._tables.key_cents(number, key)
+        return self._moved(numbers, at_s)
+
     def _control(
-        self, number: int, channel: _Channel, control: int, value: int, at_s: float
+        self, number: int, channel: Channel, control: int, value: int, at_s: float
     ) -> tuple[Event, ...]:
-        if control in (_DATA_COARSE, _DATA_FINE, _DATA_UP, _DATA_DOWN):
-            _enter_data(channel, control, value)
-            return self._moved(number, channel, at_s)
+        if control in _DATA_ENTRY:
+            return self._enter_data(number, channel, control, value, at_s)
         if control == _RPN_COARSE:
             channel.parameter = (value, channel.parameter[1])
         elif control == _RPN_FINE:
             channel.parameter = (channel.parameter[0], value)
         elif control in (_NRPN_COARSE, _NRPN_FINE):
-            channel.parameter = _NO_PARAMETER
+            channel.parameter = NO_PARAMETER
         elif control == _RESET_CONTROLLERS:  # the bend range stays
-            channel.parameter = _NO_PARAMETER
-            channel.bend, channel.is_tuned = 0, False
-            return self._moved(number, channel, at_s)
-        elif control == _ALL_SOUND_OFF or control >= _ALL_NOTES_OFF:  # 124-127 end notes too
-            return self._all_off(number, channel, at_s)
+            for reached in self._zones.reach[number]:
+                self._channels[reached].parameter = NO_PARAMETER
+                self._channels[reached].recentre()
+            return self._moved(self._zones.reach[number], at_s)
+        elif control in _END_NOTES:
+            return self._all_off(self._zones.reach[number], at_s)
         return ()
+
+    def _enter_data(
+        self, number: int, channel: Channel, control: int, value: int, at_s: float
+    ) -> tuple[Event, ...]:
+        """Set the selected registered parameter; a bend range is that of all members of a zone."""
+        page, name = channel.parameter
+        if page == 0 and name == MPE_ZONE and control == DATA_COARSE:
+            return self._set_up_zone(number, value, at_s)
+        if page != 0 or name not in FORMS:
+            return ()
+        entered = FORMS[name].entered(channel.values[name], control, value)
+        if name == BEND_RANGE:
+            for alike in self._zones.alike[number]:
+                self._channels[alike].values[BEND_RANGE] = entered
+                self._channels[alike].range_sent = True
+            return self._moved(self._zones.alike[number], at_s)
+        channel.values[name] = entered
+        if name == TUNING_PROGRAM:  # a bank that was chosen waits for it
+            self._tables.choose(number, channel.values[TUNING_BANK], entered)
+            return self._retuned((number,), at_s)
+        return self._moved((number,), at_s)
+
+    def _set_up_zone(self, number: int, n_members: int, at_s: float) -> tuple[Event, ...]:
+        """Follow an MPE configuration message: its zone, and channels that change hands, begin anew."""
+        if number not in MANAGERS:
+            return ()  # by the standard it says nothing there
+        if n_members > MOST_MEMBERS:
+            self.n_skipped += 1
+            return ()
+        before = self._zones
+        self._zones = ZoneMap(set_up_zone(before.zones, number, n_members))
+        anew = self._zones.begin_anew(before, number)
+        ended = self._all_off(anew, at_s)
+        self._take_roles(anew)
+        return ended
+
+    def _take_roles(self, numbers: Iterable[int]) -> None:
+        """Give channels the bend and the range that they begin with in their zone, or in none."""
+        zone_by_member = self._zones.zone_by_member
+        for number in numbers:
+            channel, zone = self._channels[number], zone_by_member.get(number)
+            channel.recentre()
+            channel.range_sent = number in self._zones.sent
+            channel.manager = None if zone is None else self._channels[zone.manager]
+            channel.values[BEND_RANGE] = DEFAULT_RANGE_CENTS if zone is None else zone.member_range_cents
+        self._left_out = self.ignored_channels - ({DRUM_CHANNEL} & zone_by_member.keys())
 
     def _system(self, message: Sequence[int], at_s: float) -> tuple[Event, ...]:
-        """Read what belongs to no channel. Tuning messages (sysex) will be read here."""
+        """Read what belongs to no channel: tuning messages, and resets."""
         if message[0] == _SYSTEM_RESET and len(message) == 1:
             return self.start_over(at_s)
-        return ()
-
-
-def _enter_data(channel: _Channel, control: int, value: int) -> None:
-    """Set the selected registered parameter; the coarse byte alone is enough and clears the fine one."""
-    step = {_DATA_UP: 1, _DATA_DOWN: -1}.get(control, 0)
-    if channel.parameter == _BEND_RANGE:
-        semitones, cents = divmod(channel.range_cents, 100)
-        if control == _DATA_COARSE:
-            semitones, cents = value, 0
-        elif control == _DATA_FINE:
-            cents = min(value, 99)
-        channel.range_cents = min(max(semitones * 100 + cents + step, 0), 127 * 100 + 99)
-        channel.range_sent = True
-    elif channel.parameter == _FINE_TUNING:
-        fine = channel.fine
-        if control == _DATA_COARSE:
-            fine = value << 7
-        elif control == _DATA_FINE:
-            fine = (fine & ~0x7F) | value
-        channel.fine = min(max(fine + step, 0), 2 * CENTRE - 1)
-    elif channel.parameter == _COARSE_TUNING and control != _DATA_FINE:
-        coarse = value if control == _DATA_COARSE else channel.coarse + step
-        channel.coarse = min(max(coarse, 0), 127)
+        if message[0] != _SYSEX:
+            return ()
+        match read_tuning(message):
+            case TunedKeys() as told:
+                channels = self._tables.tune_keys(told)
+                return self._retuned(channels, at_s) if told.at_once else ()
+            case TunedOctave() as told:
+                channels = self._tables.tune_octave(told)
+                return self._retuned(channels, at_s) if told.at_once else ()
+            case MasterFine(cents):
+                self._master.fine_cents = cents
+                return self._moved(ALL_CHANNELS, at_s)
+            case MasterCoarse(semitones):
+                self._master.semitones = semitones
+                return self._moved(ALL_CHANNELS, at_s)
+            case Other.RESET:
+                self._begin([channel.sounding for channel in self._channels])
+                return self._retuned(ALL_CHANNELS, at_s)
+            case told:
+                self.n_skipped += told is Other.DAMAGED
+                return ()
