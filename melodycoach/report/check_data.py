@@ -18,6 +18,7 @@ from melodycoach.core.note import Note
 from melodycoach.core.octave import standing_final
 from melodycoach.core.offmode import off_mode_words
 from melodycoach.core.scorer import mode_posterior, posterior
+from melodycoach.core.span import span_state
 from melodycoach.core.verdict import competing_words, reading_words, verdict
 from melodycoach.report.check_values import (
     mode_data,
@@ -181,7 +182,7 @@ def _likelihoods(checked: Checked) -> dict[str, Any]:
     index_by_id = {mode.id: index for index, mode in enumerate(model.modes)}
     drawn = [index_by_id[mode_id] for mode_id in dict.fromkeys(wanted) if mode_id in index_by_id]
     drawn = drawn[:CURVES_DRAWN]
-    after = (mode_posterior(model, state) for state in states[1:])
+    after = (mode_posterior(model, span_state(states, 1, number)) for number in range(1, len(states)))
     return {
         "modes": [mode_data(model.modes[index]) for index in drawn],
         "after": [[rounded(by_mode[index]) for index in drawn] for by_mode in after],
@@ -224,7 +225,7 @@ def _notes(checked: Checked) -> list[dict[str, Any]]:
 
 
 def _likely(checked: Checked, number: int) -> list[dict[str, Any]]:
-    by_mode = mode_posterior(checked.model, checked.line.states[number])
+    by_mode = mode_posterior(checked.model, span_state(checked.line.states, 1, number))
     ranked = sorted(range(len(by_mode)), key=lambda index: -by_mode[index])[:LIKELY_LISTED]
     return [{"name": checked.model.modes[i].name, "probability": rounded(by_mode[i])} for i in ranked]
 

@@ -1,0 +1,134 @@
+"""HTML and SVG elements that cannot be broken by what stands in them.
+
+Everything that is not `Html` is escaped when it is put into an element, so a title or a file name
+may hold anything.
+"""
+
+from __future__ import annotations
+
+import re
+from html import escape
+from typing import TYPE_CHECKING, TypeAlias
+
+if TYPE_CHECKING:
+    from collections.abc import Iterable, Sequence
+
+_UNSAYABLE = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\ud800-\udfff\ufffe\uffff]")
+"""Characters that a page may not hold: controls, halves of pairs (from odd file names), no characters."""
+
+_VOID = frozenset({"br", "meta"})
+_CAMEL = {"viewbox": "viewBox"}
+
+
+class Html(str):
+    """Text that is markup already, and is not escaped again."""
+
+    __slots__ = ()
+
+
+Content: TypeAlias = "str | Html | None"
+Attribute: TypeAlias = "str | float | bool | None"
+
+
+def escaped(text: str) -> Html:
+    """Make plain text fit to stand in a page.
+
+    >>> escaped("<b> & " + chr(7)) == "&lt;b&gt; &amp; " + chr(0xFFFD)
+    True
+    """
+    return text if isinstance(text, Html) else Html(escape(_UNSAYABLE.sub("\ufffd", text)))
+
+
+def number(value: float) -> str:
+    """Write a number with at most one decimal, as drawings need it.
+
+    >>> number(2.0), number(2.449), number(-0.01)
+    ('2', '2.4', '0')
+    """
+    text = f"{value:.1f}".removesuffix(".0")
+    return "0" if text == "-0" else text
+
+
+def joined(parts: Iterable[Content], between: str = "") -> Html:
+    """Put pieces one behind the other; what is None is left out.
+
+    >>> joined(["a & b", Html("<br>"), None])
+    'a &amp; b<br>'
+    """
+    return Html(escaped(between).join(escaped(part) for part in parts if part is not None))
+
+
+def element(tag: str, *content: Content, **attributes: Attribute) -> Html:
+    """Build one element.
+
+    Parameters
+    ----------
+    tag
+        Its name.
+    content
+        What stands in it: `Html` as it is, other text escaped, None left out.
+    attributes
+        ``class_`` gives ``class``, ``data_note`` gives ``data-note``. False and None are left out,
+        True stands without a value.
+
+    Examples
+    --------
+    >>> element("p", "1 < 2", class_="small", data_note=3, hidden=False)
+    '<p class="small" data-note="3">1 &lt; 2</p>'
+    >>> element("meta", charset="utf-8")
+    '<meta charset="utf-8">'
+    """
+    opening = f"<{tag}{''.join(map(_attribute, attributes, attributes.values()))}>"
+    return Html(opening if tag in _VOID else f"{opening}{joined(content)}</{tag}>")
+
+
+def _attribute(key: str, value: Attribute) -> str:
+    if value is None or value is False:
+        return ""
+    name = _CAMEL.get(key) or key.rstrip("_").replace("_", "-")
+    if value is True:
+        return f" {name}"
+    return f' {name}="{escaped(value) if isinstance(value, str) else number(value)}"'
+
+
+def bullets(items: Iterable[Content], class_: str | None = None) -> Html:
+    """Build a list without order."""
+    return element("ul", *(element("li", item) for item in items), class_=class_)
+
+
+def table(
+    heads: Sequence[str],
+    rows: Iterable[Sequence[Content]],
+    caption: str,
+    row_ids: Sequence[str] = (),
+    class_: str = "rows",
+) -> Html:
+    """Build a table whose first column names its rows.
+
+    Parameters
+    ----------
+    heads
+        The name of each column. Each cell has it too, for a narrow page, where cells stand one
+        below the other.
+    rows
+        As many cells as there are heads, for each row.
+    caption
+        What the table shows.
+    row_ids
+        An id for each row, or nothing.
+    class_
+        ``rows`` may fall into blocks on a narrow page; ``wide`` is scrolled there.
+    """
+    head = element("tr", *(element("th", name, scope="col") for name in heads))
+    body = []
+    for at, cells in enumerate(rows):
+        first = element("th", cells[0], scope="row", data_head=heads[0])
+        rest = (element("td", cell, data_head=name) for name, cell in zip(heads[1:], cells[1:], strict=True))
+        body.append(element("tr", first, *rest, id=row_ids[at] if row_ids else None))
+    return element(
+        "table",
+        element("caption", caption),
+        element("thead", head),
+        element("tbody", *body),
+        class_=class_,
+    )
