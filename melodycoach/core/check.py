@@ -24,7 +24,15 @@ from melodycoach.core.plain_keys import keyboard_note
 from melodycoach.core.ranking import OwedStep, rank_owed
 from melodycoach.core.scorer import leading
 from melodycoach.core.session import Line, empty_line, rewrite
-from melodycoach.core.span import Span, bar_bounds, heard_instead, mode_probability, phrase_bounds, span
+from melodycoach.core.span import (
+    Span,
+    bar_bounds,
+    growing_spans,
+    heard_instead,
+    mode_probability,
+    phrase_bounds,
+    span,
+)
 from melodycoach.core.why import Reason, reasons
 
 if TYPE_CHECKING:
@@ -69,6 +77,8 @@ class Stretch:
         Of the mode, by what the notes of the stretch say.
     steps
         The characteristic steps of the mode, from the first note of the stretch on.
+    course
+        The course of the stretch beside that of the mode.
     """
 
     span: Span
@@ -77,6 +87,7 @@ class Stretch:
     noticed_at: int | None
     probability: float
     steps: Steps
+    course: Course
 
 
 @dataclass(frozen=True, slots=True)
@@ -170,12 +181,12 @@ def check_sheet(model: ScoringModel, sheet: Sheet, target: Mode | None = None) -
         line=line,
         whole=whole,
         view=view,
-        stretches=(found := _stretches(model, line, whole)),
+        stretches=(found := _stretches(model, line, whole, bounds)),
         off=_off(model, line, view if target is not None else None, found),
-        phrases=tuple(span(model, states, first, last) for first, last in bounds),
-        bars=tuple((bar, span(model, states, first, last)) for bar, first, last in bar_bounds(sheet.places)),
+        phrases=tuple(span(model, heard, first, last) for first, last in bounds),
+        bars=tuple((bar, span(model, heard, first, last)) for bar, first, last in bar_bounds(sheet.places)),
         steps=_steps(model, line, view, 1, len(heard)),
-        course=course_of(model, heard, view, bounds) if heard else None,
+        course=course_of(model, heard, view.mode, view.final_units, bounds) if heard else None,
         reasons=_reasons(model, line, view),
         keyboard_note=_keyboard_note(model, line, view),
     )
@@ -198,7 +209,7 @@ def leaving(checked: Checked, target: Mode) -> Leaving | None:
         raise ValueError(f"the line was checked for {checked.target}, not for {target.id!r}")
     found = [Leaving(number, off=one[1]) for number, one in enumerate(checked.off, 1) if one is not None]
     for stretch in checked.stretches:
-        to = heard_instead(checked.model, checked.line.states, stretch.span, target)
+        to = heard_instead(checked.model, stretch.span, target)
         if to is not None:
             turned = _turns_at(checked, stretch, target)
             found.append(Leaving(turned, to=checked.model.mode_of(to)))
@@ -210,29 +221,33 @@ def _turns_at(checked: Checked, stretch: Stretch, target: Mode) -> int:
     first, last = stretch.span.first, stretch.span.last
     if first > 1:
         return first
-    model, states = checked.model, checked.line.states
-    turned = last
-    for number in range(last, 0, -1):
-        if heard_instead(model, states, span(model, states, first, number), target) is None:
+    model, turned = checked.model, last
+    for part in reversed(growing_spans(model, checked.line.heard, first, last)):
+        if heard_instead(model, part, target) is None:
             break
-        turned = number
+        turned = part.last
     return turned
 
 
-def _stretches(model: ScoringModel, line: Line, whole: Leaning) -> tuple[Stretch, ...]:
+def _stretches(
+    model: ScoringModel, line: Line, whole: Leaning, bounds: Sequence[tuple[int, int]]
+) -> tuple[Stretch, ...]:
     """Cut the line where its mode changes."""
     if not line.heard:
         return ()
     judged_by = stretch_judges(model, line.states, line.heard, whole)
     firsts = [*(judge.since for judge in judged_by), len(line.heard) + 1]
     return tuple(
-        _stretch(model, line, judge, after - 1) for judge, after in zip(judged_by, firsts[1:], strict=True)
+        _stretch(model, line, judge, after - 1, bounds)
+        for judge, after in zip(judged_by, firsts[1:], strict=True)
     )
 
 
-def _stretch(model: ScoringModel, line: Line, judge: Judge, last: int) -> Stretch:
+def _stretch(
+    model: ScoringModel, line: Line, judge: Judge, last: int, bounds: Sequence[tuple[int, int]]
+) -> Stretch:
     first, mode, final_units = judge
-    part = span(model, line.states, first, last)
+    part = span(model, line.heard, first, last)
     rival = part.leaning.rival if model.mode_of(part.leaning.best) is mode else part.leaning.best
     view = InView(mode, final_units, hypothesis_of(model, mode, final_units), rival)
     return Stretch(
@@ -240,8 +255,9 @@ def _stretch(model: ScoringModel, line: Line, judge: Judge, last: int) -> Stretc
         mode=mode,
         final_units=final_units,
         noticed_at=_noticed_at(line, first),
-        probability=mode_probability(model, line.states, mode, part),
+        probability=mode_probability(model, part, mode),
         steps=_steps(model, line, view, first, last),
+        course=course_of(model, line.heard[first - 1 : last], mode, final_units, bounds, first),
     )
 
 

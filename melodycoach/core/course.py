@@ -17,7 +17,7 @@ from melodycoach.core.why import opening_place
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
-    from melodycoach.core.judge import InView
+    from melodycoach.core.mode import Mode
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.note import Heard
 
@@ -53,77 +53,90 @@ class Course:
 
 
 def course_of(
-    model: ScoringModel, heard: Sequence[Heard], view: InView, phrases: Sequence[tuple[int, int]]
+    model: ScoringModel,
+    heard: Sequence[Heard],
+    mode: Mode,
+    final_units: int,
+    phrases: Sequence[tuple[int, int]],
+    first: int = 1,
 ) -> Course:
-    """Hold a line against the course of a mode.
+    """Hold a line, or a stretch of it, against the course of a mode.
 
     Parameters
     ----------
     model
         Gives names and tone system.
     heard
-        The notes of the line, at least one.
-    view
-        The mode, and where it stands.
+        Its notes, at least one.
+    mode, final_units
+        The mode, and where it stands, in units from A4.
     phrases
-        First and last note of each phrase, counted from 1.
+        First and last note of each phrase of the line, counted from 1.
+    first
+        The number of the first of ``heard`` in the line.
     """
-    ends = tuple(_phrase_end(model, heard, view, last) for _, last in phrases)
-    return Course(
-        opening=_opening(model, heard, view),
-        register=_register(model, heard, view),
-        cadence=_cadence(model, heard, view, ends[-1]),
-        phrase_ends=ends,
-    )
+    beside = _Beside(model, mode, final_units, tuple(heard))
+    last = first + len(heard) - 1
+    ends = sorted({*(end for _, end in phrases if first <= end <= last), last})
+    told = tuple(beside.phrase_end(end, heard[end - first]) for end in ends)
+    return Course(beside.opening(), beside.register(), beside.cadence(told[-1]), told)
 
 
-def _heights(model: ScoringModel, heard: Sequence[Heard], view: InView) -> list[float]:
-    system = model.pack.system
-    return [meant_units(view.mode, view.final_units, one.pitch_cents, one.kind, system) for one in heard]
+@dataclass(frozen=True, slots=True)
+class _Beside:
+    """A line beside a mode that stands on a final."""
 
+    model: ScoringModel
+    mode: Mode
+    final_units: int
+    heard: tuple[Heard, ...]
 
-def _opening(model: ScoringModel, heard: Sequence[Heard], view: InView) -> Trait:
-    names, mode = model.pack.names, view.mode
-    first = _heights(model, heard[:OPENING_NOTES], view)
-    low, high = mode.opening
-    inside = low - OPENING_MARGIN_UNITS <= median(first) - view.final_units <= high + OPENING_MARGIN_UNITS
-    start = names.name_at(round(first[0]))
-    if len(first) < OPENING_NOTES:
-        return Trait(None, f"too short to tell where it opens; it begins on {start}")
-    place = opening_place(mode, view.final_units, model)
-    return Trait(inside, f"it opens on {start}; {mode.name} opens {place}")
+    def heights(self) -> list[float]:
+        """Give where the notes are meant to lie, in units from A4."""
+        system = self.model.pack.system
+        return [
+            meant_units(self.mode, self.final_units, one.pitch_cents, one.kind, system) for one in self.heard
+        ]
 
+    def name(self, height: float) -> str:
+        return self.model.pack.names.name_at(round(height))
 
-def _register(model: ScoringModel, heard: Sequence[Heard], view: InView) -> Trait:
-    names, mode = model.pack.names, view.mode
-    heights = _heights(model, heard, view)
-    low, high = (view.final_units + degree for degree in (mode.degrees[0], mode.degrees[-1]))
-    margin = OPENING_MARGIN_UNITS
-    outside = sum(not low - margin <= height <= high + margin for height in heights)
-    reach = f"from {names.name_at(round(min(heights)))} to {names.name_at(round(max(heights)))}"
-    compass = f"{names.name_at(low)} to {names.name_at(high)}"
-    beyond = f", {outside} of {len(heights)} notes outside" if outside else ""
-    agrees = outside <= (1 - INSIDE_SHARE) * len(heights)
-    return Trait(agrees, f"it lies {reach}; the compass of {mode.name} is {compass}{beyond}")
+    def opening(self) -> Trait:
+        first, mode = self.heights()[:OPENING_NOTES], self.mode
+        start = self.name(first[0])
+        if len(first) < OPENING_NOTES:
+            return Trait(None, f"too short to tell where it opens; it begins on {start}")
+        low, high = mode.opening[0] - OPENING_MARGIN_UNITS, mode.opening[1] + OPENING_MARGIN_UNITS
+        inside = low <= median(first) - self.final_units <= high
+        place = opening_place(mode, self.final_units, self.model)
+        return Trait(inside, f"it opens on {start}; {mode.name} opens {place}")
 
+    def register(self) -> Trait:
+        heights, mode = self.heights(), self.mode
+        low, high = self.final_units + mode.degrees[0], self.final_units + mode.degrees[-1]
+        margin = OPENING_MARGIN_UNITS
+        outside = sum(not low - margin <= height <= high + margin for height in heights)
+        reach = f"from {self.name(min(heights))} to {self.name(max(heights))}"
+        compass = f"{self.name(low)} to {self.name(high)}"
+        beyond = f", {outside} of {len(heights)} notes outside" if outside else ""
+        agrees = outside <= (1 - INSIDE_SHARE) * len(heights)
+        return Trait(agrees, f"it lies {reach}; the compass of {mode.name} is {compass}{beyond}")
 
-def _cadence(model: ScoringModel, heard: Sequence[Heard], view: InView, end: PhraseEnd) -> Trait:
-    names = model.pack.names
-    karar = names.name_at(view.final_units)
-    word = names.word("final")
-    last = names.name_at(end.height)
-    if end.height == view.final_units:
-        return Trait(True, f"it comes to rest on {last}, the {word} of {view.mode.name}")
-    ends_there = "ends" if heard[-1].closes else "stops, with no phrase end written,"
-    agrees = False if heard[-1].closes else None
-    return Trait(agrees, f"it {ends_there} on {last}; the {word} of {view.mode.name} is {karar}")
+    def cadence(self, end: PhraseEnd) -> Trait:
+        word, last = self.model.pack.names.word("final"), self.name(end.height)
+        if end.height == self.final_units:
+            return Trait(True, f"it comes to rest on {last}, the {word} of {self.mode.name}")
+        closes = self.heard[-1].closes
+        ends_there = "ends" if closes else "stops, with no phrase end written,"
+        karar = self.name(self.final_units)
+        says = f"it {ends_there} on {last}; the {word} of {self.mode.name} is {karar}"
+        return Trait(False if closes else None, says)
 
-
-def _phrase_end(model: ScoringModel, heard: Sequence[Heard], view: InView, number: int) -> PhraseEnd:
-    note, system = heard[number - 1], model.pack.system
-    degree = find_degree(view.mode, view.final_units, note.pitch_cents, note.kind, system)
-    function = function_of(view.mode, degree, system.divisions)
-    height = round(system.cents_to_units(note.pitch_cents))
-    if degree is not None:
-        height = view.final_units + degree
-    return PhraseEnd(number, height, model.pack.names.word(function.value))
+    def phrase_end(self, number: int, note: Heard) -> PhraseEnd:
+        system = self.model.pack.system
+        degree = find_degree(self.mode, self.final_units, note.pitch_cents, note.kind, system)
+        function = function_of(self.mode, degree, system.divisions)
+        height = round(system.cents_to_units(note.pitch_cents))
+        if degree is not None:
+            height = self.final_units + degree
+        return PhraseEnd(number, height, self.model.pack.names.word(function.value))

@@ -125,17 +125,15 @@ def stretch_judges(
     found = (found[0]._replace(since=1), *found[1:])
     while True:
         ends = [*(judge.since - 1 for judge in found[1:]), len(heard)]
-        named = [_renamed(model, states, heard, judge, last) for judge, last in zip(found, ends, strict=True)]
+        named = [_renamed(model, heard, judge, last) for judge, last in zip(found, ends, strict=True)]
         merged = tuple(one for at, one in enumerate(named) if not at or one[1:] != named[at - 1][1:])
         if merged == found:
             return found
         found = merged
 
 
-def _renamed(
-    model: ScoringModel, states: Sequence[ScorerState], heard: Sequence[Heard], judge: Judge, last: int
-) -> Judge:
-    instead = heard_instead(model, states, span(model, states, judge.since, last), judge.mode)
+def _renamed(model: ScoringModel, heard: Sequence[Heard], judge: Judge, last: int) -> Judge:
+    instead = heard_instead(model, span(model, heard, judge.since, last), judge.mode)
     if instead is None:
         return judge
     return Judge(judge.since, model.mode_of(instead), standing_final(model, instead, heard))

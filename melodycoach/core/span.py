@@ -1,7 +1,8 @@
 """What a part of a line says by itself: a phrase, a bar, a stretch in one mode.
 
-The notes of a span are heard where they stand, so nothing is scored again: a span says what the
-line's evidence gained between its two ends, and it is as sure of that as a line of its length.
+A span is heard afresh, by the same scorer, as if it were the whole line: in a long line each further
+note adds less, since what was heard is expected again, and the last bar would say nothing. How its
+notes rest and how long they count is taken from the line that they stand in.
 """
 
 from __future__ import annotations
@@ -10,16 +11,16 @@ from dataclasses import dataclass, replace
 from itertools import groupby
 from typing import TYPE_CHECKING
 
-from melodycoach.core.arrays import sealed
 from melodycoach.core.note import Mark, Note, Silence
-from melodycoach.core.scorer import leading, mode_posterior
+from melodycoach.core.scorer import advance, leading, mode_posterior, start
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Iterator, Sequence
 
+    from melodycoach.core.arrays import FloatArray
     from melodycoach.core.mode import Mode
     from melodycoach.core.model import ScoringModel
-    from melodycoach.core.note import Item
+    from melodycoach.core.note import Heard, Item
     from melodycoach.core.scorer import Leaning, ScorerState
     from melodycoach.core.sheet import Place
 
@@ -28,17 +29,31 @@ PHRASE_REST_BEATS = 1.0
 
 
 OUTWEIGHED = 4.0
-"""Notes are clearly heard in another mode than the one they should be in when that is decided, and so many
-times as likely."""
+"""Notes are clearly heard in another mode than the one they should be in when that is decided, and so
+many times as likely."""
+
+LEAST_NOTES = 5
+"""Fewer notes are no ground to say that they are heard in another mode."""
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, eq=False, slots=True)
 class Span:
-    """Some notes in a row and where they lean; ``first`` and ``last`` are note numbers from 1."""
+    """Some notes in a row and where they lean by themselves.
+
+    Parameters
+    ----------
+    first, last
+        Note numbers from 1; the last one belongs to it.
+    leaning
+        As the scorer has it.
+    by_mode : float64, shape (n_modes,)
+        The probability of each mode; sums to 1.
+    """
 
     first: int
     last: int
     leaning: Leaning
+    by_mode: FloatArray
 
     @property
     def n_notes(self) -> int:
@@ -46,49 +61,56 @@ class Span:
         return self.last - self.first + 1
 
 
-def span_state(states: Sequence[ScorerState], first: int, last: int) -> ScorerState:
-    """Give what the notes from ``first`` to ``last`` add up to, as a state of the scorer.
-
-    What a phrase end says of the final counts only where the line ends with it: the phrases before
-    may rest on any degree.
-    """
-    before, after = states[first - 1], states[last]
-    return replace(
-        after,
-        loglik=sealed(after.loglik - before.loglik),
-        weight=after.weight - before.weight,
-        n_notes=last - first + 1,
-        latest=after.latest if last == len(states) - 1 else (),
-    )
-
-
-def span(model: ScoringModel, states: Sequence[ScorerState], first: int, last: int) -> Span:
+def span(model: ScoringModel, heard: Sequence[Heard], first: int, last: int) -> Span:
     """Say where the notes from ``first`` to ``last`` lean by themselves.
 
     Parameters
     ----------
     model
         The scoring model.
-    states
-        ``states[k]`` is the scorer's state after k notes of the line.
+    heard
+        The notes of the whole line.
     first, last
         Note numbers from 1; the last one belongs to the span.
     """
-    return Span(first, last, leading(model, span_state(states, first, last)))
+    *_, state = _states_from(model, heard, first, last)
+    return Span(first, last, leading(model, state), mode_posterior(model, state))
 
 
-def mode_probability(model: ScoringModel, states: Sequence[ScorerState], mode: Mode, part: Span) -> float:
+def growing_spans(model: ScoringModel, heard: Sequence[Heard], first: int, last: int) -> tuple[Span, ...]:
+    """Give the spans that begin with note ``first`` and grow, a note at a time, to ``last``."""
+    return tuple(
+        Span(first, number, leading(model, state), mode_posterior(model, state))
+        for number, state in enumerate(_states_from(model, heard, first, last), first)
+    )
+
+
+def _states_from(model: ScoringModel, heard: Sequence[Heard], first: int, last: int) -> Iterator[ScorerState]:
+    state = start(model)
+    for number in range(first, last + 1):
+        state = advance(model, state, heard[number - 1])
+        yield state if number == len(heard) else before_closing(state)
+
+
+def before_closing(state: ScorerState) -> ScorerState:
+    """Give a state without what the end of a phrase says of the final.
+
+    That counts only where a line ends: the phrases before may rest on any degree.
+    """
+    return replace(state, latest=())
+
+
+def mode_probability(model: ScoringModel, part: Span, mode: Mode) -> float:
     """Give the probability of a mode by what the notes of a span say; 0 for one that does not compete."""
-    by_mode = mode_posterior(model, span_state(states, part.first, part.last))
-    return sum(float(p) for p, one in zip(by_mode, model.modes, strict=True) if one.id == mode.id)
+    return sum(float(p) for p, one in zip(part.by_mode, model.modes, strict=True) if one.id == mode.id)
 
 
-def heard_instead(model: ScoringModel, states: Sequence[ScorerState], part: Span, mode: Mode) -> int | None:
+def heard_instead(model: ScoringModel, part: Span, mode: Mode) -> int | None:
     """Give the hypothesis that some notes are clearly heard in, if that is another mode than this one."""
     best = part.leaning.best
-    if not part.leaning.decided or model.mode_of(best).id == mode.id:
+    if part.n_notes < LEAST_NOTES or not part.leaning.decided or model.mode_of(best).id == mode.id:
         return None
-    outweighed = OUTWEIGHED * mode_probability(model, states, mode, part)
+    outweighed = OUTWEIGHED * mode_probability(model, part, mode)
     return best if part.leaning.p_best > outweighed else None
 
 

@@ -18,9 +18,10 @@ from melodycoach.core.note import Note
 from melodycoach.core.octave import standing_final
 from melodycoach.core.offmode import off_mode_words
 from melodycoach.core.scorer import mode_posterior, posterior
-from melodycoach.core.span import span_state
+from melodycoach.core.span import before_closing
 from melodycoach.core.verdict import competing_words, reading_words, verdict
 from melodycoach.report.check_values import (
+    course_data,
     mode_data,
     off_data,
     pitch_data,
@@ -33,8 +34,8 @@ from melodycoach.report.check_values import (
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
+    from melodycoach.core.arrays import FloatArray
     from melodycoach.core.check import Checked, Leaving, Stretch
-    from melodycoach.core.course import Trait
     from melodycoach.core.mode import Mode
     from melodycoach.core.pitch import PitchNames
     from melodycoach.errors import MelodycoachError
@@ -53,8 +54,9 @@ def check_json(files: Sequence[dict[str, Any]], program: str) -> dict[str, Any]:
 
 
 def failed_json(file: str, error: MelodycoachError) -> dict[str, Any]:
-    """Say why a file has no answer."""
-    return {"file": file, "error": str(error), "faults": list(error.faults)}
+    """Say why a file has no answer; where there is a single fault, the error says it."""
+    faults = list(error.faults)
+    return {"file": file, "error": str(error), "faults": [] if faults == [str(error)] else faults}
 
 
 def answer_json(checked: Checked, file: str, stay_in: Mode | None = None) -> dict[str, Any]:
@@ -96,7 +98,7 @@ def answer_json(checked: Checked, file: str, stay_in: Mode | None = None) -> dic
         "bars": [{"bar": bar, **span_data(checked, one)} for bar, one in checked.bars],
         "stretches": [_stretch(checked, one) for one in checked.stretches],
         "changes": _changes(checked),
-        "course": _course(checked),
+        "course": course_data(checked, checked.view.mode, checked.course),
         "rival": _rival(checked),
         "keyboard_note": checked.keyboard_note,
         "stay_in": _stay_in(checked, stay_in) if stay_in is not None else None,
@@ -182,7 +184,7 @@ def _likelihoods(checked: Checked) -> dict[str, Any]:
     index_by_id = {mode.id: index for index, mode in enumerate(model.modes)}
     drawn = [index_by_id[mode_id] for mode_id in dict.fromkeys(wanted) if mode_id in index_by_id]
     drawn = drawn[:CURVES_DRAWN]
-    after = (mode_posterior(model, span_state(states, 1, number)) for number in range(1, len(states)))
+    after = (_so_far(checked, number) for number in range(1, len(states)))
     return {
         "modes": [mode_data(model.modes[index]) for index in drawn],
         "after": [[rounded(by_mode[index]) for index in drawn] for by_mode in after],
@@ -224,8 +226,14 @@ def _notes(checked: Checked) -> list[dict[str, Any]]:
     return rows
 
 
+def _so_far(checked: Checked, number: int) -> FloatArray:
+    """Give the probability of each mode after a note; what closes counts only at the end of the line."""
+    state = checked.line.states[number]
+    return mode_posterior(checked.model, state if number == checked.n_notes else before_closing(state))
+
+
 def _likely(checked: Checked, number: int) -> list[dict[str, Any]]:
-    by_mode = mode_posterior(checked.model, span_state(checked.line.states, 1, number))
+    by_mode = _so_far(checked, number)
     ranked = sorted(range(len(by_mode)), key=lambda index: -by_mode[index])[:LIKELY_LISTED]
     return [{"name": checked.model.modes[i].name, "probability": rounded(by_mode[i])} for i in ranked]
 
@@ -243,51 +251,28 @@ def _stretch(checked: Checked, one: Stretch) -> dict[str, Any]:
         "verdict": verdict(checked.model, lean, one.span.n_notes),
         "noticed_at": one.noticed_at,
         "steps": steps_data(checked, one.steps),
+        "course": course_data(checked, one.mode, one.course),
     }
 
 
 def _changes(checked: Checked) -> list[dict[str, Any]]:
-    return [
-        {
-            "note": after.span.first,
-            "place": place_data(checked, after.span.first),
-            "from": before.mode.name,
-            "to": after.mode.name,
-            "probability": rounded(after.probability),
-            "noticed_at": after.noticed_at,
-            "says": f"from {before.mode.name} to {after.mode.name}; "
-            f"the notes from here on: {verdict(checked.model, after.span.leaning, after.span.n_notes)}",
-        }
-        for before, after in pairwise(checked.stretches)
-    ]
+    return [_change(checked, before, after) for before, after in pairwise(checked.stretches)]
 
 
-# --- the course --------------------------------------------------------------------------------
-
-
-def _course(checked: Checked) -> dict[str, Any] | None:
-    course = checked.course
-    if course is None:
-        return None
+def _change(checked: Checked, before: Stretch, after: Stretch) -> dict[str, Any]:
+    lean = after.span.leaning
+    told = verdict(checked.model, lean, after.span.n_notes)
     return {
-        **mode_data(checked.view.mode),
-        "opening": _trait(course.opening),
-        "register": _trait(course.register),
-        "cadence": _trait(course.cadence),
-        "phrase_ends": [
-            {
-                "note": end.number,
-                "place": place_data(checked, end.number),
-                "pitch": pitch_data(checked, end.height),
-                "function": end.function,
-            }
-            for end in course.phrase_ends
-        ],
+        "note": after.span.first,
+        "place": place_data(checked, after.span.first),
+        "from": before.mode.name,
+        "to": after.mode.name,
+        "probability": rounded(after.probability),
+        "decided": lean.decided,
+        "family": lean.family,
+        "noticed_at": after.noticed_at,
+        "says": f"from {before.mode.name} to {after.mode.name}; the notes from here on: {told}",
     }
-
-
-def _trait(trait: Trait) -> dict[str, Any]:
-    return {"agrees": trait.agrees, "says": trait.says}
 
 
 # --- the question ------------------------------------------------------------------------------

@@ -12,6 +12,7 @@ from melodycoach.core.verdict import verdict
 
 if TYPE_CHECKING:
     from melodycoach.core.check import Checked, Steps
+    from melodycoach.core.course import Course, Trait
     from melodycoach.core.mode import Mode
     from melodycoach.core.offmode import OffMode
     from melodycoach.core.span import Span
@@ -72,7 +73,7 @@ def span_data(checked: Checked, one: Span) -> dict[str, Any]:
         **mode_data(best),
         "probability": rounded(lean.p_best),
         "stretch_mode": stretch.mode.name,
-        "fits": not off and heard_instead(model, checked.line.states, one, judge) is None,
+        "fits": not off and heard_instead(model, one, judge) is None,
         "off_notes": off,
     }
 
@@ -107,3 +108,28 @@ def _step(checked: Checked, steps: Steps, index: int, gain_nats: float) -> dict[
         "place": None if number is None else place_data(checked, number),
         "gain_nats": round(gain_nats, 3),
     }
+
+
+def course_data(checked: Checked, mode: Mode, course: Course | None) -> dict[str, Any] | None:
+    """Say how a course agrees with that of a mode; None where there are no notes."""
+    if course is None:
+        return None
+    return {
+        **mode_data(mode),
+        "opening": _trait(course.opening),
+        "register": _trait(course.register),
+        "cadence": _trait(course.cadence),
+        "phrase_ends": [
+            {
+                "note": end.number,
+                "place": place_data(checked, end.number),
+                "pitch": pitch_data(checked, end.height),
+                "function": end.function,
+            }
+            for end in course.phrase_ends
+        ],
+    }
+
+
+def _trait(trait: Trait) -> dict[str, Any]:
+    return {"agrees": trait.agrees, "says": trait.says}
