@@ -18,16 +18,16 @@ from pathlib import Path
 from queue import Empty, SimpleQueue
 from typing import TYPE_CHECKING, Any
 
-from platformdirs import user_config_path, user_data_path
-
 from melodycoach import DEFAULT_PACK, __version__
 from melodycoach.clock import Clock
 from melodycoach.coach import TURN_S, Coach
 from melodycoach.core.event import PitchReading
 from melodycoach.core.session import begin
 from melodycoach.errors import EventLogError, MelodycoachError, PortError
+from melodycoach.folders import driver_log_path, session_log_dir, user_pack_dir
 from melodycoach.line_text import open_line, read_final
 from melodycoach.players import DemoKeyboard, Keyboard, Player, Replay
+from melodycoach.reading import mode_named
 from melodycoach.screen.plain import plain_line
 from melodycoach.sources.event_json import LogHeader
 from melodycoach.sources.event_log import EventLog, log_path, read_event_log
@@ -64,21 +64,6 @@ class Settings:
     replay: Path | None = None
     demo: bool = False
     fast: bool = False
-
-
-def user_pack_dir() -> Path:
-    """Where the player's own mode packs are looked for."""
-    return Path(user_config_path("melodycoach")) / "packs"
-
-
-def session_log_dir() -> Path:
-    """Where event logs are kept."""
-    return Path(user_data_path("melodycoach")) / "sessions"
-
-
-def driver_log_path() -> Path:
-    """Where the messages of MIDI drivers go while the full screen is up."""
-    return Path(user_data_path("melodycoach")) / "drivers.log"
 
 
 def listen(settings: Settings, full_screen: bool, say: Callable[[str], None]) -> int:
@@ -124,8 +109,7 @@ def _prepare(settings: Settings, clock: Clock) -> tuple[SessionState, Player, Ev
         reading, final_cents = read_final(settings.final, pack.names)
     if settings.open_file is not None:
         page, _ = open_line(settings.open_file, pack.names)
-        if page.headers.mode:
-            pack.find(page.headers.mode)
+        mode_named(pack, page.kind, page.headers.mode)
     only = tuple(mode.id for mode in pack.restrict(settings.only)) if settings.only else ()
     session = begin(pack, only, reading, final_cents, settings.target)
     if settings.port is not None:
@@ -288,8 +272,8 @@ class _Printer:
         self._previous = view
 
     def world(self, view: ViewState) -> None:
-        """Say what is new about input, tuning, log and warnings."""
-        status = (view.status.input_line, view.status.log_line, view.status.warning)
+        """Say what is new about input, log, warnings and what was done."""
+        status = (view.status.input_line, view.status.log_line, view.status.warning, view.status.notice)
         for new in status:
             if new and new not in self._status:
                 self._say(f"({new})")

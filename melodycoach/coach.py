@@ -31,8 +31,19 @@ from melodycoach.core.event import (
 from melodycoach.core.mode import names_in
 from melodycoach.core.note import Item, Mark, shared_start
 from melodycoach.core.session import SessionState, apply
+from melodycoach.core.sheet import SheetKind
 from melodycoach.errors import MelodycoachError, StorageError
-from melodycoach.line_text import Page, entry_items, notes_with_marks, open_line, read_final, save_line
+from melodycoach.line_text import (
+    Page,
+    entry_items,
+    notes_with_marks,
+    open_line,
+    played_until,
+    read_final,
+    save_line,
+    text_path,
+)
+from melodycoach.reading import mode_named
 from melodycoach.screen.command import (
     Command,
     Fresh,
@@ -266,26 +277,33 @@ class Coach:
         self._notice = f"saved as {path}"
 
     def open_text(self, path: Path) -> None:
-        """Put the line of a note-text file in place of this one.
+        """Put the line of a file, whatever kind of file it is, in place of this one.
 
         Raises
         ------
         StorageError
             The file cannot be read.
-        NoteTextError
-            It holds something that is no note text.
+        NoteTextError, MusicFileError
+            It does not hold what it should.
         UnknownModeError
-            Its header names a mode that the pack does not have.
+            Note text names a mode that the pack does not have.
         """
         page, items = open_line(path, self.names)
-        target = self.session.pack.find(page.headers.mode) if page.headers.mode else None
+        target, passed_over = mode_named(self.session.pack, page.kind, page.headers.mode)
         now_s = self._clock()
         if target is not None:
             self.take(TargetChosen(now_s, target.id))
         if page.headers.final_cents is not None:
             self.take(ReadingChosen(now_s, PitchReading.FINAL, page.headers.final_cents))
+        if page.kind is SheetKind.NOTE_TEXT:
+            self._own_files.add(path)
+        else:
+            items = played_until(items, now_s)
+            self._notice = "; ".join((*page.says, f"save the line as {text_path(path).name}"))
+            self._warning = "; ".join((*page.lost, passed_over) if passed_over else page.lost)
+        if passed_over:
+            page = replace(page, headers=replace(page.headers, mode=""))
         self._page = page
-        self._own_files.add(path)
         self.take(LineEdited(now_s, 0, len(self.session.line.items), items))
 
     # --- the view ---------------------------------------------------------------------------

@@ -13,8 +13,10 @@ from typing import TYPE_CHECKING
 
 from melodycoach.core.event import PitchReading
 from melodycoach.core.note import Item, Mark, Note
-from melodycoach.errors import NoteTextError, StorageError, UnknownNameError, system_reason
-from melodycoach.sources.near_files import near_files
+from melodycoach.core.sheet import SheetKind
+from melodycoach.errors import NoteTextError, StorageError, UnknownNameError
+from melodycoach.reading import read_file
+from melodycoach.sources.note_scan import FASTEST_TEMPO, SLOWEST_TEMPO
 from melodycoach.sources.note_text import (
     DEFAULT_TEMPO,
     Comment,
@@ -24,6 +26,8 @@ from melodycoach.sources.note_text import (
     read_tokens,
     write_note_text,
 )
+from melodycoach.sources.sheet_file import FIRST_BYTES, kind_of, read_sheet, read_utf_8
+from melodycoach.storing import write_whole
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -31,6 +35,7 @@ if TYPE_CHECKING:
 
     from melodycoach.core.pitch import PitchNames
     from melodycoach.core.session import Line
+    from melodycoach.core.sheet import Sheet
 
 SLOWEST_BPM, FASTEST_BPM = 30.0, 300.0
 """Bounds of the tempo that a played line is saved with."""
@@ -41,11 +46,15 @@ class Page:
     """What a file holds beside the items of its line.
 
     ``remarks`` are its comments, each with the note that it stands before, or None at the end: so
-    a comment keeps to its note while the line around it is edited.
+    a comment keeps to its note while the line around it is edited. ``kind`` is what kind of file it
+    was; ``says`` and ``lost`` are what its reader says of it.
     """
 
     headers: Headers = field(default_factory=Headers)
     remarks: tuple[tuple[Comment, Note | None], ...] = ()
+    kind: SheetKind = SheetKind.NOTE_TEXT
+    says: tuple[str, ...] = ()
+    lost: tuple[str, ...] = ()
 
     @property
     def tempo(self) -> float:
@@ -54,25 +63,41 @@ class Page:
 
 
 def open_line(path: Path, names: PitchNames) -> tuple[Page, tuple[Item, ...]]:
-    """Read the line of a note-text file, and what else it holds.
+    """Read the line of a file of any kind, and what else it holds.
 
     Raises
     ------
     StorageError
         The file cannot be read.
-    NoteTextError
-        It holds something that is no note text.
+    NoteTextError, MusicFileError
+        It does not hold what it should.
     """
-    try:
-        text = path.read_text(encoding="utf-8-sig")
-    except OSError as error:
-        advice = near_files(path) or "name a file of note text"
-        raise StorageError(f"{path}: {system_reason(error)}; {advice}") from error
-    except UnicodeDecodeError as error:
-        raise StorageError(f"{path}: byte {error.start} is not UTF-8 text; save the file as UTF-8") from error
-    read = read_note_text(text, names, path.name)
+    data = read_file(path)
+    if kind_of(data) is not SheetKind.NOTE_TEXT:
+        sheet = read_sheet(data, path.name, names)
+        return _page_of(sheet), sheet.items
+    read = read_note_text(read_utf_8(data, str(path)), names, path.name)
     remarks = tuple((comment, _note_from(read.items, comment.before)) for comment in read.comments)
     return Page(read.headers, remarks), read.items
+
+
+def _page_of(sheet: Sheet) -> Page:
+    """Keep of what a file says of itself what note text can say."""
+    tempo = sheet.tempo if sheet.tempo and SLOWEST_TEMPO <= sheet.tempo <= FASTEST_TEMPO else None
+    title = "".join(letter for letter in sheet.title if letter.isprintable())
+    headers = Headers(title, sheet.mode, sheet.final_cents, tempo)
+    return Page(headers, kind=sheet.kind, says=sheet.says, lost=sheet.lost)
+
+
+def played_until(items: Sequence[Item], now_s: float) -> tuple[Item, ...]:
+    """Move a line in time so that it ends now at the latest, and what is played next comes after it."""
+    notes = [item for item in items if isinstance(item, Note)]
+    late_s = max((note.onset_s + note.duration_s for note in notes), default=now_s) - now_s
+    if late_s <= 0:
+        return tuple(items)
+    return tuple(
+        replace(item, onset_s=item.onset_s - late_s) if isinstance(item, Note) else item for item in items
+    )
 
 
 def save_line(path: Path, page: Page, line: Line, names: PitchNames) -> None:
@@ -81,23 +106,39 @@ def save_line(path: Path, page: Page, line: Line, names: PitchNames) -> None:
     Raises
     ------
     StorageError
-        The file cannot be written.
+        The file cannot be written, or there is a MIDI file or a score of that name.
     """
+    _refuse_other_kinds(path)
     place_by_note = {id(item): place for place, item in enumerate(line.items)}
     end = len(line.items)
     comments = [replace(comment, before=place_by_note.get(id(note), end)) for comment, note in page.remarks]
     comments.sort(key=lambda comment: comment.before)
     tempo = page.headers.tempo or pace_bpm(line)
     text = write_note_text(page.headers, line.items, names, tempo, comments=comments)
-    unfinished = path.with_name(f"{path.name}.unfinished")
+    write_whole(path, [text], "the line is still here, save it elsewhere")
+
+
+def text_path(path: Path) -> Path:
+    """Give the path under which the line of a file is saved: note text has a name of its own.
+
+    >>> from pathlib import Path
+    >>> text_path(Path("draft.mid")).name, text_path(Path("draft.txt")).name
+    ('draft.txt', 'draft.txt')
+    """
+    return path.with_suffix(".txt")
+
+
+def _refuse_other_kinds(path: Path) -> None:
     try:
-        path.parent.mkdir(parents=True, exist_ok=True)
-        unfinished.write_text(text, encoding="utf-8")
-        unfinished.replace(path)
-    except OSError as error:
+        with path.open("rb") as file:
+            kind = kind_of(file.read(FIRST_BYTES))
+    except OSError:
+        return  # it is not there yet, or writing it will say what is wrong
+    if kind is not SheetKind.NOTE_TEXT:
         raise StorageError(
-            f"{path}: {system_reason(error)}; the line is still here, save it elsewhere"
-        ) from error
+            f"{path}: there is a file of another kind there, {kind}, and a line is saved as note text; "
+            f"save it as {text_path(path)}"
+        )
 
 
 def _note_from(items: Sequence[Item], place: int) -> Note | None:

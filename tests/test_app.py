@@ -12,6 +12,7 @@ import threading
 import time
 from typing import TYPE_CHECKING, Any
 
+import mido
 import pytest
 
 from melodycoach import app
@@ -223,6 +224,18 @@ def test_a_file_to_begin_with_is_said_note_by_note(
     said = run_plain(Settings(only=THREE, open_file=path), "G4\n")
     assert notes_in(said)[-1].startswith("4 rast")
     assert any(line.startswith("1 to 3 rast") for line in said)
+
+
+def test_what_the_reader_says_of_a_midi_file_is_said_line_by_line_too(
+    tmp_path: Path, run_plain: Callable[..., list[str]]
+) -> None:
+    file, track = mido.MidiFile(), mido.MidiTrack()
+    file.tracks.append(track)
+    track += [mido.Message("note_on", note=67), mido.Message("note_off", note=67, time=480)]
+    file.save(tmp_path / "draft.mid")
+    said = run_plain(Settings(only=THREE, open_file=tmp_path / "draft.mid"), "G4\n")
+    assert sum("took track 1" in line for line in said) == 1
+    assert notes_in(said)[-1].startswith("2 rast")
 
 
 @pytest.mark.parametrize("full_screen", [False, True])

@@ -47,7 +47,7 @@ def run(*arguments: str, typed: str = "") -> subprocess.CompletedProcess[str]:
     )
 
 
-@pytest.mark.parametrize("command", ["listen", "demo", "modes", "ports", "evaluate"])
+@pytest.mark.parametrize("command", ["listen", "check", "demo", "modes", "ports", "evaluate"])
 def test_every_command_has_help_with_an_example(command: str, capsys: pytest.CaptureFixture[str]) -> None:
     with pytest.raises(SystemExit) as ended:
         main([command, "--help"])

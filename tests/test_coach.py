@@ -3,6 +3,7 @@
 from datetime import datetime
 from pathlib import Path
 
+import mido
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
@@ -11,8 +12,9 @@ from melodycoach.coach import REFUSALS_KEPT, Coach
 from melodycoach.core.event import Event, NoteOff, NoteOn, PitchReading
 from melodycoach.core.note import InputKind, Note
 from melodycoach.core.session import SessionState, begin
+from melodycoach.core.sheet import SheetKind
 from melodycoach.errors import UnknownNameError
-from melodycoach.line_text import entry_items, read_final
+from melodycoach.line_text import Page, entry_items, read_final
 from melodycoach.screen.command import (
     Fresh,
     Open,
@@ -29,7 +31,7 @@ from melodycoach.screen.command import (
 from melodycoach.screen.view import ViewState
 from melodycoach.sources.event_json import LogHeader
 from melodycoach.sources.event_log import EventLog
-from melodycoach.sources.note_text import item_token
+from melodycoach.sources.note_text import Headers, item_token
 from melodycoach.sources.pack_file import load_pack
 
 PACK = load_pack("makam")
@@ -239,6 +241,83 @@ def test_a_file_that_cannot_be_opened_is_refused(
     view = asked(coach, Open(str(path)))
     assert said in view.status.warning
     assert view.tokens == ("G4",)
+
+
+MIDI_KEYS = (69, 76, 74, 69)
+
+
+@pytest.fixture
+def midi(tmp_path: Path) -> Path:
+    """Let mido, which is not us, write a line of plain keys."""
+    file, track = mido.MidiFile(), mido.MidiTrack()
+    file.tracks.append(track)
+    for key in MIDI_KEYS:
+        track += [mido.Message("note_on", note=key), mido.Message("note_off", note=key, time=480)]
+    file.save(tmp_path / "draft.mid")
+    return tmp_path / "draft.mid"
+
+
+def test_a_midi_file_opens_in_the_entry_and_what_was_read_is_said(
+    coach: Coach, clock: StillClock, midi: Path
+) -> None:
+    clock.now_s = 1.0
+    view = asked(coach, Open(str(midi)))
+    pitches = [token.partition(":")[0] for token in view.tokens]
+    assert pitches[: len(MIDI_KEYS)] == ["A4~", "E5~", "D5~", "A4~"]
+    assert "took track 1" in view.status.notice
+    assert view.status.notice.endswith("; save the line as draft.txt")
+    assert view.status.warning == ""
+    last = coach.session.line.last_note
+    assert last is not None
+    assert last.onset_s + last.duration_s == pytest.approx(1.0)  # what is played next comes after it
+
+
+def test_the_line_of_a_midi_file_is_saved_as_note_text_and_never_over_it(
+    coach: Coach, midi: Path, tmp_path: Path
+) -> None:
+    before = midi.read_bytes()
+    asked(coach, Open(str(midi)))
+    for _ in range(3):  # however often it is asked for
+        view = asked(coach, Save(str(midi)))
+        assert view.status.warning
+    assert midi.read_bytes() == before
+    assert f"save it as {tmp_path / 'draft.txt'}" in view.status.warning
+    asked(coach, Save(str(tmp_path / "draft.txt")))
+    tokens = coach.view.tokens
+    assert asked(coach, Open(str(tmp_path / "draft.txt"))).tokens[0] == tokens[0]
+
+
+def score(tmp_path: Path) -> Path:
+    path = tmp_path / "draft.musicxml"
+    path.write_text(
+        '<score-partwise version="4.0"><part-list><score-part id="P1"><part-name>Ney</part-name>'
+        '</score-part></part-list><part id="P1"><measure number="1"><attributes><divisions>1</divisions>'
+        "</attributes><note><pitch><step>A</step><octave>4</octave></pitch><duration>1</duration></note>"
+        "</measure></part></score-partwise>",
+        encoding="utf-8",
+    )
+    return path
+
+
+def test_a_score_opens_in_the_entry_as_typed_notes(coach: Coach, tmp_path: Path) -> None:
+    view = asked(coach, Open(str(score(tmp_path))))
+    assert view.tokens[0] == "A4"
+    assert view.status.notice.endswith("; save the line as draft.txt")
+
+
+def test_a_mode_that_a_score_names_and_the_pack_does_not_have_is_passed_over(
+    coach: Coach, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    page = Page(Headers(mode="major"), kind=SheetKind.MUSIC_XML, says=("took part 1",), lost=("bar 3",))
+    items = (Note(6900.0, 0.0, 1.0, beats=1.0),)
+    monkeypatch.setattr("melodycoach.coach.open_line", lambda *_: (page, items))
+    view = asked(coach, Open(str(tmp_path / "draft.xml")))
+    assert view.status.notice == "took part 1; save the line as draft.txt"
+    assert view.status.warning == (
+        "bar 3; the file names the mode 'major', which pack 'makam' does not have: it is passed over"
+    )
+    asked(coach, Save(str(tmp_path / "draft.txt")))
+    assert "mode" not in (tmp_path / "draft.txt").read_text(encoding="utf-8")
 
 
 def test_a_port_is_chosen_by_the_player(coach: Coach, hands: Hands) -> None:

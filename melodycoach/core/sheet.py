@@ -103,3 +103,22 @@ def usual_beat(quarters: Sequence[float]) -> float:
         return 1.0
     beat = 2.0 ** floor(log2(median(lengths)) + 1e-9)
     return min(max(beat, SHORTEST_BEAT), LONGEST_BEAT)
+
+
+_BEAT_NAMES = {
+    2.0: "a half note",
+    1.0: "a quarter note",
+    0.5: "an eighth",
+    0.25: "a 16th",
+    0.125: "a 32nd",
+    0.0625: "a 64th",
+}
+
+
+def beat_words(beat: float) -> str:
+    """Say which note value counts as one beat.
+
+    >>> beat_words(0.5)
+    'one beat is an eighth, the usual note of the line'
+    """
+    return f"one beat is {_BEAT_NAMES[beat]}, the usual note of the line"

@@ -47,7 +47,7 @@ ADVICE = {
     QuestionKind.ONLY: "names with commas between; nothing: all modes",
     QuestionKind.PORT: "part of its name will do; Esc goes back",
     QuestionKind.SAVE: "a path; the line is written as note text; Esc goes back",
-    QuestionKind.OPEN: "a path of a note text file; Esc goes back",
+    QuestionKind.OPEN: "a path: note text, a MIDI file or MusicXML; Esc goes back",
 }
 
 

@@ -110,6 +110,7 @@ class Scan:
     with_headers: bool = True
     headers: Headers = Headers()
     items: list[Item] = field(default_factory=list)
+    places: list[tuple[int, int]] = field(default_factory=list)  # line and column of each item
     comments: list[Comment] = field(default_factory=list)
     faults: list[Fault] = field(default_factory=list)
     _values: dict[str, tuple[int, int, str]] = field(default_factory=dict)
@@ -155,6 +156,7 @@ class Scan:
             item = self._read_word(line, column, word)
             if item is not None:
                 self.items.append(item)
+                self.places.append((line, column))
 
     def _read_word(self, line: int, column: int, word: str) -> Item | None:
         item = read_token(word, self.names, self.headers.key)

@@ -53,11 +53,17 @@ _SHOWN_FAULTS = 3
 
 @dataclass(frozen=True, slots=True)
 class NoteText:
-    """A text that was read: headers, items with their times, and remarks by place."""
+    """A text that was read: headers, items with their times, and remarks by place.
+
+    ``places`` says where each item stands in the text: its line and its column, from 1, the column
+    in characters as an editor shows them. Two texts that say the same are equal, wherever their
+    items stand.
+    """
 
     headers: Headers = field(default_factory=Headers)
     items: tuple[Item, ...] = ()
     comments: tuple[Comment, ...] = ()
+    places: tuple[tuple[int, int], ...] = field(default=(), compare=False)
 
 
 def read_note_text(text: str, names: PitchNames, where: str = "line") -> NoteText:
@@ -87,7 +93,7 @@ def read_note_text(text: str, names: PitchNames, where: str = "line") -> NoteTex
     scan = Scan.of(text, names)
     _refuse(scan.faults, where)
     items = lay_out(scan.items, 0.0, scan.headers.tempo or DEFAULT_TEMPO)
-    return NoteText(scan.headers, items, tuple(scan.comments))
+    return NoteText(scan.headers, items, tuple(scan.comments), tuple(scan.places))
 
 
 def read_tokens(

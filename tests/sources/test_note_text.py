@@ -364,3 +364,10 @@ def test_every_token_of_the_page_is_the_pitch_it_says(token: str, commas: str, m
     assert note.pitch_cents == COMMAS_53.units_to_cents(float(commas))
     perde = NAMES.find(meaning.split(",")[0])
     assert perde is None or abs(perde.units - float(commas)) < 2
+
+
+def test_every_item_has_its_line_and_column_in_the_text() -> None:
+    text = "title: Sketch\n\n  A4  B4-1 , # a remark\n|\tsegâh:2 .\n"
+    read = read_note_text(text, NAMES)
+    assert read.places == ((3, 3), (3, 7), (3, 12), (4, 1), (4, 3), (4, 11))
+    assert len(read.places) == len(read.items)

@@ -1,0 +1,65 @@
+"""A folder of answers: names that cannot clash or stray, an index, and everything as data."""
+
+from __future__ import annotations
+
+import json
+from typing import TYPE_CHECKING
+
+import pytest
+
+from melodycoach import __version__
+from melodycoach.check_pages import DATA, INDEX, LONGEST_NAME, page_names, write_pages
+from melodycoach.checking import Question, answers
+from melodycoach.report.check_data import check_json
+from melodycoach.sources.pack_file import load_pack
+
+if TYPE_CHECKING:
+    from pathlib import Path
+
+PACK = load_pack("makam")
+QUESTION = Question(PACK, PACK.restrict(("huseyni", "rast")))
+
+
+@pytest.mark.parametrize(
+    ("files", "names"),
+    [
+        (["a.txt", "b/a.txt", "A.mid"], ["a.html", "a-2.html", "A-3.html"]),
+        (["index.txt"], ["index-2.html"]),
+        (["../../etc/passwd", "/", "..", "-"], ["passwd.html", "line.html", "line-2.html", "line-3.html"]),
+        (["a b<c>.txt", "düğüm.mid"], ["a-b-c.html", "düğüm.html"]),
+        ([".hidden", "a-2.txt", "a.txt", "a.mid"], ["hidden.html", "a-2.html", "a.html", "a-3.html"]),
+        (["x" * 300 + ".txt"], ["x" * LONGEST_NAME + ".html"]),
+        (["a\udcff\x1b.txt"], ["a.html"]),
+    ],
+)
+def test_every_file_has_a_page_of_its_own_inside_the_folder(files: list[str], names: list[str]) -> None:
+    assert list(page_names(files)) == names
+
+
+def test_a_folder_has_a_page_a_file_and_an_index_and_the_data(tmp_path: Path) -> None:
+    for name in ("a.txt", "b.txt"):
+        (tmp_path / name).write_text(f"title: About {name}\nA4 E5 D5 C5 B4-1 A4:2 .", encoding="utf-8")
+    (tmp_path / "bad.txt").write_text("A4 H9", encoding="utf-8")
+    files = [str(tmp_path / name) for name in ("a.txt", "bad.txt", "b.txt")]
+    found = list(answers(QUESTION, files))
+    folder = tmp_path / "out"
+    write_pages(folder, page_names(files), found)
+    assert sorted(path.name for path in folder.iterdir()) == ["a.html", DATA, "b.html", INDEX]
+    assert "About a.txt" in (folder / "a.html").read_text(encoding="utf-8")
+    assert INDEX in (folder / "a.html").read_text(encoding="utf-8")  # a way back
+    index = (folder / INDEX).read_text(encoding="utf-8")
+    assert 'href="a.html"' in index
+    assert "H9" in index
+    data = json.loads((folder / DATA).read_text(encoding="utf-8"))
+    assert data == check_json(found, __version__)
+
+
+def test_a_second_run_replaces_the_first_and_leaves_other_files_alone(tmp_path: Path) -> None:
+    (tmp_path / "a.txt").write_text("A4 E5 D5 .", encoding="utf-8")
+    folder = tmp_path / "out"
+    folder.mkdir()
+    (folder / "mine.html").write_text("mine", encoding="utf-8")
+    for _ in range(2):
+        write_pages(folder, ["a.html"], answers(QUESTION, [str(tmp_path / "a.txt")]))
+    assert (folder / "mine.html").read_text(encoding="utf-8") == "mine"
+    assert len(json.loads((folder / DATA).read_text(encoding="utf-8"))["files"]) == 1
