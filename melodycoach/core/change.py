@@ -35,7 +35,7 @@ T. L. Lai, "Sequential changepoint detection in quality control and dynamical sy
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -142,13 +142,17 @@ def advance_change(
     opens_phrase
         The note before it ended a phrase.
     """
-    if opens_phrase:
-        state = replace(state, phrase_from=n_notes)
-    past = (*state.past, state.total)[-parameters.change_window :]
-    state = replace(state, total=sealed(state.total + nats), past=past)
+    known: dict[str, Any] = {
+        "total": sealed(state.total + nats),
+        "past": (*state.past, state.total)[-parameters.change_window :],
+        "phrase_from": n_notes if opens_phrase else state.phrase_from,
+    }
     if state.reference == NONE:
-        return _first(state, nats, field.n_modes, parameters)
-    return _next(state, nats, field, n_notes, parameters)
+        return _first(state, nats, field.n_modes, parameters, known)
+    gain = np.maximum(state.gain + (nats - nats[state.reference]), 0.0)
+    risen_from = np.where(state.gain > 0, state.risen_from, n_notes)
+    state = replace(state, **known, gain=sealed(gain), risen_from=sealed(risen_from))
+    return _departed(state, field, n_notes, parameters) or _followed(state, field.log_prior, parameters)
 
 
 def departure_nats(gain: FloatArray, log_prior: FloatArray) -> float:
@@ -165,7 +169,14 @@ def departure_nats(gain: FloatArray, log_prior: FloatArray) -> float:
     return float(top + np.log(np.exp(nats - top).sum()))
 
 
-def _first(state: ChangeState, nats: FloatArray, n_modes: int, parameters: ScoringParameters) -> ChangeState:
+def _first(
+    state: ChangeState,
+    nats: FloatArray,
+    n_modes: int,
+    parameters: ScoringParameters,
+    known: dict[str, Any],
+) -> ChangeState:
+    """Follow the belief until a mode is announced; ``known`` is what every note changes."""
     belief = np.exp(state.log_belief)
     if len(belief) > 1:
         rate = parameters.change_rate
@@ -182,6 +193,7 @@ def _first(state: ChangeState, nats: FloatArray, n_modes: int, parameters: Scori
         first = int(log_belief.reshape(-1, n_modes)[:, holder].argmax()) * n_modes + holder
     return replace(
         state,
+        **known,
         log_belief=sealed(log_belief),
         holder=holder,
         held_notes=held,
@@ -190,12 +202,11 @@ def _first(state: ChangeState, nats: FloatArray, n_modes: int, parameters: Scori
     )
 
 
-def _next(
-    state: ChangeState, nats: FloatArray, field: Field, n_notes: int, parameters: ScoringParameters
-) -> ChangeState:
-    gain = np.maximum(state.gain + (nats - nats[state.reference]), 0.0)
-    risen_from = np.where(state.gain > 0, state.risen_from, n_notes)
-    state = replace(state, gain=sealed(gain), risen_from=sealed(risen_from))
+def _departed(
+    state: ChangeState, field: Field, n_notes: int, parameters: ScoringParameters
+) -> ChangeState | None:
+    """Give the state after the line has left the reference, or None while it has not."""
+    gain, risen_from = state.gain, state.risen_from
     grown = np.where(risen_from <= n_notes + 1 - parameters.change_notes, gain, -np.inf)
     grown[state.reference] = -np.inf
     best = int((grown + field.log_prior).argmax())
@@ -218,7 +229,7 @@ def _next(
                 changed_at=n_notes if moved else state.changed_at,
                 seam_at=max(n_notes + 1 - back, state.phrase_from) if moved else state.seam_at,
             )
-    return _followed(state, field.log_prior, parameters)
+    return None
 
 
 def _followed(state: ChangeState, log_prior: FloatArray, parameters: ScoringParameters) -> ChangeState:

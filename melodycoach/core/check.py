@@ -235,19 +235,16 @@ def _stretches(
     """Cut the line where its mode changes."""
     if not line.heard:
         return ()
-    judged_by = stretch_judges(model, line.states, line.heard, whole)
-    firsts = [*(judge.since for judge in judged_by), len(line.heard) + 1]
     return tuple(
-        _stretch(model, line, judge, after - 1, bounds)
-        for judge, after in zip(judged_by, firsts[1:], strict=True)
+        _stretch(model, line, judge, part, bounds)
+        for judge, part in stretch_judges(model, line.states, line.heard, whole)
     )
 
 
 def _stretch(
-    model: ScoringModel, line: Line, judge: Judge, last: int, bounds: Sequence[tuple[int, int]]
+    model: ScoringModel, line: Line, judge: Judge, part: Span, bounds: Sequence[tuple[int, int]]
 ) -> Stretch:
-    first, mode, final_units = judge
-    part = span(model, line.heard, first, last)
+    mode, final_units, first, last = judge.mode, judge.final_units, part.first, part.last
     rival = part.leaning.rival if model.mode_of(part.leaning.best) is mode else part.leaning.best
     view = InView(mode, final_units, hypothesis_of(model, mode, final_units), rival)
     return Stretch(

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, NamedTuple
 from melodycoach.core.change import NONE
 from melodycoach.core.octave import moved_final, standing_final
 from melodycoach.core.scorer import posterior
-from melodycoach.core.span import heard_instead, span
+from melodycoach.core.span import Span, heard_instead, span
 from melodycoach.core.stretch import stretch_of
 
 if TYPE_CHECKING:
@@ -113,27 +113,32 @@ def judges(
 
 def stretch_judges(
     model: ScoringModel, states: Sequence[ScorerState], heard: Sequence[Heard], whole: Leaning
-) -> tuple[Judge, ...]:
-    """Say by which mode each stretch of a finished line is heard, the oldest first, from note 1 on.
+) -> tuple[tuple[Judge, Span], ...]:
+    """Give the stretches of a finished line and by which mode each is heard, from note 1 on.
 
-    They are the judges of the line without a target, mended by hindsight: a stretch that is clearly
+    Their judges are those of the line without a target, mended by hindsight: a stretch that is clearly
     heard in another mode than the one announced for it gets that one, and neighbours in the same mode
     are one stretch.
     """
     leader = in_view(model, states, heard, None, whole)
     found = judges(model, states, heard, leader[:2], whole.best)[::-1]
     found = (found[0]._replace(since=1), *found[1:])
+    known: dict[tuple[int, int], Span] = {}
     while True:
         ends = [*(judge.since - 1 for judge in found[1:]), len(heard)]
-        named = [_renamed(model, heard, judge, last) for judge, last in zip(found, ends, strict=True)]
+        bounds = [(judge.since, last) for judge, last in zip(found, ends, strict=True)]
+        known |= {pair: span(model, heard, *pair) for pair in bounds if pair not in known}
+        named = [
+            _renamed(model, heard, *one) for one in zip(found, (known[pair] for pair in bounds), strict=True)
+        ]
         merged = tuple(one for at, one in enumerate(named) if not at or one[1:] != named[at - 1][1:])
         if merged == found:
-            return found
+            return tuple(zip(found, parts, strict=True))
         found = merged
 
 
-def _renamed(model: ScoringModel, heard: Sequence[Heard], judge: Judge, last: int) -> Judge:
-    instead = heard_instead(model, span(model, heard, judge.since, last), judge.mode)
+def _renamed(model: ScoringModel, heard: Sequence[Heard], judge: Judge, part: Span) -> Judge:
+    instead = heard_instead(model, part, judge.mode)
     if instead is None:
         return judge
     return Judge(judge.since, model.mode_of(instead), standing_final(model, instead, heard))

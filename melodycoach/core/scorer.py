@@ -18,7 +18,7 @@ Arrays have shape (n_hypotheses,) and the order of the model's hypotheses.
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -135,17 +135,33 @@ def note_weight(model: ScoringModel, heard: Heard) -> float:
 
 def advance(model: ScoringModel, state: ScorerState, heard: Heard) -> ScorerState:
     """Give the state after one more note; the old one is left as it was."""
-    weight, sounding = note_weight(model, heard), sounding_of(model, heard)
-    fresh, evidence, context = _score(model, state, heard, weight, sounding)
-    loglik = sealed(state.loglik + evidence.total)
-    memory = sealed(_remember(state.memory, model.tables(heard.kind).bell, sounding, weight))
-    n_notes = state.n_notes + 1
-    latest = (*state.latest, heard)[-model.parameters.closing_notes :]
+    fresh, after = _added(model, state, heard)
     fresh *= model.parameters.hearing[heard.kind].change_power
     field = Field(model.n_modes, model.log_prior, model.final_units)
     opens_phrase = bool(state.latest) and state.latest[-1].closes
-    change = advance_change(state.change, fresh, field, n_notes, model.parameters, opens_phrase)
-    return ScorerState(loglik, state.weight + weight, n_notes, sealed(context), memory, latest, change)
+    change = advance_change(state.change, fresh, field, after.n_notes, model.parameters, opens_phrase)
+    return replace(after, change=change)
+
+
+def advance_unwatched(model: ScoringModel, state: ScorerState, heard: Heard) -> ScorerState:
+    """Give the state after one more note, but do not watch for a change of mode: half the work."""
+    return _added(model, state, heard)[1]
+
+
+def _added(model: ScoringModel, state: ScorerState, heard: Heard) -> tuple[FloatArray, ScorerState]:
+    """Give the evidence without the line's memory, and the state with the note but the change as it was."""
+    weight, sounding = note_weight(model, heard), sounding_of(model, heard)
+    fresh, evidence, context = _score(model, state, heard, weight, sounding)
+    after = ScorerState(
+        loglik=sealed(state.loglik + evidence.total),
+        weight=state.weight + weight,
+        n_notes=state.n_notes + 1,
+        context=sealed(context),
+        memory=sealed(_remember(state.memory, model.tables(heard.kind).bell, sounding, weight)),
+        latest=(*state.latest, heard)[-model.parameters.closing_notes :],
+        change=state.change,
+    )
+    return fresh, after
 
 
 def evidence_of(model: ScoringModel, state: ScorerState, heard: Heard) -> NoteEvidence:

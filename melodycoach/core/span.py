@@ -12,7 +12,7 @@ from itertools import groupby
 from typing import TYPE_CHECKING
 
 from melodycoach.core.note import Mark, Note, Silence
-from melodycoach.core.scorer import advance, leading, mode_posterior, start
+from melodycoach.core.scorer import advance_unwatched, leading, mode_posterior, start
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
@@ -88,7 +88,7 @@ def growing_spans(model: ScoringModel, heard: Sequence[Heard], first: int, last:
 def _states_from(model: ScoringModel, heard: Sequence[Heard], first: int, last: int) -> Iterator[ScorerState]:
     state = start(model)
     for number in range(first, last + 1):
-        state = advance(model, state, heard[number - 1])
+        state = advance_unwatched(model, state, heard[number - 1])
         yield state if number == len(heard) else before_closing(state)
 
 
