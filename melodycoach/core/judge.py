@@ -128,9 +128,8 @@ def stretch_judges(
         ends = [*(judge.since - 1 for judge in found[1:]), len(heard)]
         bounds = [(judge.since, last) for judge, last in zip(found, ends, strict=True)]
         known |= {pair: span(model, heard, *pair) for pair in bounds if pair not in known}
-        named = [
-            _renamed(model, heard, *one) for one in zip(found, (known[pair] for pair in bounds), strict=True)
-        ]
+        parts = [known[pair] for pair in bounds]
+        named = [_renamed(model, heard, judge, part) for judge, part in zip(found, parts, strict=True)]
         merged = tuple(one for at, one in enumerate(named) if not at or one[1:] != named[at - 1][1:])
         if merged == found:
             return tuple(zip(found, parts, strict=True))
