@@ -195,8 +195,9 @@ def check_sheet(model: ScoringModel, sheet: Sheet, target: Mode | None = None) -
 def leaving(checked: Checked, target: Mode) -> Leaving | None:
     """Say where a line first leaves a mode, or None when it stays.
 
-    It leaves at the first note that lies outside the mode, and where a stretch is heard in another
-    mode. A line that is undecided, or that is too short to tell, stays.
+    It leaves at the first note that lies outside the mode, and where a stretch that has no such note is
+    clearly heard in another mode all the same. A line that is undecided, or that is too short to tell,
+    stays.
 
     Parameters
     ----------
@@ -209,8 +210,9 @@ def leaving(checked: Checked, target: Mode) -> Leaving | None:
         raise ValueError(f"the line was checked for {checked.target}, not for {target.id!r}")
     found = [Leaving(number, off=one[1]) for number, one in enumerate(checked.off, 1) if one is not None]
     for stretch in checked.stretches:
+        is_clean = not any(checked.off[stretch.span.first - 1 : stretch.span.last])
         to = heard_instead(checked.model, stretch.span, target)
-        if to is not None:
+        if to is not None and is_clean:
             turned = _turns_at(checked, stretch, target)
             found.append(Leaving(turned, to=checked.model.mode_of(to)))
     return min(found, key=lambda one: one.number, default=None)

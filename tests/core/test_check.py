@@ -158,14 +158,23 @@ def test_a_line_with_every_note_in_its_mode_leaves_it_when_it_is_clearly_heard_i
     assert first.to.id != "makam/rast"
 
 
-def test_a_turn_is_placed_at_its_seam() -> None:
-    only = build_model(PACK, PACK.restrict(("rast", "segah", "nihavend")))
-    rast, nihavend = BY_THE_BOOK["rast"], BY_THE_BOOK["nihavend"]
-    sheet = sheet_of(f"{rast} {rast} {nihavend} {nihavend}", PACK.names)
-    found = check_sheet(only, sheet, PACK.find("rast"))
-    first = leaving(found, PACK.find("rast"))
+def test_a_turn_that_wrong_notes_explain_is_told_by_the_first_of_them() -> None:
+    """Hicaz begins three notes before the first perde that Hüseynî has not."""
+    found = checked(f"{HUSEYNI} {HICAZ}", "huseyni")
+    first = leaving(found, PACK.find("huseyni"))
     assert first is not None
-    assert abs(first.number - found.stretches[1].span.first) <= 2
+    assert first.off is not None
+    assert first.number == wrong(found)[0] > found.stretches[1].span.first
+
+
+def test_a_turn_without_a_wrong_note_is_placed_at_its_seam() -> None:
+    rast, segah = BY_THE_BOOK["rast"], BY_THE_BOOK["segah"].replace("kürdî", "dügâh")
+    found = checked(f"{rast} {rast} {segah} {segah} {segah}", "rast")
+    first = leaving(found, PACK.find("rast"))
+    assert wrong(found) == []
+    assert first is not None
+    assert first.to is not None
+    assert first.number == found.stretches[1].span.first
 
 
 def test_the_question_is_asked_of_the_mode_that_the_line_was_checked_for() -> None:
