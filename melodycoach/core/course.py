@@ -7,7 +7,7 @@ the mode would have. A trait that cannot be told yet neither agrees nor disagree
 from __future__ import annotations
 
 from dataclasses import dataclass
-from statistics import median
+from statistics import median, median_low
 from typing import TYPE_CHECKING
 
 from melodycoach.core.evidence import OPENING_MARGIN_UNITS, OPENING_NOTES
@@ -107,9 +107,11 @@ class _Beside:
         if len(first) < OPENING_NOTES:
             return Trait(None, f"too short to tell where it opens; it begins on {start}")
         low, high = mode.opening[0] - OPENING_MARGIN_UNITS, mode.opening[1] + OPENING_MARGIN_UNITS
-        inside = low <= median(first) - self.final_units <= high
+        inside, begins = (low <= at - self.final_units <= high for at in (median(first), first[0]))
         place = opening_place(mode, self.final_units, self.model)
-        return Trait(inside, f"it opens on {start}; {mode.name} opens {place}")
+        strays = begins and not inside
+        lies = f", but its first notes lie round {self.name(median_low(first))}" if strays else ""
+        return Trait(inside, f"it opens on {start}{lies}; {mode.name} opens {place}")
 
     def register(self) -> Trait:
         heights, mode = self.heights(), self.mode

@@ -127,10 +127,11 @@ class ScoringParameters:
         Register: multipliers for a degree of the rising form, for the final, the first dominant
         and the opening region; factor for each degree beyond the octave or under the one below the
         final; share spread over the whole compass.
-    closing_notes, closing_power, closing_final, closing_noise
+    closing_notes, closing_power, closing_temper, closing_final, closing_noise
         A phrase end adds ``closing_power`` times the log-likelihood of the last ``closing_notes``
         notes under a distribution with ``closing_final`` of its mass near the final (of which
-        ``closing_noise`` is spread evenly) and the rest as resting notes are.
+        ``closing_noise`` is spread evenly) and the rest as resting notes are. It is tempered by no
+        more than ``closing_temper``: it was measured at the end of whole melodies.
     change_rate
         Change filter: probability of a change of mode at a note.
     announce_at, announce_notes
@@ -183,6 +184,7 @@ class ScoringParameters:
     register_noise: float = 0.01
     closing_notes: int = 3
     closing_power: float = 2.0
+    closing_temper: float = 0.7
     closing_final: float = 0.9
     closing_noise: float = 0.1
     change_rate: float = 0.003

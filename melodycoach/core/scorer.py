@@ -245,7 +245,8 @@ def closing_if_ended(model: ScoringModel, state: ScorerState) -> FloatArray:
         sounding = sounding_of(model, heard)
         likely = sounding.shares @ model.tables(heard.kind).closing[model.mode_index, sounding.columns]
         total += note_weight(model, heard) * np.log(likely)
-    return model.parameters.closing_power * total
+    parameters = model.parameters
+    return parameters.closing_power * min(1.0, parameters.closing_temper / temper(model, state)) * total
 
 
 def log_posterior(model: ScoringModel, state: ScorerState) -> FloatArray:

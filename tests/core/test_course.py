@@ -34,6 +34,14 @@ def test_muhayyer_opens_an_octave_above_its_final_and_huseyni_on_its_dominant() 
     )
 
 
+def test_an_opening_that_begins_well_and_goes_elsewhere_is_told_as_that() -> None:
+    opening = course("E5 D5 C5 B4-1 A4:3 .", "huseyni").opening
+    assert (opening.agrees, opening.says) == (
+        False,
+        "it opens on hüseynî, but its first notes lie round çargâh; Hüseynî opens round hüseynî",
+    )
+
+
 def test_three_notes_are_too_few_to_say_where_a_line_opens() -> None:
     opening = course("E5 D5 E5", "huseyni").opening
     assert (opening.agrees, opening.says) == (

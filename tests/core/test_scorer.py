@@ -249,6 +249,20 @@ def test_evidence_weighs_less_the_more_of_it_there_is() -> None:
     assert tempers[0] == model.parameters.temper
 
 
+def test_the_end_of_a_short_phrase_weighs_no_more_than_that_of_a_whole_melody() -> None:
+    """Five notes that end on hüseynî may be a half cadence (common practice): no ground to be sure."""
+    model = build_model(PACK, PACK.modes)
+    state = start(model)
+    for note in hear(read_note_text("A4 B4-1 C5 D5 E5:2 .", PACK.names).items):
+        state = advance(model, state, note)
+    parameters = model.parameters
+    assert temper(model, state) > parameters.closing_temper
+    untamed = replace(model, parameters=replace(parameters, closing_temper=float("inf")))
+    share = closing(model, state) / closing(untamed, state)
+    assert share == pytest.approx(parameters.closing_temper / temper(model, state))
+    assert mode_posterior(model, state).max() < 0.9 < mode_posterior(untamed, state).max()
+
+
 def test_closing_speaks_only_where_a_phrase_ends_and_is_never_kept() -> None:
     model = MODELS["written"]
     notes = line(BY_THE_BOOK["segah"])
