@@ -103,30 +103,63 @@ def stretch(first: int, last: int, name: str) -> dict[str, Any]:
         "first": first,
         "last": last,
         "place": where(first),
-        "mode": f"makam/{name}",
+        "mode": "makam/huseyni" if name == "Hüseynî" else f"makam/{name}",
         "name": name,
         "final": pitch("dügâh"),
         "probability": 0.6,
         "decided": True,
         "verdict": f"leaning to {name}, 60 %",
         "noticed_at": None,
-        "steps": {
-            "heard": [step("final cadence", "core", 16)],
-            "owed": [step("half cadence", "core", None), step("leap", "colour", None)],
-        },
+        "steps": steps(),
+        "course": course(name),
+    }
+
+
+def steps() -> dict[str, Any]:
+    return {
+        "heard": [step("final cadence", "core", 16)],
+        "owed": [step("half cadence", "core", None), step("leap", "colour", None)],
+    }
+
+
+def course(name: str) -> dict[str, Any]:
+    return {
+        "mode": f"makam/{name}",
+        "name": name,
+        "opening": {"agrees": True, "says": "it opens on hüseynî"},
+        "register": {"agrees": None, "says": "too short to tell"},
+        "cadence": {"agrees": False, "says": "it does not come to rest on dügâh"},
+        "phrase_ends": [
+            {"note": 8, "place": where(8), "pitch": pitch("hüseynî"), "function": "güçlü"},
+            {"note": 16, "place": where(16), "pitch": pitch("dügâh"), "function": ""},
+        ],
     }
 
 
 def change(note: int, before: str, after: str) -> dict[str, Any]:
+    """Give a clear change; `open_change` and `family_change` make others of it."""
     return {
         "note": note,
         "place": where(note),
         "from": before,
         "to": after,
         "probability": 0.64,
+        "decided": True,
+        "family": "",
+        "among": [f"makam/{after}"],
         "noticed_at": note + 3,
-        "says": f"from {before} to {after}",
+        "says": f"turns from {before} to {after}, 64 %",
     }
+
+
+def open_change(note: int, before: str, after: str) -> dict[str, Any]:
+    says = f"may turn from {before} to {after}, 64 % (undecided between {after} and Sabâ)"
+    return change(note, before, after) | {"decided": False, "among": [after, "Sabâ"], "says": says}
+
+
+def family_change(note: int, before: str, after: str, family: str) -> dict[str, Any]:
+    says = f"turns from {before} to the {family}: undecided between {after} and Sabâ"
+    return open_change(note, before, after) | {"family": family, "says": says}
 
 
 def answer(bars: bool = True, **changes: Any) -> dict[str, Any]:
@@ -139,7 +172,6 @@ def answer(bars: bool = True, **changes: Any) -> dict[str, Any]:
         if name != "nim hicaz"
     ]
     leanings = [("Hüseynî", 0.72), ("Nevâ", 0.2), ("Gerdâniye", 0.002)]
-    agrees = {"agrees": True, "says": "it opens on hüseynî"}
     return {
         "file": "draft.txt",
         "kind": "note text",
@@ -175,6 +207,7 @@ def answer(bars: bool = True, **changes: Any) -> dict[str, Any]:
             "is_target": False,
             "final": pitch("dügâh"),
             "ladder": sorted(ladder, key=lambda rung: rung["height"]),
+            "steps": steps(),
         },
         "notes": [note(number, name, bars) for number, name in enumerate(LINE, 1)],
         "off_notes": [OFF],
@@ -186,17 +219,7 @@ def answer(bars: bool = True, **changes: Any) -> dict[str, Any]:
         "bars": [span(at, at + 3, bars, bar=str(at // 4 + 1)) for at in (1, 5, 9, 13)] if bars else [],
         "stretches": [stretch(1, 16, "Hüseynî")],
         "changes": [],
-        "course": {
-            "mode": "makam/huseyni",
-            "name": "Hüseynî",
-            "opening": agrees,
-            "register": {"agrees": None, "says": "too short to tell"},
-            "cadence": {"agrees": False, "says": "it does not come to rest on dügâh"},
-            "phrase_ends": [
-                {"note": 8, "place": where(8), "pitch": pitch("hüseynî"), "function": "güçlü"},
-                {"note": 16, "place": where(16), "pitch": pitch("dügâh"), "function": ""},
-            ],
-        },
+        "course": course("Hüseynî"),
         "rival": {
             "mode": "makam/neva",
             "name": "Nevâ",

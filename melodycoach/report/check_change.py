@@ -8,7 +8,8 @@ from __future__ import annotations
 from difflib import SequenceMatcher
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.report.page_words import place
+from melodycoach.report.check_words import is_clear, parts_of, turned_to
+from melodycoach.report.places import numbered_place
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator, Mapping, Sequence
@@ -120,7 +121,7 @@ def _stay_in(then: Answer | None, now: Answer | None, now_by_then: Mapping[int, 
 
 def _leaving(stay_in: Answer) -> str:
     first = stay_in["first"]
-    return f"{_where(first['place'], first['note'])}: {first['says']}"
+    return f"{numbered_place(first['place'], first['note'])}: {first['says']}"
 
 
 def _reading(before: Answer, after: Answer) -> Iterator[str]:
@@ -153,7 +154,7 @@ def _off_notes(before: Answer, after: Answer, now_by_then: Mapping[int, int]) ->
 
 
 def _note(note: Answer) -> str:
-    return f"{_where(note, note['number'])}, {note['name'] or note['written']}"
+    return f"{numbered_place(note, note['number'])}, {note['name'] or note['written']}"
 
 
 def _changes(
@@ -179,11 +180,12 @@ def _changes(
 
 
 def _turn(change: Answer) -> str:
-    return f"the change from {change['from']} to {change['to']}"
+    sort = "the" if is_clear(change) else "a possible"
+    return f"{sort} change from {change['from']} to {turned_to(change)}"
 
 
 def _at(change: Answer) -> str:
-    return _where(change["place"], change["note"])
+    return numbered_place(change["place"], change["note"])
 
 
 def _steps(before: Answer, after: Answer) -> Iterator[str]:
@@ -210,9 +212,8 @@ def _steps(before: Answer, after: Answer) -> Iterator[str]:
 
 def _steps_of(answer: Answer, which: str) -> dict[tuple[str, str], Answer]:
     """Give the steps of every mode that the line is said to be in: by the mode's name and their own."""
-    view = answer["in_view"]
-    parts = [view] if view["is_target"] else answer["stretches"]
-    return {(part["name"], step["id"]): step for part in parts for step in part["steps"][which]}
+    parts = (part.of for part in parts_of(answer))
+    return {(of["name"], step["id"]): step for of in parts for step in of["steps"][which]}
 
 
 def _listed(sentences: Iterable[str]) -> Iterator[str]:
@@ -220,11 +221,6 @@ def _listed(sentences: Iterable[str]) -> Iterator[str]:
     yield from said[:LISTED]
     if len(said) > LISTED:
         yield f"and {len(said) - LISTED} more like this"
-
-
-def _where(where: Answer, number: int) -> str:
-    """Say which note, and where it stands."""
-    return f"note {number}, {place(where)}" if place(where) else f"note {number}"
 
 
 def _count(n: int, one: str, many: str) -> str:

@@ -21,8 +21,10 @@ from melodycoach.core.scorer import mode_posterior, posterior
 from melodycoach.core.span import before_closing
 from melodycoach.core.verdict import competing_words, reading_words, verdict
 from melodycoach.report.check_values import (
+    change_data,
     course_data,
     mode_data,
+    names_alone,
     off_data,
     pitch_data,
     place_data,
@@ -97,7 +99,7 @@ def answer_json(checked: Checked, file: str, stay_in: Mode | None = None) -> dic
         "phrases": [span_data(checked, one) for one in checked.phrases],
         "bars": [{"bar": bar, **span_data(checked, one)} for bar, one in checked.bars],
         "stretches": [_stretch(checked, one) for one in checked.stretches],
-        "changes": _changes(checked),
+        "changes": [change_data(checked, *pair) for pair in pairwise(checked.stretches)],
         "course": course_data(checked, checked.view.mode, checked.course),
         "rival": _rival(checked),
         "keyboard_note": checked.keyboard_note,
@@ -247,31 +249,11 @@ def _stretch(checked: Checked, one: Stretch) -> dict[str, Any]:
         **mode_data(one.mode),
         "final": pitch_data(checked, one.final_units),
         "probability": rounded(one.probability),
-        "decided": lean.decided and checked.model.mode_of(lean.best).id == one.mode.id,
+        "decided": names_alone(checked, one),
         "verdict": verdict(checked.model, lean, one.span.n_notes),
         "noticed_at": one.noticed_at,
         "steps": steps_data(checked, one.steps),
         "course": course_data(checked, one.mode, one.course),
-    }
-
-
-def _changes(checked: Checked) -> list[dict[str, Any]]:
-    return [_change(checked, before, after) for before, after in pairwise(checked.stretches)]
-
-
-def _change(checked: Checked, before: Stretch, after: Stretch) -> dict[str, Any]:
-    lean = after.span.leaning
-    told = verdict(checked.model, lean, after.span.n_notes)
-    return {
-        "note": after.span.first,
-        "place": place_data(checked, after.span.first),
-        "from": before.mode.name,
-        "to": after.mode.name,
-        "probability": rounded(after.probability),
-        "decided": lean.decided,
-        "family": lean.family,
-        "noticed_at": after.noticed_at,
-        "says": f"from {before.mode.name} to {after.mode.name}; the notes from here on: {told}",
     }
 
 

@@ -9,14 +9,17 @@ from __future__ import annotations
 from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
+from melodycoach.report import page_parts as parts
 from melodycoach.report import page_sections as sections
+from melodycoach.report.check_words import aim_words, path_words, verdict_words
+from melodycoach.report.page_blocks import where
 from melodycoach.report.page_chances import DASHES
 from melodycoach.report.page_chart import chart
 from melodycoach.report.page_html import Html, bullets, element, joined
 from melodycoach.report.page_ladder import guests
 from melodycoach.report.page_script import POLICY, SCRIPT
 from melodycoach.report.page_style import STYLE
-from melodycoach.report.page_words import capital, counted, percent, plain
+from melodycoach.report.words import capital, counted, plain, short_percent
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping
@@ -59,27 +62,32 @@ def check_page(answer: Mapping[str, Any], index: str = "") -> str:
     body = joined(
         [
             _header(answer, title, index),
-            element(
-                "main",
-                _verdict(answer),
-                sections.reading(answer),
-                _chart(answer),
-                element("div", sections.changes(answer), sections.off_notes(answer), class_="two"),
-                sections.steps(answer),
-                element("div", sections.course(answer), sections.rival(answer), class_="two"),
-                sections.phrases(answer),
-                sections.bars(answer),
-                element("div", sections.ladder(answer), sections.how(answer), class_="two"),
-                sections.notes(answer),
-            ),
+            element("main", *_main(answer)),
             element(
                 "footer",
-                element("p", "melodycoach. ", answer["caution"]),
+                element("p", "Checked by melodycoach"),
             ),
             element("script", Html(SCRIPT)),
         ]
     )
     return whole_page(f"{title}: {answer['whole']['verdict']}", body)
+
+
+def _main(answer: Mapping[str, Any]) -> Iterator[Html | None]:
+    """Give the sections, in the order in which a composer asks."""
+    yield _verdict(answer)
+    yield sections.reading(answer)
+    if answer["n_notes"]:
+        yield _chart(answer)
+        yield element("div", sections.changes(answer), sections.off_notes(answer), class_="two")
+        yield parts.steps(answer)
+        yield element("div", parts.course(answer), parts.rival(answer), class_="two")
+        yield sections.phrases(answer)
+        yield sections.bars(answer)
+        yield element("div", sections.ladder(answer), sections.how(answer), class_="two")
+        yield sections.notes(answer)
+    else:
+        yield sections.how(answer)
 
 
 def whole_page(title: str, body: Html) -> str:
@@ -109,23 +117,21 @@ def _header(answer: Mapping[str, Any], title: str, index: str) -> Html:
 
 
 def _verdict(answer: Mapping[str, Any]) -> Html:
-    whole = answer["whole"]
-    n_off, n_changes = len(answer["off_notes"]), len(answer["changes"])
+    whole, heard, aim = answer["whole"], answer["n_notes"] > 0, aim_words(answer)
+    n_off, path = len(answer["off_notes"]), path_words(answer)
     glance = [
         element("a", f"{counted(n_off, 'note')} off the mode", href="#off-notes", class_="off")
         if n_off
-        else "no note is off the mode",
-        element("a", counted(n_changes, "change"), " of mode", href="#changes")
-        if n_changes
-        else "no change of mode",
+        else "No note is off the mode",
+        element("a", path, href="#changes") if path else "no change of mode",
     ]
     return element(
         "section",
         element("h2", "The answer", class_="aside"),
-        element("p", capital(whole["verdict"]), class_="verdict"),
         _stay_in(answer["stay_in"]),
-        element("p", joined(glance, " · "), class_="glance"),
-        sections.leanings(whole),
+        element("p", capital(verdict_words(answer)), class_="verdict"),
+        element("p", f"{capital(aim)}.") if heard and aim else None,
+        *((element("p", joined(glance, " · "), class_="glance"), sections.leanings(whole)) if heard else ()),
         id="answer",
     )
 
@@ -143,13 +149,13 @@ def _stay_in(asked: Mapping[str, Any] | None) -> Html | None:
 def _leaves(first: Mapping[str, Any] | None) -> Iterator[Content]:
     if first is not None:
         yield " It leaves first with "
-        yield sections.where(first["place"], first["note"])
+        yield where(first["place"], first["note"])
         yield f": {first['says']}."
 
 
 def _chart(answer: Mapping[str, Any]) -> Html:
     view, words = answer["in_view"], answer["words"]
-    aim = ", the mode you asked for" if view["is_target"] else ""
+    aim = ", the mode that it aims at" if view["is_target"] else ""
     final, dominant = words.get("final", "final"), words.get("dominant", "dominant")
     says = (
         f"The ladder at the left is that of {view['name']}{aim}: a full line is its {final}, a dashed one "
@@ -194,7 +200,7 @@ def _key(answer: Mapping[str, Any]) -> Html:
     ]
     last = answer["likelihoods"]["after"][-1] if notes else ()
     modes = [
-        joined([_sample(28, _dashed(at)), f" {mode['name']} {percent(probability)}"])
+        joined([_sample(28, _dashed(at)), f" {mode['name']} {short_percent(probability)}"])
         for at, (mode, probability) in enumerate(zip(answer["likelihoods"]["modes"], last, strict=False))
     ]
     return bullets([*marks, *modes], "key")

@@ -8,11 +8,11 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.core.verdict import percent
 from melodycoach.report.check_sections import SECTIONS
-from melodycoach.report.page_words import capital, counted, plain
+from melodycoach.report.check_words import aim_words, path_words, verdict_words
 from melodycoach.report.places import place_words
 from melodycoach.report.text_lines import BLANK, MIN_COLUMNS, heading, painted, wrapped
+from melodycoach.report.words import capital, counted, percent, plain
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping
@@ -20,9 +20,6 @@ if TYPE_CHECKING:
     from melodycoach.report.text_lines import Line
 
     Answer = Mapping[str, Any]
-
-CHANGES_NAMED = 4
-"""Of a line with more changes the modes are not named at once."""
 
 NEXT_LISTED = 3
 """So many modes are named behind the likeliest one."""
@@ -90,12 +87,16 @@ def _first_answers(answer: Answer) -> Iterator[tuple[str, str]]:
     """Give the answers to what is asked first, each with its style."""
     if answer["stay_in"] is not None:
         yield _stay_in(answer["stay_in"])
-    yield "strong", _verdict(answer)
+    yield "strong", verdict_words(answer)
     if answer["n_notes"]:
+        if answer["changes"]:
+            yield "strong", path_words(answer)
         yield from _likeliest(answer["whole"])
-        yield from _aimed_at(answer)
-        if not answer["off_notes"]:
-            yield "", f"no note lies outside {_judge(answer)}"
+        if answer["in_view"]["is_target"]:
+            yield "", aim_words(answer)
+        n_off = len(answer["off_notes"])
+        lie = counted(n_off, "note lies", "notes lie") if n_off else "no note lies"
+        yield "off" if n_off else "", f"{lie} outside {_judge(answer)}"
     if answer["lost"]:
         yield "off", "not all of the file could be read; what was lost is said at the end"
 
@@ -107,30 +108,6 @@ def _stay_in(asked: Answer) -> tuple[str, str]:
     return "off", f"leaves {asked['name']} at {place_words(first['place'], first['note'])}: {first['says']}"
 
 
-def _verdict(answer: Answer) -> str:
-    """Say where the line leans; one that changes its mode, through which modes it goes."""
-    verdict, n_changes = answer["whole"]["verdict"], len(answer["changes"])
-    if not n_changes:
-        return str(verdict)
-    often = "once" if n_changes == 1 else f"{n_changes} times"
-    names = ", then ".join(stretch["name"] for stretch in answer["stretches"])
-    path = f": {names}" if n_changes <= CHANGES_NAMED else ""
-    return f"as a whole {verdict}; it changes mode {often}{path}"
-
-
-def _aimed_at(answer: Answer) -> Iterator[tuple[str, str]]:
-    view, whole = answer["in_view"], answer["whole"]
-    if not view["is_target"]:
-        return
-    share = [one["probability"] for one in whole["leanings"] if one["mode"] == view["mode"]]
-    if whole["decided"] and whole["mode"] == view["mode"]:
-        yield "", f"{view['name']} is the mode that it aims at"
-    elif share:
-        yield "", f"it aims at {view['name']}, {percent(share[0])} likely"
-    else:
-        yield "", f"it aims at {view['name']}, which is not among the modes that it was compared with"
-
-
 def _likeliest(whole: Answer) -> Iterator[tuple[str, str]]:
     """Name the modes behind the one that the verdict names; all of them where it names no one."""
     first = 1 if whole["decided"] else 0
@@ -139,9 +116,14 @@ def _likeliest(whole: Answer) -> Iterator[tuple[str, str]]:
         f"{one['name']} {percent(one['probability'])}" for one in listed if one["probability"] >= LEAST_LISTED
     ]
     if likely:
-        yield "faint", f"{'next' if first else 'the likeliest'}: {', '.join(likely)}"
+        yield "faint", f"{'next likeliest' if first else 'the likeliest'}: {', '.join(likely)}"
 
 
 def _judge(answer: Answer) -> str:
-    one_mode = answer["in_view"]["is_target"] or len(answer["stretches"]) == 1
-    return answer["in_view"]["name"] if one_mode else "the mode of its stretch"
+    """Name what the notes are judged by."""
+    if answer["in_view"]["is_target"]:
+        return str(answer["in_view"]["name"])
+    if len(answer["stretches"]) > 1:
+        return "the mode of its stretch"
+    likeliest = "" if answer["whole"]["decided"] else ", the likeliest"
+    return f"{answer['in_view']['name']}{likeliest}"

@@ -9,9 +9,10 @@ from melodycoach.core.ranking import step_pitches
 from melodycoach.core.span import heard_instead
 from melodycoach.core.step_words import step_label
 from melodycoach.core.verdict import verdict
+from melodycoach.report.words import listed, percent
 
 if TYPE_CHECKING:
-    from melodycoach.core.check import Checked, Steps
+    from melodycoach.core.check import Checked, Steps, Stretch
     from melodycoach.core.course import Course, Trait
     from melodycoach.core.mode import Mode
     from melodycoach.core.offmode import OffMode
@@ -133,3 +134,43 @@ def course_data(checked: Checked, mode: Mode, course: Course | None) -> dict[str
 
 def _trait(trait: Trait) -> dict[str, Any]:
     return {"agrees": trait.agrees, "says": trait.says}
+
+
+def change_data(checked: Checked, before: Stretch, after: Stretch) -> dict[str, Any]:
+    """Say how the mode changes between two stretches.
+
+    The change is clear where the notes after it name their mode alone, and where they leave open only
+    which member of another family it is.
+    """
+    model, lean = checked.model, after.span.leaning
+    decided = names_alone(checked, after)
+    among = [model.modes[index] for index in lean.among]
+    other = len(among) > 1 and lean.family == after.mode.family != before.mode.family
+    family = lean.family if other and not decided else ""
+    probability = rounded(after.probability)
+    if decided:
+        says = f"turns from {before.mode.name} to {after.mode.name}, {percent(probability)}"
+    elif family:
+        open_between = listed([mode.name for mode in among])
+        says = f"turns from {before.mode.name} to the {family}: undecided between {open_between}"
+    else:
+        told = verdict(model, lean, after.span.n_notes)
+        says = f"may turn from {before.mode.name} to {after.mode.name}, {percent(probability)} ({told})"
+    return {
+        "note": after.span.first,
+        "place": place_data(checked, after.span.first),
+        "from": before.mode.name,
+        "to": after.mode.name,
+        "probability": probability,
+        "decided": decided,
+        "family": family,
+        "among": [mode.id for mode in among],
+        "noticed_at": after.noticed_at,
+        "says": says,
+    }
+
+
+def names_alone(checked: Checked, one: Stretch) -> bool:
+    """Tell whether the notes of a stretch name its mode alone."""
+    lean = one.span.leaning
+    return lean.decided and checked.model.mode_of(lean.best).id == one.mode.id

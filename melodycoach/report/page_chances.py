@@ -11,7 +11,8 @@ from melodycoach.errors import shorten
 from melodycoach.report.page_frame import LABEL_GAP
 from melodycoach.report.page_html import Html, element, joined, number
 from melodycoach.report.page_layout import spread
-from melodycoach.report.page_words import listed, notes_between, percent
+from melodycoach.report.places import notes_between
+from melodycoach.report.words import listed, short_percent
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping, Sequence
@@ -64,7 +65,7 @@ def _said(shared: Frame, piece: Piece) -> str:
     """Say in words how the likelihoods went in a piece."""
     before, after = _chances(shared, max(piece.first - 1, 1)), _chances(shared, piece.last)
     ways = [
-        f"{mode['name']} from {percent(was)} to {percent(now)}"
+        f"{mode['name']} from {short_percent(was)} to {short_percent(now)}"
         for mode, was, now in zip(shared.answer["likelihoods"]["modes"], before, after, strict=True)
     ]
     return f"likelihoods, {notes_between(piece.first, piece.last)}: {listed(ways)}"
@@ -95,7 +96,11 @@ def ends(shared: Frame, piece: Piece) -> Iterator[Html]:
     for at, y in _apart(shared, chances):
         name = shorten(shared.answer["likelihoods"]["modes"][at]["name"], 10)
         yield element(
-            "text", joined([name, percent(chances[at])], " "), x=x + 6, y=y + 4, class_=f"last mode-{at + 1}"
+            "text",
+            joined([name, short_percent(chances[at])], " "),
+            x=x + 6,
+            y=y + 4,
+            class_=f"last mode-{at + 1}",
         )
 
 

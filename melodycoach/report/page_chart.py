@@ -11,10 +11,12 @@ from typing import TYPE_CHECKING, Any
 
 from melodycoach.errors import shorten
 from melodycoach.report import page_chances, page_ladder
+from melodycoach.report.check_words import is_clear
 from melodycoach.report.page_frame import BARS_Y, CONTOUR_Y, SEAMS_Y, Frame
 from melodycoach.report.page_html import Html, element, number
 from melodycoach.report.page_layout import BOLD_LETTER, gutter_of, pieces_of, scale_of
-from melodycoach.report.page_words import notes_between, percent
+from melodycoach.report.places import notes_between
+from melodycoach.report.words import short_percent
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping
@@ -99,9 +101,8 @@ def _stretch_name(shared: Frame, piece: Piece) -> Iterator[Html]:
     stretches = shared.answer["stretches"]
     if len(stretches) < 2:
         return
-    name = next(
-        one["name"] for one in reversed(stretches) if one["first"] <= piece.first or one is stretches[0]
-    )
+    at = max((n for n, one in enumerate(stretches) if one["first"] <= piece.first), default=0)
+    name = _seam_name(shared.answer["changes"][at - 1]) if at else stretches[0]["name"]
     yield element("text", shorten(f"in {name}", 20), x=2, y=SEAMS_Y, class_="seam")
 
 
@@ -117,7 +118,15 @@ def _bar_lines(shared: Frame, piece: Piece) -> Iterator[Html]:
 
 
 def _seam_label(change: Mapping[str, Any]) -> str:
-    return f"▸ {shorten(change['to'], LONGEST_SEAM)} {percent(change['probability'])}"
+    """Name what the line turns to, and how sure that is where it is one mode."""
+    share = "" if change["family"] else f" {short_percent(change['probability'])}"
+    return f"▸ {_seam_name(change)}{share}"
+
+
+def _seam_name(change: Mapping[str, Any]) -> str:
+    """Name a mode or a family in short; a question mark says that it only may be one."""
+    name = shorten(change["family"] or change["to"], LONGEST_SEAM)
+    return name if is_clear(change) else f"{name}?"
 
 
 def _seams(shared: Frame, piece: Piece) -> Iterator[Html]:

@@ -98,7 +98,7 @@ def bullets(items: Iterable[Content], class_: str | None = None) -> Html:
 
 def table(
     heads: Sequence[str],
-    rows: Iterable[Sequence[Content]],
+    rows: Sequence[Sequence[Content]],
     caption: str,
     row_ids: Sequence[str] = (),
     class_: str = "rows",
@@ -111,7 +111,7 @@ def table(
         The name of each column. Each cell has it too, for a narrow page, where cells stand one
         below the other.
     rows
-        As many cells as there are heads, for each row.
+        As many cells as there are heads, for each row. A column without content is left out.
     caption
         What the table shows.
     row_ids
@@ -119,11 +119,12 @@ def table(
     class_
         ``rows`` may fall into blocks on a narrow page; ``wide`` is scrolled there.
     """
-    head = element("tr", *(element("th", name, scope="col") for name in heads))
+    used = [at for at in range(1, len(heads)) if any(cells[at] for cells in rows)]
+    head = element("tr", *(element("th", heads[at], scope="col") for at in (0, *used)))
     body = []
     for at, cells in enumerate(rows):
         first = element("th", cells[0], scope="row", data_head=heads[0])
-        rest = (element("td", cell, data_head=name) for name, cell in zip(heads[1:], cells[1:], strict=True))
+        rest = (element("td", cells[column], data_head=heads[column]) for column in used)
         body.append(element("tr", first, *rest, id=row_ids[at] if row_ids else None))
     return element(
         "table",

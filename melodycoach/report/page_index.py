@@ -7,7 +7,8 @@ from typing import TYPE_CHECKING, Any
 
 from melodycoach.report.check_page import whole_page
 from melodycoach.report.page_html import Html, bullets, element, joined, table
-from melodycoach.report.page_words import capital, counted, place
+from melodycoach.report.places import place_words
+from melodycoach.report.words import capital, counted
 
 if TYPE_CHECKING:
     from collections.abc import Mapping, Sequence
@@ -78,8 +79,7 @@ def _stays(asked: Mapping[str, Any]) -> str:
     first = asked["first"]
     if first is None:
         return f"does not stay in {asked['name']}"
-    at = place(first["place"])
-    return f"leaves {asked['name']} with note {first['note']}{', ' if at else ''}{at}"
+    return f"leaves {asked['name']} at {place_words(first['place'], first['note'])}"
 
 
 def index_page(entries: Sequence[IndexEntry], title: str = "Lines checked") -> str:

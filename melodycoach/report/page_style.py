@@ -47,7 +47,8 @@ header{padding-top:2.2rem}
 footer{padding-bottom:2.5rem;color:var(--text-quiet);font-size:.9rem}
 h1{font-size:2rem;font-weight:400;line-height:1.2;margin:0;overflow-wrap:anywhere}
 h2{font-size:1.2rem;font-weight:400;margin:2.6rem 0 .7rem;padding-top:.5rem;border-top:1px solid var(--rule)}
-h3{font-size:1rem;font-weight:600;margin:1.2rem 0 .3rem}
+h3,h4{font-size:1rem;font-weight:600;margin:1.2rem 0 .3rem}
+h4{font-weight:400}
 p,ul,dl{margin:.4rem 0;max-width:46rem}
 ul{padding-left:1.2rem}
 li{margin:.2rem 0}
@@ -71,7 +72,7 @@ dd{margin:0}
 .mend{color:var(--text-mend)}
 .unbroken{white-space:nowrap}
 summary{cursor:pointer}
-summary h2,summary h3{display:inline;margin:0;padding:0;border:0}
+summary h2,summary h3,summary h4{display:inline;margin:0;padding:0;border:0}
 details{margin:.5rem 0}
 main>details{margin:2.6rem 0 .7rem;padding-top:.5rem;border-top:1px solid var(--rule)}
 :focus-visible{outline:2px solid var(--text-link);outline-offset:2px}
@@ -175,7 +176,7 @@ main,header,footer{max-width:none;padding:0}
 #shown,.hint{display:none}
 .folded::details-content{content-visibility:visible;block-size:auto}
 .folded summary{list-style:none}
-h2,h3,summary,caption{break-after:avoid}
+h2,h3,h4,summary,caption{break-after:avoid}
 h2{margin-top:1.4rem}
 tr,li,dd{break-inside:avoid}
 thead{display:table-header-group}

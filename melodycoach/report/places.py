@@ -8,18 +8,40 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.report.page_words import bar_and_beat, notes_between, runs
+from melodycoach.report.words import plain
 
 if TYPE_CHECKING:
     from collections.abc import Mapping, Sequence
 
 
-def place_words(place: Mapping[str, Any], number: int) -> str:
-    """Say where a note stands.
+def bar_and_beat(bar: str, beat: float) -> str:
+    """Say where a note stands in its bar, or nothing where there are no bars.
+
+    >>> bar_and_beat("3", 2.5), bar_and_beat("3", 0.0), bar_and_beat("", 1.0)
+    ('bar 3, beat 2.5', 'bar 3', '')
+    """
+    if not bar:
+        return ""
+    return f"bar {bar}, beat {plain(beat)}" if beat else f"bar {bar}"
+
+
+def place(where: Mapping[str, Any] | None) -> str:
+    """Say where something stands: bar and beat, or else its place in the file; empty if neither is known.
+
+    >>> place({"bar": "3", "beat": 2.0, "at": "line 4, column 7"}), place(None)
+    ('bar 3, beat 2', '')
+    >>> place({"bar": "", "beat": 0, "at": "0:12.4"})
+    '0:12.4'
+    """
+    return "" if where is None else bar_and_beat(where["bar"], where["beat"]) or where["at"]
+
+
+def place_words(where: Mapping[str, Any], number: int) -> str:
+    """Say where a note stands; one that stands in no bar is named by its number, too.
 
     Parameters
     ----------
-    place
+    where
         ``bar``, ``beat`` and ``at``, as an answer has them.
     number
         The note, counted from 1.
@@ -33,8 +55,38 @@ def place_words(place: Mapping[str, Any], number: int) -> str:
     >>> place_words({"bar": "", "beat": 0.0, "at": ""}, 12)
     'note 12'
     """
-    in_bar = bar_and_beat(place["bar"], place["beat"])
-    return in_bar or ", ".join(part for part in (f"note {number}", place["at"]) if part)
+    return place(where) if where["bar"] else numbered_place(where, number)
+
+
+def numbered_place(where: Mapping[str, Any], number: int) -> str:
+    """Say which note it is, and where it stands.
+
+    >>> numbered_place({"bar": "3", "beat": 2.0, "at": "line 4, column 7"}, 12)
+    'note 12, bar 3, beat 2'
+    """
+    return ", ".join(part for part in (f"note {number}", place(where)) if part)
+
+
+def notes_between(first: int, last: int) -> str:
+    """Name a run of notes.
+
+    >>> notes_between(3, 3), notes_between(3, 8)
+    ('note 3', 'notes 3 to 8')
+    """
+    return f"note {first}" if first == last else f"notes {first} to {last}"
+
+
+def runs(numbers: Sequence[int]) -> list[tuple[int, int]]:
+    """Give the first and the last of each run of numbers that follow each other.
+
+    >>> runs([3, 4, 5, 9])
+    [(3, 5), (9, 9)]
+    """
+    found: list[tuple[int, int]] = []
+    for number in numbers:
+        joins = bool(found) and found[-1][1] == number - 1
+        found[-1:] = [(found[-1][0], number)] if joins else [*found[-1:], (number, number)]
+    return found
 
 
 def stretch_words(notes: Sequence[Mapping[str, Any]], first: int, last: int) -> str:

@@ -10,8 +10,9 @@ its way into a `Line`, so that no title or file name can speak to the terminal. 
 from __future__ import annotations
 
 import re
-import unicodedata
 from typing import TYPE_CHECKING, NamedTuple
+
+from melodycoach.core.cells import tidy, width
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Sequence
@@ -43,36 +44,12 @@ def tied(text: str) -> str:
 
 
 def clean(text: str) -> str:
-    r"""Make a text fit to be shown: composed letters, and no character that steers a terminal.
+    r"""Make a text fit to be shown, with its words tied where they are.
 
     >>> clean("Quay\x1b[31m\tat\u202e night\n")
     'Quay?[31m at night '
     """
-    text = unicodedata.normalize("NFC", text)
-    return text if text.isprintable() else "".join(map(_clean_character, text))
-
-
-def _clean_character(character: str) -> str:
-    if character.isspace():
-        return character if character == _TIE else " "
-    if character.isprintable():
-        return character
-    return "" if unicodedata.category(character) == "Cf" else "?"
-
-
-def cells(text: str) -> int:
-    """Count the character cells that a text fills.
-
-    >>> cells("dügâh"), cells("音"), cells("u" + chr(0x308))
-    (5, 2, 1)
-    """
-    return len(text) if text.isascii() else sum(map(_cells_of, text))
-
-
-def _cells_of(character: str) -> int:
-    if unicodedata.combining(character):
-        return 0
-    return 2 if unicodedata.east_asian_width(character) in "WF" else 1
+    return _TIE.join(map(tidy, text.split(_TIE)))
 
 
 def wrapped(text: str, columns: int, first: str = "", rest: str | None = None, style: str = "") -> list[Line]:
@@ -93,7 +70,7 @@ def wrapped(text: str, columns: int, first: str = "", rest: str | None = None, s
     later = first if rest is None else rest
     lines, line, empty = [], clean(first), True
     for word in _GAP.split(clean(text).replace(" %", f"{_TIE}%").strip()):
-        if not empty and cells(line) + 1 + cells(word) > columns:
+        if not empty and width(line) + 1 + width(word) > columns:
             lines.append(line)
             line, empty = later, True
         line += word if empty else f" {word}"
@@ -104,7 +81,7 @@ def wrapped(text: str, columns: int, first: str = "", rest: str | None = None, s
 def heading(text: str, columns: int, rule: str = "-") -> list[Line]:
     """Write a title with a rule under it, as wide as the title."""
     lines = wrapped(text, columns, style="strong")
-    size = max((cells(line.text) for line in lines), default=0)
+    size = max((width(line.text) for line in lines), default=0)
     return [*lines, Line(rule * min(size, columns), "faint")]
 
 
@@ -119,7 +96,7 @@ class Row(NamedTuple):
 def table(rows: Sequence[Row], columns: int, indent: str = "  ") -> list[Line]:
     """Set texts beside their labels, all at the same column; under them where that is too narrow."""
     labels = [clean(row.label) for row in rows]
-    size = max(map(cells, labels), default=0)
+    size = max(map(width, labels), default=0)
     start = len(indent) + size + 2
     below = columns - start < max(LEAST_TEXT, columns // 2)
     lines: list[Line] = []
@@ -128,7 +105,7 @@ def table(rows: Sequence[Row], columns: int, indent: str = "  ") -> list[Line]:
             lines += wrapped(label, columns, indent, style=row.style)
             lines += wrapped(row.text, columns, f"{indent}  ")
         else:
-            pad = " " * (size - cells(label) + 2)
+            pad = " " * (size - width(label) + 2)
             lines += wrapped(row.text, columns, f"{indent}{label}{pad}", " " * start, row.style)
     return lines
 

@@ -1,18 +1,21 @@
-"""Text in character cells: how wide it is, and cutting, padding, wrapping it to a width.
+"""Text in character cells: cutting, padding, wrapping it to a width.
 
 Conventions
 -----------
 A *fragment* is a pair (style, text) and a *line* is a list of fragments, as the terminal takes
-them. A width is a count of character cells: most characters fill one, East Asian wide ones two,
-combining ones none. Nothing here prints.
+them. How wide a text is, and what of it may be shown, `melodycoach.core.cells` knows. Nothing here
+prints.
 """
 
 from __future__ import annotations
 
 import re
 import unicodedata
-from functools import lru_cache
 from typing import TYPE_CHECKING, TypeAlias
+
+from melodycoach.core.cells import character_width as character_width
+from melodycoach.core.cells import tidy as tidy
+from melodycoach.core.cells import width as width
 
 if TYPE_CHECKING:
     from collections.abc import Iterable
@@ -23,8 +26,6 @@ Line: TypeAlias = list[Fragment]
 WORD = re.compile(r"\S+")
 """A word: what stands between spaces."""
 
-_NO_WIDTH = frozenset(("Mn", "Me", "Cf"))
-_UNPRINTABLE = frozenset(("Cc", "Cs", "Co", "Cn", "Zl", "Zp"))
 _LETTERS = str.maketrans(
     {
         "ı": "i",
@@ -45,47 +46,6 @@ _LETTERS = str.maketrans(
         "♯": "#",
     }
 )
-
-
-@lru_cache(maxsize=4096)
-def character_width(character: str) -> int:
-    """Count the cells that one character fills: 0, 1 or 2.
-
-    Examples
-    --------
-    >>> [character_width(c) for c in ("a", "î", "音", chr(0x302))]
-    [1, 1, 2, 0]
-    """
-    if unicodedata.category(character) in _NO_WIDTH:
-        return 0
-    return 2 if unicodedata.east_asian_width(character) in "WF" else 1
-
-
-def width(text: str) -> int:
-    """Count the cells that a text fills.
-
-    >>> width("dügâh"), width("u" + chr(0x308))
-    (5, 1)
-    """
-    return len(text) if text.isascii() else sum(map(character_width, text))
-
-
-def tidy(text: str) -> str:
-    r"""Make a text fit to be shown: composed letters, no line ends, tabs or control characters.
-
-    >>> tidy("USB\tKeys\x1b[0m\n2")
-    'USB Keys?[0m 2'
-    """
-    if not unicodedata.is_normalized("NFC", text):
-        text = unicodedata.normalize("NFC", text)
-    return text if text.isprintable() else "".join(map(_tidy_character, text))
-
-
-def _tidy_character(character: str) -> str:
-    if character.isspace():
-        return " "
-    category = unicodedata.category(character)
-    return "" if category == "Cf" else "?" if category in _UNPRINTABLE else character
 
 
 def to_ascii(text: str) -> str:

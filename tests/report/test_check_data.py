@@ -74,6 +74,16 @@ def test_a_change_stands_between_two_stretches() -> None:
     assert (change["from"], change["to"]) == (before["name"], after["name"]) == ("Hüseynî", "Hicaz")
     assert change["note"] == after["first"] == before["last"] + 1
     assert change["place"] == {"bar": "7", "beat": 1.0, "at": ""}
+    assert change["decided"] == after["decided"]
+    assert change["says"].startswith("turns from Hüseynî to ")
+
+
+def test_each_stretch_is_held_against_the_course_of_its_own_mode() -> None:
+    before, after = (stretch["course"] for stretch in TURNED["stretches"])
+    assert (before["name"], after["name"]) == ("Hüseynî", "Hicaz")
+    assert [end["note"] for end in (*before["phrase_ends"], *after["phrase_ends"])] == [
+        phrase["last"] for phrase in TURNED["phrases"]
+    ]
 
 
 def test_bars_and_phrases_cover_the_line_and_say_whether_they_fit() -> None:

@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING, Any
 
 import pytest
 from page_answers import answer as made_by_hand
+from page_answers import change
 from sheets import sheet_of
 
 from melodycoach import __version__
@@ -257,5 +258,5 @@ def test_an_example_that_says_something_else_is_noticed() -> None:
 
 def test_the_answer_made_by_hand_for_other_tests_has_the_same_shape() -> None:
     walk = Walk()
-    walk.object(made_by_hand(), "ANSWER", "answer")
-    assert [one for one in walk.wrong if one != "answer.in_view.steps: missing"] == []
+    walk.object(made_by_hand(changes=[change(9, "Hüseynî", "Hicaz")]), "ANSWER", "answer")
+    assert walk.wrong == []

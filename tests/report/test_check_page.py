@@ -12,7 +12,18 @@ from typing import Any
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from page_answers import LINE, OFF, answer, change, long_answer, note, stretch
+from page_answers import (
+    LINE,
+    OFF,
+    answer,
+    change,
+    course,
+    family_change,
+    long_answer,
+    note,
+    open_change,
+    stretch,
+)
 
 from melodycoach.report.check_page import check_page
 from melodycoach.report.page_html import element, escaped
@@ -206,8 +217,25 @@ def test_the_verdict_is_a_sentence_of_its_own() -> None:
 
 def test_off_notes_and_changes_are_counted_under_the_verdict() -> None:
     assert read(check_page(answer())).one(class_="glance").text == "1 note off the mode · no change of mode"
-    clean = answer(off_notes=[], changes=[change(9, "a", "b"), change(12, "b", "c")])
-    assert read(check_page(clean)).one(class_="glance").text == "no note is off the mode · 2 changes of mode"
+    root = read(check_page(answer(off_notes=[], changes=[change(9, "a", "b"), change(12, "b", "c")])))
+    glance = root.one(class_="glance")
+    assert glance.text == "No note is off the mode · it changes mode 2 times: a, then b, then c"
+    assert [link["href"] for link in glance.all("a")] == ["#changes"]
+
+
+def test_a_line_that_as_one_leans_where_no_stretch_does_is_told_so() -> None:
+    stretches = [stretch(1, 8, "Rast"), stretch(9, 16, "Hicaz")]
+    root = read(check_page(answer(stretches=stretches, changes=[change(9, "Rast", "Hicaz")])))
+    assert root.one(class_="verdict").text == (
+        "Taken as one, the line is leaning to Hüseynî, 72 %; its stretches lean to Rast and Hicaz"
+    )
+
+
+def test_the_mode_that_it_aims_at_is_named_with_how_near_it_comes() -> None:
+    view = answer()["in_view"] | {"is_target": True}
+    said = read(check_page(answer(in_view=view))).one(id="answer").text
+    assert "Hüseynî is the mode that it aims at." in said
+    assert "aims at" not in read(check_page(answer())).one(id="answer").text
 
 
 @pytest.mark.parametrize(
@@ -341,6 +369,27 @@ def test_a_change_of_mode_is_a_line_with_the_name_of_the_mode_and_the_rows_say_t
     assert stretches[-1] == "in Karcığar"
 
 
+@pytest.mark.parametrize(
+    ("one", "label", "row"),
+    [
+        (open_change(9, "Hüseynî", "Hicaz"), "▸ Hicaz? 64 %", "in Hicaz?"),
+        (family_change(9, "Hüseynî", "Hicaz", "hicaz family"), "▸ hicaz family", "in hicaz family"),
+    ],
+)
+def test_a_change_that_is_not_to_one_mode_for_sure_is_marked_so(one: Any, label: str, row: str) -> None:
+    stretches = [stretch(1, 8, "Hüseynî"), stretch(9, 16, "Hicaz")]
+    root = read(check_page(answer(changes=[one], stretches=stretches)))
+    assert root.one("g", data_seam="9").one("text").text == label
+    gutter = root.all("svg", class_="piece")[-1].one("g", class_="gutter")
+    assert gutter.one("text", class_="seam").text == row
+
+
+def test_a_column_without_content_is_left_out() -> None:
+    clean = [one | {"off": None, "at": ""} for one in answer()["notes"]]
+    heads = read(check_page(answer(notes=clean, off_notes=[]))).one(id="notes").one("thead").all("th")
+    assert [one.text for one in heads] == ["note", "where", "name", "written", "length", "likely after it"]
+
+
 def test_the_name_at_a_seam_does_not_leave_its_piece() -> None:
     for at in range(2, len(LINE) + 1):
         root = read(check_page(answer(changes=[change(at, "a", "Sultânîyegâh")])))
@@ -411,6 +460,7 @@ def test_a_line_without_notes_has_a_page_without_a_drawing() -> None:
     root = read(check_page(empty))
     assert not root.all("svg", class_="piece")
     assert "no notes" in root.one("header").text
+    assert [one["id"] for one in root.all("section")] == ["answer", "read", "how"]
 
 
 # --- where things stand
@@ -492,7 +542,7 @@ def test_off_notes_are_listed_with_what_mends_them() -> None:
     row = read(check_page(answer())).one(id="off-notes").one("tbody").one("tr")
     assert [cell.text for cell in row.inside if isinstance(cell, Element)] == [
         "10",
-        "bar 3, beat 2 (line 5, column 4)",
+        "bar 3, beat 2",
         "nim hicaz (C#5)",
         "Not in Hüseynî, 4 commas above çargâh",
         "çargâh (C5)",
@@ -504,7 +554,7 @@ def test_off_notes_are_listed_with_what_mends_them() -> None:
     )
 
 
-def test_changes_are_listed_with_where_and_how_sure() -> None:
+def test_changes_are_listed_with_where_how_sure_and_where_noticed() -> None:
     row = (
         read(check_page(answer(changes=[change(9, "Hüseynî", "Nevâ")])))
         .one(id="changes")
@@ -514,23 +564,22 @@ def test_changes_are_listed_with_where_and_how_sure() -> None:
     cells = [cell.text for cell in row.inside if isinstance(cell, Element)]
     assert cells == [
         "9",
-        "bar 3, beat 1 (line 5, column 1)",
-        "Hüseynî → Nevâ",
-        "64 %",
-        "From Hüseynî to Nevâ",
+        "bar 3, beat 1",
+        "Turns from Hüseynî to Nevâ, 64 %",
+        "12",
     ]
+    sudden = change(9, "Hüseynî", "Nevâ") | {"noticed_at": None}
+    heads = read(check_page(answer(changes=[sudden]))).one(id="changes").one("thead").all("th")
+    assert [one.text for one in heads] == ["note", "where", "the line"]
     assert read(check_page(answer())).one(id="changes").text == "Changes of modeNone was heard."
 
 
 def test_steps_heard_and_owed_have_signs_and_places() -> None:
     section = read(check_page(answer())).one(id="steps")
     heard, owed = section.one("ul", class_="heard"), section.one("ul", class_="owed")
-    assert (
-        heard.text
-        == "✓Final cadence on dügâhsegâh dügâh (B4-1 A4)core · note 16, bar 4, beat 4 (line 6, column 10)"
-    )
+    assert heard.text == "✓Final cadence on dügâhsegâh dügâh (B4-1 A4)core · note 16, bar 4, beat 4"
     assert [one.text[0] for one in owed.all("li")] == ["○", "+"]
-    assert "+0.8 nats" in owed.text
+    assert [one.text for one in owed.all("span", class_="quiet")] == ["core", "welcome, not owed"]
 
 
 def test_a_stretch_without_steps_says_so() -> None:
@@ -540,29 +589,64 @@ def test_a_stretch_without_steps_says_so() -> None:
     assert "Owed, the best to play next firstNothing." in text
 
 
-def test_the_steps_of_many_stretches_are_folded_and_those_of_a_few_are_not() -> None:
+def two_modes() -> dict[str, Any]:
+    """Give the answer of a line that turns, with no target."""
+    return answer(
+        stretches=[stretch(1, 8, "Hüseynî"), stretch(9, 16, "Hicaz") | {"decided": False}],
+        changes=[family_change(9, "Hüseynî", "Hicaz", "hicaz family")],
+    )
+
+
+def test_without_a_target_steps_and_course_are_those_of_each_stretch() -> None:
+    root = read(check_page(two_modes()))
+    for section in ("steps", "course"):
+        assert [one.text for one in root.one(id=section).all("summary") if one.all("h3")] == [
+            "Hüseynî on dügâh (A4), bars 1–2",
+            "Hicaz on dügâh (A4), bars 3–4 (the likeliest, not decided)",
+        ]
+
+
+def test_with_a_target_steps_and_course_are_those_of_the_target_over_the_whole_line() -> None:
+    one = two_modes()
+    one["in_view"] = one["in_view"] | {"is_target": True, "name": "Nevâ"}
+    one["course"] = course("Nevâ") | {"opening": {"agrees": False, "says": "not as Nevâ"}}
+    root = read(check_page(one))
+    for section in ("steps", "course"):
+        assert root.one(id=section).one("h3").text == "Nevâ on dügâh (A4), over the whole line"
+    assert "Not as Nevâ" in root.one(id="course").text
+
+
+def test_the_steps_and_courses_of_many_stretches_are_folded_and_told_in_short() -> None:
     for count, is_open in ((2, True), (4, False)):
         stretches = [stretch(4 * at + 1, 4 * at + 4, "Hüseynî") for at in range(count)]
-        parts = read(check_page(answer(stretches=stretches))).one(id="steps").all("details")
-        assert len(parts) == count
-        assert {"open" in part.attributes for part in parts} == {is_open}
-        assert parts[0].one("summary").text == "Notes 1 to 4: Hüseynî on dügâh (A4); 1 heard, 2 open"
+        changes = [change(one["first"], "Hüseynî", "Hüseynî") for one in stretches[1:]]
+        root = read(check_page(answer(stretches=stretches, changes=changes)))
+        for section, short in (
+            ("steps", "1 heard, 1 owed"),
+            ("course", "opening agrees, register cannot be told, cadence does not agree"),
+        ):
+            parts = [one for one in root.one(id=section).all("details") if one.all("h3")]
+            assert len(parts) == count
+            assert {"open" in part.attributes for part in parts} == {is_open}
+            first = parts[0].all("summary")[0].text
+            assert first == "Hüseynî on dügâh (A4), bar 1" + ("" if is_open else f": {short}")
 
 
 def test_the_course_says_what_agrees_in_the_words_of_the_trade() -> None:
     section = read(check_page(answer())).one(id="course")
-    assert section.one("h2").text == "Course (seyir) of Hüseynî"
+    assert section.one("h2").text == "Course (seyir)"
+    assert section.one("h3").text == "Hüseynî on dügâh (A4), over the whole line"
     assert [one.text for one in section.all("dt")] == [
         "opening: ✓ agrees",
-        "register: – says nothing",
+        "register: – cannot be told",
         "cadence: ✗ does not agree",
     ]
     assert [one.text for one in section.all("li")] == [
-        "hüseynî (E5), güçlü, note 8, bar 2, beat 4 (line 4, column 10)",
-        "dügâh (A4), note 16, bar 4, beat 4 (line 6, column 10)",
+        "hüseynî (E5), güçlü, note 8, bar 2, beat 4",
+        "dügâh (A4), note 16, bar 4, beat 4",
     ]
-    bare = answer()["course"] | {"phrase_ends": []}
-    assert not read(check_page(answer(course=bare))).one(id="course").all("li")
+    bare = stretch(1, 16, "Hüseynî") | {"course": course("Hüseynî") | {"phrase_ends": []}}
+    assert not read(check_page(answer(stretches=[bare]))).one(id="course").all("li")
 
 
 def test_what_speaks_for_each_mode_is_counted_upwards_under_its_name() -> None:
@@ -571,6 +655,9 @@ def test_what_speaks_for_each_mode_is_counted_upwards_under_its_name() -> None:
         "+1.3 You rested on hüseynî (note 8)",
         "+0.4 You passed through nevâ (notes 4–6, 9)",
     ]
+    assert section.one("h2").text == "The closest rival to Hüseynî: Nevâ, 20 %"
+    assert section.text.count("doubles the odds") == 1
+    assert "doubles the odds" not in read(check_page(answer())).one(id="steps").text
     assert "No other mode comes near." in read(check_page(answer(rival=None))).one(id="rival").text
     bare = answer()["rival"] | {
         "for_rival": [],
@@ -579,12 +666,26 @@ def test_what_speaks_for_each_mode_is_counted_upwards_under_its_name() -> None:
     text = read(check_page(answer(rival=bare))).one(id="rival").text
     assert "Nothing of weight." in text
     assert "+1.0 It is met more oftenWhat" in text
+    light = answer()["rival"] | {"for_rival": [], "for_leader": []}
+    assert "doubles the odds" not in read(check_page(answer(rival=light))).one(id="rival").text
+
+
+def test_a_target_that_trails_is_the_one_for_which_reasons_speak() -> None:
+    one = answer(rival=answer()["rival"] | {"mode": "makam/huseyni", "name": "Hüseynî", "probability": 0.72})
+    one["in_view"] = one["in_view"] | {"is_target": True, "mode": "makam/neva", "name": "Nevâ"}
+    section = read(check_page(one)).one(id="rival")
+    assert section.one("h2").text == "Nevâ against the likeliest: Hüseynî, 72 %"
+    assert [head.text for head in section.all("h3")] == ["What speaks for Nevâ", "What speaks for Hüseynî"]
+    assert section.all("ul")[0].text == "+1.3 You rested on hüseynî (note 8)"
 
 
 def test_phrases_and_bars_tell_what_fits() -> None:
     root = read(check_page(answer()))
     rows = root.one(id="phrases").one("tbody").all("tr")
-    assert [[cell.text for cell in row.all("td")][-2:] for row in rows] == [["✓ yes", ""], ["✗ no", "10"]]
+    assert [[cell.text for cell in row.all("td")][-2:] for row in rows] == [
+        ["✓ Fits Hüseynî", ""],
+        ["✗ 1 note off the mode", "10"],
+    ]
     assert [row.one("th").text for row in root.one(id="bars").one("tbody").all("tr")] == ["1", "2", "3", "4"]
     assert [row.all("td")[0].text for row in rows] == ["1–8", "9–16"]
 
@@ -594,7 +695,9 @@ def test_a_long_list_of_phrases_is_folded() -> None:
     assert "open" not in read(check_page(answer(phrases=spans))).one(id="phrases").attributes
     assert "open" in read(check_page(answer())).one(id="phrases").attributes
     one = answer()["phrases"][0] | {"first": 3, "last": 3}
-    assert read(check_page(answer(phrases=[one]))).one(id="phrases").one("tbody").all("td")[0].text == "3"
+    rows = read(check_page(answer(phrases=[one, one]))).one(id="phrases").one("tbody")
+    assert rows.all("td")[0].text == "3"
+    assert not read(check_page(answer(phrases=[one]))).all(id="phrases"), "one phrase is the line itself"
 
 
 def test_the_ladder_is_a_table_too_high_above_low() -> None:
@@ -618,7 +721,8 @@ def test_all_notes_are_a_table_with_what_the_chart_shows() -> None:
     rows = root.one(id="notes").one("tbody").all("tr")
     assert [row["id"] for row in rows] == [f"row-{n}" for n in range(1, len(LINE) + 1)]
     assert [cell.text for cell in rows[OFF - 1].all("td")] == [
-        "bar 3, beat 2 (line 5, column 4)",
+        "bar 3, beat 2",
+        "line 5, column 4",
         "nim hicaz",
         "C#5",
         "0.7 s",
@@ -721,7 +825,7 @@ def test_the_list_gives_the_error_of_a_file_with_all_its_faults() -> None:
                 "stays": False,
                 "first": {"note": 3, "place": {"bar": "1", "beat": 3.0, "at": ""}},
             },
-            "✗ leaves Rast with note 3, bar 1, beat 3",
+            "✗ leaves Rast at bar 1, beat 3",
         ),
     ],
 )

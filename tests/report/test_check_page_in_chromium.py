@@ -148,7 +148,8 @@ def test_arrow_keys_go_from_note_to_note_and_the_numbers_are_shown(browser: Brow
     page.press("ArrowDown")
     assert page.ask(SHOWN) == {
         "note": str(OFF),
-        "where": "bar 3, beat 2 (line 5, column 4)",
+        "where": "bar 3, beat 2",
+        "in the file": "line 5, column 4",
         "name": "nim hicaz",
         "written": "C#5",
         "length": "0.7 s",

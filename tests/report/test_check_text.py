@@ -7,14 +7,29 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import pytest
-from page_answers import OFF, WORDS, answer, change, note, pitch, span, step, stretch, where
+from page_answers import (
+    OFF,
+    WORDS,
+    answer,
+    change,
+    course,
+    family_change,
+    note,
+    open_change,
+    pitch,
+    span,
+    step,
+    stretch,
+    where,
+)
 from sheets import sheet_of
 
+from melodycoach.core.cells import width
 from melodycoach.core.check import check_sheet
 from melodycoach.core.model import build_model
 from melodycoach.report.check_data import answer_json
 from melodycoach.report.check_text import check_text, failed_text
-from melodycoach.report.text_lines import SGR, cells
+from melodycoach.report.text_lines import SGR
 from melodycoach.sources.pack_file import load_pack
 
 if TYPE_CHECKING:
@@ -24,8 +39,8 @@ GOLDEN = Path(__file__).parent / "golden"
 PACK = load_pack("makam")
 MODEL = build_model(PACK, PACK.modes)
 
-VIEW = answer()["in_view"] | {"steps": stretch(1, 16, "Hüseynî")["steps"]}
-PLAIN = answer(in_view=VIEW)
+PLAIN = answer()
+VIEW = PLAIN["in_view"]
 TURNED = answer(
     in_view=VIEW | {"is_target": True},
     stay_in={
@@ -34,17 +49,13 @@ TURNED = answer(
         "stays": False,
         "first": {"note": OFF, "place": where(OFF), "says": "nim hicaz is not in Hüseynî"},
     },
-    stretches=[
-        stretch(1, 8, "Hüseynî") | {"mode": "makam/huseyni"},
-        stretch(9, 16, "Hicaz") | {"decided": False, "verdict": "undecided between Hicaz and Hümâyun"},
-    ],
-    changes=[change(9, "Hüseynî", "Hicaz")],
+    stretches=[stretch(1, 8, "Hüseynî"), stretch(9, 16, "Hicaz") | {"decided": False}],
+    changes=[open_change(9, "Hüseynî", "Hicaz")],
     lost=["bar 5 has a bad key signature: passed over"],
     tempo=None,
 )
 EMPTY = answer(
     bars=False,
-    in_view=VIEW,
     title="",
     n_notes=0,
     notes=[],
@@ -55,7 +66,12 @@ EMPTY = answer(
     rival=None,
     whole=answer()["whole"] | {"verdict": "no notes: there is nothing to check", "decided": False},
 )
-SAMPLES = {"plain": PLAIN, "turned": TURNED, "empty": EMPTY, "no-bars": answer(bars=False, in_view=VIEW)}
+PARTED = TURNED | {
+    "in_view": VIEW,
+    "stay_in": None,
+    "changes": [family_change(9, "Hüseynî", "Hicaz", "hicaz family")],
+}
+SAMPLES = {"plain": PLAIN, "turned": TURNED, "parted": PARTED, "empty": EMPTY, "no-bars": answer(bars=False)}
 
 
 def squeezed(text: str) -> str:
@@ -88,7 +104,7 @@ def test_an_answer_looks_as_designed(
 @pytest.mark.parametrize("name", sorted(SAMPLES))
 def test_no_line_is_wider_than_asked_for_or_ends_in_a_space(name: str, columns: int) -> None:
     lines = check_text(SAMPLES[name], columns).split("\n")
-    assert max(map(cells, lines)) <= columns
+    assert max(map(width, lines)) <= columns
     assert not [line for line in lines if line != line.rstrip()]
 
 
@@ -169,18 +185,19 @@ def test_the_file_stands_for_a_title_that_is_missing() -> None:
 @pytest.mark.parametrize(
     ("firsts", "says"),
     [
-        ((), "Leaning to Hüseynî, 72 %. Next"),
-        ((3,), "it changes mode once: Rast, then Hicaz. Next"),
-        ((3, 6), "it changes mode 2 times: Rast, then Hicaz, then Hicaz. Next"),
-        ((3, 5, 7, 9, 11), "it changes mode 5 times. Next"),
+        ((), "Leaning to Rast, 72 %. Next likeliest:"),
+        ((3,), "It changes mode once: Rast, then Hicaz. Next likeliest:"),
+        ((3, 6), "It changes mode 2 times: Rast, then Hicaz, then Hicaz. Next likeliest:"),
+        ((3, 5, 7, 9, 11), "It changes mode 5 times. Next likeliest:"),
     ],
 )
 def test_how_often_the_mode_changes_is_said_with_the_verdict(firsts: tuple[int, ...], says: str) -> None:
     text = said(
+        whole=PLAIN["whole"] | {"mode": "makam/Rast", "name": "Rast", "verdict": "leaning to Rast, 72 %"},
         stretches=[stretch(1, 2, "Rast"), *(stretch(first, first + 1, "Hicaz") for first in firsts)],
         changes=[change(first, "Rast", "Hicaz") for first in firsts],
     )
-    assert (f"As a whole leaning to Hüseynî, 72 %; {says}" if firsts else says) in text
+    assert (f"As a whole leaning to Rast, 72 %. {says}" if firsts else says) in text
 
 
 def test_a_target_that_leads_that_trails_and_that_does_not_compete_are_told_apart() -> None:
@@ -200,7 +217,7 @@ def test_an_undecided_line_names_the_likeliest_modes_with_the_first() -> None:
 
 def test_a_line_with_one_mode_that_competes_names_no_other() -> None:
     whole = PLAIN["whole"] | {"leanings": PLAIN["whole"]["leanings"][:1]}
-    assert "Next:" not in said(whole=whole)
+    assert "Next likeliest" not in said(whole=whole)
 
 
 def test_a_line_without_wrong_notes_is_told_so() -> None:
@@ -211,6 +228,9 @@ def test_a_line_without_wrong_notes_is_told_so() -> None:
     text = said(notes=clean, off_notes=[], stretches=stretches)
     assert "No note lies outside the mode of its stretch." in text
     assert "Notes off the mode" not in text
+    open_ = PLAIN["whole"] | {"decided": False}
+    assert "No note lies outside Hüseynî, the likeliest." in said(notes=clean, off_notes=[], whole=open_)
+    assert "1 note lies outside Hüseynî." in said()
 
 
 def test_what_was_lost_is_pointed_at_from_the_top_and_said_at_the_end() -> None:
@@ -219,32 +239,51 @@ def test_what_was_lost_is_pointed_at_from_the_top_and_said_at_the_end() -> None:
     assert "Not all of the file" not in said()
 
 
+def test_a_line_that_as_one_leans_where_no_stretch_does_is_told_so() -> None:
+    parted = {
+        "stretches": [stretch(1, 8, "Rast"), stretch(9, 16, "Hicaz")],
+        "changes": [change(9, "Rast", "Hicaz")],
+    }
+    says = "Taken as one, the line is leaning to Hüseynî, 72 %; its stretches lean to Rast and Hicaz."
+    assert says in said(**parted)
+    among = PLAIN["whole"] | {"verdict": "undecided between Hüseynî and Rast"}
+    assert "As a whole undecided between" in said(
+        whole=among | {"among": ["makam/huseyni", "makam/Rast"]}, **parted
+    )
+    many = [stretch(first, first + 1, name) for first, name in enumerate("abcde", 1)]
+    assert "; its stretches lean to others." in said(stretches=many, changes=[change(2, "a", "b")])
+
+
+def test_changes_that_are_not_clear_are_not_told_as_if_they_were() -> None:
+    stretches = [stretch(1, 4, "Hüseynî"), stretch(5, 8, "Rast"), stretch(9, 16, "Hicaz")]
+    unsure = [open_change(5, "Hüseynî", "Rast"), open_change(9, "Rast", "Hicaz")]
+    path = "Hüseynî, then Rast, then Hicaz."
+    assert f"It may change mode 2 times: {path}" in said(stretches=stretches, changes=unsure)
+    mixed = [unsure[0], family_change(9, "Rast", "Hicaz", "hicaz family")]
+    path = "Hüseynî, then Rast, then the hicaz family."
+    assert f"It changes mode 2 times, 1 of them clear: {path}" in said(stretches=stretches, changes=mixed)
+
+
 # --- changes, wrong notes
 
 
-def test_a_change_that_is_not_decided_may_be_one() -> None:
+def test_a_change_is_told_with_the_note_at_which_a_listener_notices_it() -> None:
     text = squeezed(check_text(TURNED))
     assert (
-        "bar 3, beat 1 may turn from Hüseynî to Hicaz, 64 % (undecided between Hicaz and Hümâyun); "
+        "bar 3, beat 1 may turn from Hüseynî to Hicaz, 64 % (undecided between Hicaz and Sabâ); "
         "a listener notices it at bar 3, beat 4" in text
     )
-
-
-def test_a_change_that_is_decided_is_one() -> None:
-    sure = [stretch(1, 8, "Hüseynî"), stretch(9, 16, "Hicaz")]
-    text = said(stretches=sure, changes=[change(9, "Hüseynî", "Hicaz") | {"noticed_at": None}])
-    assert "bar 3, beat 1 turns from Hüseynî to Hicaz, 64 %" in text
-    assert "notices" not in text
+    one = change(9, "Hüseynî", "Hicaz") | {"noticed_at": None}
+    assert "notices" not in said(stretches=TURNED["stretches"], changes=[one])
 
 
 def test_of_many_changes_each_is_told_in_short() -> None:
     firsts = range(3, 15, 2)
-    unsure = [stretch(first, first + 1, "Hicaz") | {"decided": False} for first in firsts]
     text = said(
-        stretches=[stretch(1, 2, "Rast"), *unsure],
+        stretches=[stretch(1, 2, "Rast"), *(stretch(first, first + 1, "Hicaz") for first in firsts)],
         changes=[change(first, "Rast", "Hicaz") for first in firsts],
     )
-    assert "bar 1, beat 3 may turn from Rast to Hicaz, 64 % bar 2, beat 1 may turn" in text
+    assert "bar 1, beat 3 turns from Rast to Hicaz, 64 % bar 2, beat 1 turns" in text
 
 
 def test_a_wrong_note_is_told_with_its_place_and_what_mends_it() -> None:
@@ -283,11 +322,20 @@ def test_steps_are_heard_owed_or_welcome() -> None:
     assert owed < text.index("welcome, not owed") < welcome
 
 
-def test_a_target_is_told_for_the_whole_line_and_other_modes_for_their_stretches() -> None:
+def test_with_a_target_steps_and_course_are_those_of_the_target_over_the_whole_line() -> None:
     text = squeezed(check_text(TURNED))
-    assert "Hüseynî, over the whole line" in text
-    assert "Hicaz, bars 3–4" in text
-    assert "Hüseynî, bars" not in text
+    assert "Hüseynî, over the whole line heard" in text
+    assert "Course (seyir) beside that of Hüseynî" in text
+    assert "Hicaz, bars" not in text
+
+
+def test_without_a_target_steps_and_course_are_those_of_each_stretch() -> None:
+    text = squeezed(check_text(PARTED))
+    assert "heard and owed ------------------------------------ Hüseynî, bars 1–2 heard" in text
+    assert "Hicaz, bars 3–4 (the likeliest, not decided) heard" in text
+    seyir = text.partition("Course (seyir) of each stretch")[2]
+    assert "Hüseynî, bars 1–2 opening: agrees" in seyir
+    assert "Hicaz, bars 3–4 (the likeliest, not decided) opening: agrees" in seyir
 
 
 def test_pitches_without_names_of_their_own_are_written_once() -> None:
@@ -306,6 +354,7 @@ def test_the_steps_of_many_stretches_are_told_in_short() -> None:
     assert "Hicaz, bar 1 0 heard; owed: one on dügâh; two on dügâh; 2 more" in text
     assert "Hicaz, bar 1 0 heard; owed: nothing" in text
     assert "Hicaz, bar 2 1 heard; owed: half cadence on dügâh" in text
+    assert "Hicaz, bar 1 opening agrees; register cannot be told; cadence does not agree" in text
 
 
 def test_the_course_agrees_does_not_or_cannot_be_told() -> None:
@@ -319,8 +368,13 @@ def test_the_course_agrees_does_not_or_cannot_be_told() -> None:
 
 def test_phrase_ends_that_are_alike_are_counted() -> None:
     end = {"note": 8, "place": where(8), "pitch": pitch("hüseynî"), "function": "güçlü"}
-    assert "phrases end on hüseynî (güçlü) 3×" in said(course=PLAIN["course"] | {"phrase_ends": [end] * 3})
-    assert "phrases end on" not in said(course=PLAIN["course"] | {"phrase_ends": [end]})
+
+    def ending(*ends: dict[str, Any]) -> str:
+        one = stretch(1, 16, "Hüseynî") | {"course": course("Hüseynî") | {"phrase_ends": list(ends)}}
+        return said(stretches=[one])
+
+    assert "phrases end on hüseynî (güçlü) 3×" in ending(end, end, end)
+    assert "phrases end on" not in ending(end)
 
 
 def test_a_trade_without_a_word_for_course_has_none_beside_it() -> None:
@@ -330,7 +384,8 @@ def test_a_trade_without_a_word_for_course_has_none_beside_it() -> None:
 
 def test_reasons_stand_under_the_mode_that_they_speak_for_with_their_bars() -> None:
     text = said()
-    assert "The closest rival: Nevâ, 20 %" in text
+    assert "The closest rival to Hüseynî: Nevâ, 20 %" in text
+    assert "The closest rival to Hüseynî, over the whole line: Nevâ, 20 %" in squeezed(check_text(PARTED))
     assert "for Hüseynî +1.3 you rested on hüseynî (bar 2)" in text
     assert "for Nevâ +0.4 you passed through nevâ (bars 1–3)" in text
 
@@ -339,6 +394,18 @@ def test_a_side_for_which_nothing_speaks_is_named_too() -> None:
     assert "for Nevâ: nothing of weight" in said(rival=PLAIN["rival"] | {"for_rival": []})
     repertoire = {"says": "it is met more often", "nats": 1.2, "notes": []}
     assert "+1.2 it is met more often for Nevâ" in said(rival=PLAIN["rival"] | {"for_leader": [repertoire]})
+
+
+def test_reasons_that_weigh_little_or_are_many_are_left_out_and_the_numbers_explained_once() -> None:
+    light = {"says": "a little", "nats": -0.1, "notes": []}
+    text = said(rival=PLAIN["rival"] | {"for_rival": [light]})
+    assert "for Nevâ: nothing of weight A number says how strongly a reason speaks" in text
+    assert text.count("0.7 doubles the odds") == 1
+    assert "doubles the odds" not in said(rival=PLAIN["rival"] | {"for_leader": [], "for_rival": [light]})
+    many = [{"says": f"reason {at}", "nats": 1.0, "notes": []} for at in range(9)]
+    text = said(rival=PLAIN["rival"] | {"for_leader": many})
+    assert "reason 4" in text
+    assert "reason 5" not in text
 
 
 def test_a_target_that_trails_is_held_against_the_mode_that_leads() -> None:
@@ -357,43 +424,42 @@ def bars(*kinds: dict[str, Any]) -> list[dict[str, Any]]:
     return [span(1, 4, True, bar=str(at), off_notes=[], fits=True) | kind for at, kind in enumerate(kinds, 1)]
 
 
-def test_bars_in_a_row_that_say_the_same_are_joined() -> None:
-    open_ = {"decided": False}
-    rows = bars({}, {}, open_, open_ | {"name": "Nevâ"}, open_, {"name": "Hicaz", "fits": False})
-    text = said(bars=rows)
-    assert "bars 1–2 leaning to Hüseynî bars 3–5 undecided; nearest Hüseynî, Nevâ bar 6" in text
-    assert "bar 6 leaning to Hicaz; does not fit Hüseynî" in text
-
-
-def test_of_many_nearest_modes_the_commonest_are_named() -> None:
-    names = ["Rast", "Nevâ", "Segâh", "Hicaz", "Hicaz"]
-    rows = bars(*({"decided": False, "name": name} for name in names))
-    assert "bars 1–5 undecided; nearest Hicaz, Rast, Nevâ, …" in said(bars=rows)
+def test_bars_of_which_the_same_is_said_are_joined() -> None:
+    open_, other = {"decided": False}, {"name": "Hicaz"}
+    rows = bars({}, open_, open_ | {"name": "Nevâ"}, other, other | {"fits": False})
+    assert (
+        "bars 1–3 fit Hüseynî bar 4 fits Hüseynî; by itself leaning to Hicaz, 61 % "
+        "bar 5 does not fit Hüseynî; by itself leaning to Hicaz, 61 %" in said(bars=rows)
+    )
+    rows = bars(other, other, other | {"fits": False}, other | {"fits": False})
+    assert (
+        "bars 1–2 fit Hüseynî; by themselves leaning to Hicaz "
+        "bars 3–4 do not fit Hüseynî; by themselves leaning to Hicaz " in said(bars=rows)
+    )
 
 
 def test_notes_off_the_mode_are_counted_over_the_joined_bars() -> None:
     off = {"fits": False, "off_notes": [1, 2]}
-    assert "bars 1–2 leaning to Hüseynî; 4 notes off the mode" in said(bars=bars(off, off))
+    assert "bars 1–2 4 notes off the mode" in said(bars=bars(off, off))
+    assert "bar 1 2 notes off the mode; by itself leaning to Hicaz, 61 %" in said(
+        bars=bars(off | {"name": "Hicaz"})
+    )
 
 
-def test_with_a_change_every_span_says_which_mode_it_fits() -> None:
-    stretches = [stretch(1, 8, "Hüseynî"), stretch(9, 16, "Hicaz")]
-    text = said(stretches=stretches, bars=bars({}, {"stretch_mode": "Hicaz"}))
-    assert "bar 1 leaning to Hüseynî; fits Hüseynî bar 2 leaning to Hüseynî; fits Hicaz" in text
+def test_without_a_target_every_span_is_held_against_the_mode_of_its_stretch() -> None:
+    text = said(bars=bars({}, {"stretch_mode": "Hicaz", "name": "Hicaz"}))
+    assert "bar 1 fits Hüseynî bar 2 fits Hicaz" in text
 
 
 def test_with_a_target_spans_are_held_against_the_target() -> None:
-    text = squeezed(check_text(TURNED | {"bars": bars({"stretch_mode": "Hicaz", "fits": False})}))
-    assert "bar 1 leaning to Hüseynî; does not fit Hüseynî" in text
+    aimed = {"stretch_mode": "Hicaz", "name": "Hicaz", "fits": False}
+    text = squeezed(check_text(TURNED | {"bars": bars(aimed)}))
+    assert "bar 1 does not fit Hüseynî; by itself leaning to Hicaz, 61 %" in text
 
 
-def test_few_phrases_are_told_one_by_one_and_many_by_what_they_share() -> None:
-    few = [span(1, 8, True), span(9, 16, True)]
-    assert "bars 1–2 leaning to Hüseynî, 61 % bars 3–4 leaning to Hüseynî, 61 %; 1 note off the mode" in said(
-        phrases=few
-    )
-    many = [span(1, 8, True) for _ in range(25)]
-    assert "bars 1–2 25 phrases: leaning to Hüseynî Bar by bar" in said(phrases=many)
+def test_phrases_of_which_the_same_is_said_are_counted() -> None:
+    phrases = [span(1, 4, True), span(5, 8, True), span(9, 16, True)]
+    assert "bars 1–2, 2 phrases fit Hüseynî bars 3–4 1 note off the mode" in said(phrases=phrases)
 
 
 def test_a_single_phrase_is_not_told_apart_from_the_line() -> None:
@@ -449,7 +515,7 @@ LINE = (
 @pytest.mark.parametrize("columns", [40, 80])
 def test_real_answers_can_be_written(text: str, aim: str, stay: bool, columns: int) -> None:
     lines = check_text(real(text, aim, stay), columns).split("\n")
-    assert max(map(cells, lines)) <= columns
+    assert max(map(width, lines)) <= columns
 
 
 def test_three_wrong_notes_are_the_ones_that_are_reported() -> None:
@@ -468,4 +534,6 @@ def test_three_wrong_notes_are_the_ones_that_are_reported() -> None:
 
 
 def test_a_line_that_turns_says_where() -> None:
-    assert re.search(r"bar 7, beat 1  (may turn|turns) from Hüseynî to Hicaz", check_text(real(LINE)))
+    assert re.search(
+        r"bar 7, beat 1  turns from Hüseynî to (the hicaz family|Hicaz,)", check_text(real(LINE))
+    )

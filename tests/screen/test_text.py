@@ -12,7 +12,6 @@ from melodycoach.screen.text import (
     pad,
     pad_left,
     plain_text,
-    tidy,
     tidy_lines,
     to_ascii,
     width,
@@ -23,27 +22,10 @@ TEXTS = st.text(st.characters(exclude_categories=["Cs"]), max_size=40)
 COLUMNS = st.integers(0, 30)
 
 
-def test_turkish_letters_are_one_cell_composed_or_not() -> None:
-    assert width("Sûzinâk İşgğı") == 13
-    assert width("dügâh") == 5  # u + diaeresis, a + circumflex
-
-
-def test_wide_letters_are_two_cells() -> None:
-    assert width("音楽") == 4  # Unicode: East Asian Width W
-
-
 def test_a_wide_letter_is_not_cut_in_half() -> None:
     assert cut("音楽音", 4) == "音…"
     assert pad("音楽音", 4) == "音… "
     assert plain_text(fit([("", "音楽音")], 4)) == "音… "
-
-
-def test_line_ends_tabs_and_control_characters_cannot_reach_the_screen() -> None:
-    assert tidy("a\r\nb\tc\x1b[31m\x9b\u202e") == "a  b c?[31m?"
-
-
-def test_decomposed_letters_are_composed() -> None:
-    assert tidy("dügâh") == "dügâh"
 
 
 def test_ascii_keeps_the_letters_under_the_marks() -> None:
@@ -80,13 +62,6 @@ def test_no_cut_text_is_too_wide(text: str, columns: int) -> None:
 @given(st.lists(st.tuples(st.just("s"), TEXTS), max_size=4), COLUMNS)
 def test_a_fitted_line_is_exactly_as_wide_as_asked(line: list[tuple[str, str]], columns: int) -> None:
     assert line_width(fit(line, columns)) == columns
-
-
-@given(TEXTS)
-def test_tidy_text_prints_and_stays_tidy(text: str) -> None:
-    once = tidy(text)
-    assert once.isprintable()
-    assert tidy(once) == once
 
 
 @given(TEXTS)

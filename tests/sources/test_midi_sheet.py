@@ -18,7 +18,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 from midi_bytes import chord, midi, name, note, notes, tempo, track
 
-from melodycoach.core.note import InputKind, Mark, Note
+from melodycoach.core.note import InputKind, Mark, Note, Silence
 from melodycoach.core.sheet import Place, Sheet, SheetKind
 from melodycoach.errors import MelodycoachError, UsageError
 from melodycoach.sources.midi_sheet import read_midi
@@ -26,6 +26,7 @@ from melodycoach.sources.midi_sheet import read_midi
 COMMA = 1200 / 53
 TWO_FOUR = "00 FF 58 04 02 02 18 08"
 BEND_A_COMMA_DOWN = "00 E0 61 38"  # at two semitones: 0x61 + 128 * 0x38 = 7265, 927 below the middle
+OFF = "07 B0 07 64"  # a volume, seven ticks late: what follows is off the beats, as if it were played
 RANGE_12 = "00 B0 65 00 00 B0 64 00 00 B0 06 0C"
 
 
@@ -51,10 +52,10 @@ def test_a_melody_is_read() -> None:
     assert sheet == Sheet(
         kind=SheetKind.MIDI,
         items=(
-            Note(6900, 0, 1, keys),
-            Note(7100, 1, 1, keys),
+            Note(6900, 0, 1, keys, beats=1),
+            Note(7100, 1, 1, keys, beats=1),
             Mark.BAR,
-            Note(7200, 2, 1, keys),
+            Note(7200, 2, 1, keys, beats=1),
             Mark.PHRASE_END,
         ),
         places=(Place("1", 1, "0:00.0"), Place("1", 2, "0:01.0"), Place("2", 1, "0:02.0")),
@@ -63,15 +64,32 @@ def test_a_melody_is_read() -> None:
         says=(
             "took track 2 'Ney' (channel 1, 3 notes) of 2 tracks: the only one with notes that are no drums",
             "plain keys: no bend or tuning moves a note, so each key stands for every pitch near it",
+            "its notes lie on the beats, as written: one beat is a quarter note, the usual note of the line",
         ),
     )
 
 
+def test_what_was_played_has_seconds_and_no_beats() -> None:
+    sheet = read(track(tempo(960_000), OFF, notes(69, 71)))  # a tick is 2 ms
+    keys = InputKind.KEYS
+    assert sheet.items == (Note(6900, 0.014, 0.96, keys), Note(7100, 0.974, 0.96, keys), Mark.PHRASE_END)
+    assert sheet.tempo == 62.5
+    assert sheet.says[2] == "its notes lie off the beats, as played: lengths are taken in seconds"
+
+
 def test_a_tempo_change_is_followed() -> None:
     # 120 a minute for one quarter, then 60
-    sheet = read(track(notes(69), tempo(1_000_000), notes(71)))
+    sheet = read(track(tempo(500_000), notes(69), tempo(1_000_000), notes(71)))
     assert spans(sheet) == [(0, 0.5), (0.5, 1)]
-    assert sheet.tempo == 60  # the first that the file gives
+    assert [one.beats for one in line(sheet)] == [1, 1]
+
+
+def test_the_tempo_is_that_in_force_when_the_first_note_sounds() -> None:
+    # two at one tick, the last of which holds; then another, later
+    assert read(track(tempo(500_000), tempo(600_000), notes(69), tempo(1_000_000), notes(71))).tempo == 100
+    assert read(track(notes(69), tempo(1_000_000), notes(71))).tempo is None
+    # a beat is an eighth
+    assert read(track(tempo(500_000), notes(69, 71, ticks=240))).tempo == 240
 
 
 def test_without_a_tempo_none_is_given() -> None:
@@ -98,6 +116,7 @@ def test_without_a_time_signature_there_are_no_bar_lines() -> None:
 def test_one_bar_line_stands_before_a_note_however_many_bars_are_empty() -> None:
     # a bar of 2/4 is 960 ticks; the second note begins in the fourth bar, 2.5 s after the first ends
     sheet = read(track(TWO_FOUR, note(69), note(71, wait=2400)))
+    assert sheet.items[1:3] == (Silence(2.5, beats=5), Mark.PHRASE_END)  # 2,400 ticks are five quarters
     assert [item for item in sheet.items if isinstance(item, Mark)] == [
         Mark.PHRASE_END,
         Mark.BAR,
@@ -111,9 +130,10 @@ def test_minutes_are_counted() -> None:
     assert read(track(note(69, wait=125 * 480 + 240))).places[0].at == "1:02.8"
 
 
-def test_the_line_ends_with_a_phrase_end_and_nothing_after() -> None:
+@pytest.mark.parametrize("before", ["", OFF])
+def test_the_line_ends_with_a_phrase_end_and_nothing_after(before: str) -> None:
     # C5 is the melody; A4 under it hangs until the track ends, three seconds after C5
-    sheet = read(track("00 90 45 40 00 90 48 40", "83 60 80 48 40", "96 40 B0 07 40"))
+    sheet = read(track(before, "00 90 45 40 00 90 48 40", "83 60 80 48 40", "96 40 B0 07 40"))
     assert pitches(sheet) == [7200]
     assert sheet.items[-1] is Mark.PHRASE_END
     assert isinstance(sheet.items[-2], Note)
@@ -155,7 +175,7 @@ def test_a_grace_note_whose_release_is_written_first_is_left_out() -> None:
     sheet = read(track(grace, notes(72, 71)))
     assert pitches(sheet) == [6900, 7200, 7100]
     assert spans(sheet) == [(0, 0.5), (0.5, 0.5), (1, 0.5)]
-    assert sheet.says[2] == "1 note without length, as grace notes are, left out"
+    assert sheet.says[3] == "1 note without length, as grace notes are, left out"
 
 
 def test_a_key_whose_release_is_missing_ends_with_the_next_one() -> None:
@@ -177,7 +197,7 @@ def test_the_top_of_a_chord_is_the_melody_and_stands_where_it_was_struck() -> No
 
 
 def test_bends_are_read_in_their_usual_range() -> None:
-    sheet = read(track(BEND_A_COMMA_DOWN, notes(64)))
+    sheet = read(track(BEND_A_COMMA_DOWN, OFF, notes(64)))
     [one] = line(sheet)
     assert one.pitch_cents == pytest.approx(6400 - COMMA, abs=0.02)
     assert one.kind is InputKind.TUNED
@@ -188,13 +208,13 @@ def test_bends_are_read_in_their_usual_range() -> None:
 
 def test_a_bend_range_in_another_track_holds() -> None:
     # at 12 semitones: 0x65 + 128 * 0x3E = 8037, 155 below the middle: -155 / 8192 * 1200 = -22.7
-    sheet = read(track(RANGE_12), track("00 E0 65 3E", notes(64)))
+    sheet = read(track(RANGE_12), track("00 E0 65 3E", OFF, notes(64)))
     assert pitches(sheet) == [6377.3]
     assert sheet.says[1] == "pitch bends are read with a range of ±12 semitones"
 
 
 def test_a_setup_in_a_later_track_holds_from_its_tick() -> None:
-    sheet = read(track("00 E0 65 3E", notes(64, 65)), track("83 60 B0 65 00 00 B0 64 00 00 B0 06 0C"))
+    sheet = read(track("00 E0 65 3E", OFF, notes(64, 65)), track("83 67 B0 65 00 00 B0 64 00 00 B0 06 0C"))
     # -155 / 8192 * 200 = -3.8 until the second note
     assert pitches(sheet)[1] == 6477.3
 
@@ -209,14 +229,14 @@ def test_the_bends_of_another_part_on_the_same_channel_are_its_own() -> None:
 def test_a_tuning_message_in_any_track_is_read() -> None:
     # MIDI Tuning Standard, octave form of one byte: every E 23 cents lower, on all channels
     sysex = "00 F0 14 7E 7F 08 08 03 7F 7F 40 40 40 40 29 40 40 40 40 40 40 40 F7"
-    sheet = read(track(sysex), track(notes(64, 65)))
+    sheet = read(track(sysex), track(OFF, notes(64, 65)))
     assert pitches(sheet) == [6377, 6500]
     assert sheet.says[2] == "tuning messages were read: E -23 cents, in every octave"
 
 
 def test_a_tuning_message_for_one_key_is_told() -> None:
     # MIDI Tuning Standard, single-note change: E4 to 3F 63 02, -22.644 cents
-    sheet = read(track("00 F0 0B 7F 7F 08 02 00 01 40 3F 63 02 F7", notes(64, 76)))
+    sheet = read(track("00 F0 0B 7F 7F 08 02 00 01 40 3F 63 02 F7", OFF, notes(64, 76)))
     assert pitches(sheet) == [6377.4, 7600]
     assert sheet.says[2] == "tuning messages were read: they move 1 key of 128"
 
@@ -245,7 +265,7 @@ def test_damaged_tuning_messages_are_told_as_lost() -> None:
 def test_an_mpe_zone_is_one_line_with_the_range_of_its_members() -> None:
     # RP-053: a member bends by 48 semitones; 0x59 + 128 * 0x3F = 8153, 39 below: -39 / 8192 * 4800 = -22.9
     zone = "00 B0 65 00 00 B0 64 06 00 B0 06 03"
-    first = "00 E1 59 3F 00 91 45 40 83 60 81 45 40"
+    first = "00 E1 59 3F 07 91 45 40 83 60 81 45 40"
     second = "00 E2 00 40 00 92 47 40 83 60 82 47 40"
     sheet = read(track(zone), track(first, second))
     assert pitches(sheet) == [6877.1, 7100]
@@ -262,7 +282,7 @@ def test_what_is_left_out_is_told() -> None:
         "highest, it has many notes, its name speaks of a melody; --track and --channel choose another, "
         "such as track 2 'Bas' (channel 1, 1 note)"
     )
-    assert sheet.says[2:4] == ("2 drum notes on channel 10 left out", "1 note of 1 other part left out")
+    assert sheet.says[3:5] == ("2 drum notes on channel 10 left out", "1 note of 1 other part left out")
 
 
 def test_a_track_and_a_channel_can_be_asked_for() -> None:
@@ -282,9 +302,12 @@ def test_a_channel_that_midi_does_not_have_is_refused(channel: int) -> None:
 def test_tracks_that_are_apart_do_not_mix() -> None:
     # format 2: neither the tempo nor the bend range of the first track holds for the second
     sheet = read(
-        track(tempo(1_000_000), RANGE_12), track(name("İkinci"), BEND_A_COMMA_DOWN, notes(64)), midi_format=2
+        track(tempo(1_000_000), RANGE_12),
+        track(name("İkinci"), BEND_A_COMMA_DOWN, OFF, notes(64)),
+        midi_format=2,
     )
-    assert (spans(sheet), sheet.tempo, sheet.title) == ([(0, 0.5)], None, "İkinci")
+    assert [length for _, length in spans(sheet)] == [0.5]
+    assert (sheet.tempo, sheet.title) == (None, "İkinci")
     assert pitches(sheet) == [6377.4]
 
 
@@ -375,7 +398,7 @@ def test_no_change_of_bytes_breaks_the_reader(
         data[place] = byte
     for mutated in (bytes(data), bytes(data[:length])):
         with suppress(MelodycoachError):
-            sheet = read_midi(mutated, "a.mid", asked, channel)
+            sheet = read_midi(mutated, "a.mid", track=asked, channel=channel)
             assert len(sheet.places) == len(line(sheet))
             assert sheet.items[-1] is Mark.PHRASE_END
             assert all(one.onset_s <= other.onset_s for one, other in pairwise(line(sheet)))

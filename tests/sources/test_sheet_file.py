@@ -54,6 +54,9 @@ def midi_file() -> bytes:
         ("A4".encode("utf-16"), SheetKind.NOTE_TEXT),  # it is refused as text, not as a score
         (b"MThd\0\0\0\6", SheetKind.MIDI),
         (b"RIFF\x10\0\0\0RMIDdata", SheetKind.MIDI),
+        (b"\0junk" * 1000 + b"MThd\0\0\0\6", SheetKind.MIDI),
+        (b"\1\2MTrk\0\0\0\4\0\xff\x2f\0", SheetKind.MIDI),  # its header is lost
+        (b"A4 # MThd and MTrk are chunks", SheetKind.NOTE_TEXT),
         (b"RIFF\x10\0\0\0WAVEfmt ", SheetKind.NOTE_TEXT),
         (b"PK\x03\x04....", SheetKind.MUSIC_XML),
         (b"<?xml version='1.0'?>", SheetKind.MUSIC_XML),

@@ -1,24 +1,35 @@
-"""Words and numbers as the pages write them: places, shares, lengths, lists of notes."""
+"""Words and numbers as all reports write them: shares, lengths, signs, pitches, lists."""
 
 from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
+
+from melodycoach.core import verdict
 
 if TYPE_CHECKING:
     from collections.abc import Mapping, Sequence
 
 MINUS = "\N{MINUS SIGN}"
 
+_LEAST_SHARE = 1e-9  # a probability is rounded in an answer: none of them is told as impossible
+
 
 def percent(probability: float) -> str:
-    """Write a probability for people; what is not certain is not called so.
+    """Write a probability in a sentence; what is not certain is not called so.
 
     >>> percent(0.724), percent(0.998), percent(0.002), percent(0.0)
-    ('72 %', '>99 %', '<1 %', '<1 %')
+    ('72 %', 'over 99 %', 'under 1 %', 'under 1 %')
     """
-    if probability >= 0.995:
-        return ">99 %"
-    return "<1 %" if probability < 0.005 else f"{probability * 100:.0f} %"
+    return verdict.percent(max(probability, _LEAST_SHARE))
+
+
+def short_percent(probability: float) -> str:
+    """Write a probability where there is little room.
+
+    >>> short_percent(0.724), short_percent(0.998), short_percent(0.0)
+    ('72 %', '>99 %', '<1 %')
+    """
+    return percent(probability).replace("over ", ">").replace("under ", "<")
 
 
 def plain(value: float) -> str:
@@ -63,33 +74,6 @@ def counted(count: int, one: str, many: str = "") -> str:
     return f"{count or 'no'} {one if count == 1 else many or one + 's'}"
 
 
-def bar_and_beat(bar: str, beat: float) -> str:
-    """Say where a note stands in its bar, or nothing where there are no bars.
-
-    >>> bar_and_beat("3", 2.5), bar_and_beat("3", 0.0), bar_and_beat("", 1.0)
-    ('bar 3, beat 2.5', 'bar 3', '')
-    """
-    if not bar:
-        return ""
-    return f"bar {bar}, beat {plain(beat)}" if beat else f"bar {bar}"
-
-
-def place(where: Mapping[str, Any] | None) -> str:
-    """Say where to look: bar and beat, the place in the file, or both.
-
-    >>> place({"bar": "3", "beat": 2.0, "at": "line 4, column 7"})
-    'bar 3, beat 2 (line 4, column 7)'
-    >>> place({"bar": "", "beat": 0, "at": "0:12.4"})
-    '0:12.4'
-    >>> place(None)
-    ''
-    """
-    if where is None:
-        return ""
-    in_bar, at = bar_and_beat(where["bar"], where["beat"]), where["at"]
-    return f"{in_bar} ({at})" if in_bar and at else in_bar or at
-
-
 def pitch(of: Mapping[str, Any]) -> str:
     """Name a pitch, and how it is written where that is another word.
 
@@ -97,28 +81,6 @@ def pitch(of: Mapping[str, Any]) -> str:
     ('dügâh (A4)', 'A4')
     """
     return of["name"] if of["name"] == of["written"] else f"{of['name']} ({of['written']})"
-
-
-def notes_between(first: int, last: int) -> str:
-    """Name a run of notes.
-
-    >>> notes_between(3, 3), notes_between(3, 8)
-    ('note 3', 'notes 3 to 8')
-    """
-    return f"note {first}" if first == last else f"notes {first} to {last}"
-
-
-def runs(numbers: Sequence[int]) -> list[tuple[int, int]]:
-    """Give the first and the last of each run of numbers that follow each other.
-
-    >>> runs([3, 4, 5, 9])
-    [(3, 5), (9, 9)]
-    """
-    found: list[tuple[int, int]] = []
-    for number in numbers:
-        joins = bool(found) and found[-1][1] == number - 1
-        found[-1:] = [(found[-1][0], number)] if joins else [*found[-1:], (number, number)]
-    return found
 
 
 def listed(words: Sequence[str], between: str = "and") -> str:
