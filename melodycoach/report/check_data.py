@@ -11,6 +11,8 @@ from __future__ import annotations
 from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
+import numpy as np
+
 from melodycoach.core.check import leaving
 from melodycoach.core.function import meant_units
 from melodycoach.core.ladder import ladder
@@ -75,6 +77,7 @@ def answer_json(checked: Checked, file: str, stay_in: Mode | None = None) -> dic
     """
     model, sheet = checked.model, checked.sheet
     pack = model.pack
+    after = [_so_far(checked, number) for number in range(1, checked.n_notes + 1)]
     return {
         "file": file,
         "kind": sheet.kind.value,
@@ -93,9 +96,9 @@ def answer_json(checked: Checked, file: str, stay_in: Mode | None = None) -> dic
         "n_notes": checked.n_notes,
         "whole": _whole(checked),
         "in_view": _in_view(checked),
-        "notes": _notes(checked),
+        "notes": _notes(checked, after),
         "off_notes": [number for number, one in enumerate(checked.off, 1) if one is not None],
-        "likelihoods": _likelihoods(checked),
+        "likelihoods": _likelihoods(checked, after),
         "phrases": [span_data(checked, one) for one in checked.phrases],
         "bars": [{"bar": bar, **span_data(checked, one)} for bar, one in checked.bars],
         "stretches": [_stretch(checked, one) for one in checked.stretches],
@@ -175,18 +178,17 @@ def _rival(checked: Checked) -> dict[str, Any] | None:
     }
 
 
-def _likelihoods(checked: Checked) -> dict[str, Any]:
+def _likelihoods(checked: Checked, after: Sequence[FloatArray]) -> dict[str, Any]:
     """Follow the modes that matter through the line: those of its stretches, the target, the likeliest."""
-    model, states = checked.model, checked.line.states
-    if not checked.n_notes:
+    model = checked.model
+    if not after:
         return {"modes": [], "after": []}
-    last = mode_posterior(model, states[-1])
+    last = after[-1]
     wanted = [checked.view.mode.id, *(stretch.mode.id for stretch in checked.stretches)]
     wanted += [model.modes[index].id for index in sorted(range(model.n_modes), key=lambda i: -last[i])]
     index_by_id = {mode.id: index for index, mode in enumerate(model.modes)}
     drawn = [index_by_id[mode_id] for mode_id in dict.fromkeys(wanted) if mode_id in index_by_id]
     drawn = drawn[:CURVES_DRAWN]
-    after = (_so_far(checked, number) for number in range(1, len(states)))
     return {
         "modes": [mode_data(model.modes[index]) for index in drawn],
         "after": [[rounded(by_mode[index]) for index in drawn] for by_mode in after],
@@ -196,7 +198,7 @@ def _likelihoods(checked: Checked) -> dict[str, Any]:
 # --- notes and spans of notes ------------------------------------------------------------------
 
 
-def _notes(checked: Checked) -> list[dict[str, Any]]:
+def _notes(checked: Checked, after: Sequence[FloatArray]) -> list[dict[str, Any]]:
     names = checked.model.pack.names
     items = [item for item in checked.line.items if isinstance(item, Note)]
     rows = []
@@ -221,7 +223,7 @@ def _notes(checked: Checked) -> list[dict[str, Any]]:
                 "written": str(names.spell(cents)),
                 "rests": heard.rests,
                 "closes": heard.closes,
-                "likely": _likely(checked, number),
+                "likely": _likely(checked, after[number - 1]),
                 "off": off_data(checked, checked.off[number - 1]),
             }
         )
@@ -234,9 +236,8 @@ def _so_far(checked: Checked, number: int) -> FloatArray:
     return mode_posterior(checked.model, state if number == checked.n_notes else before_closing(state))
 
 
-def _likely(checked: Checked, number: int) -> list[dict[str, Any]]:
-    by_mode = _so_far(checked, number)
-    ranked = sorted(range(len(by_mode)), key=lambda index: -by_mode[index])[:LIKELY_LISTED]
+def _likely(checked: Checked, by_mode: FloatArray) -> list[dict[str, Any]]:
+    ranked = np.argsort(-by_mode, kind="stable")[:LIKELY_LISTED]
     return [{"name": checked.model.modes[i].name, "probability": rounded(by_mode[i])} for i in ranked]
 
 

@@ -7,14 +7,19 @@ may hold anything.
 from __future__ import annotations
 
 import re
+from functools import cache, lru_cache
 from html import escape
 from typing import TYPE_CHECKING, TypeAlias
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Sequence
 
-_UNSAYABLE = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\ud800-\udfff\ufffe\uffff]")
+_CONTROLS = "\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\ud800-\udfff\ufffe\uffff"
+_UNSAYABLE = re.compile(f"[{_CONTROLS}]")
 """Characters that a page may not hold: controls, halves of pairs (from odd file names), no characters."""
+
+_SPECIAL = re.compile(f"[&<>\"'{_CONTROLS}]")
+"""Text without any of these stands in a page as it is."""
 
 _VOID = frozenset({"br", "meta"})
 _CAMEL = {"viewbox": "viewBox"}
@@ -36,9 +41,12 @@ def escaped(text: str) -> Html:
     >>> escaped("<b> & " + chr(7)) == "&lt;b&gt; &amp; " + chr(0xFFFD)
     True
     """
-    return text if isinstance(text, Html) else Html(escape(_UNSAYABLE.sub("\ufffd", text)))
+    if isinstance(text, Html):
+        return text
+    return Html(escape(_UNSAYABLE.sub("\ufffd", text)) if _SPECIAL.search(text) else text)
 
 
+@lru_cache(maxsize=4096)
 def number(value: float) -> str:
     """Write a number with at most one decimal, as drawings need it.
 
@@ -85,10 +93,14 @@ def element(tag: str, *content: Content, **attributes: Attribute) -> Html:
 def _attribute(key: str, value: Attribute) -> str:
     if value is None or value is False:
         return ""
-    name = _CAMEL.get(key) or key.rstrip("_").replace("_", "-")
     if value is True:
-        return f" {name}"
-    return f' {name}="{escaped(value) if isinstance(value, str) else number(value)}"'
+        return f" {_attribute_name(key)}"
+    return f' {_attribute_name(key)}="{escaped(value) if isinstance(value, str) else number(value)}"'
+
+
+@cache
+def _attribute_name(key: str) -> str:
+    return _CAMEL.get(key) or key.rstrip("_").replace("_", "-")
 
 
 def bullets(items: Iterable[Content], class_: str | None = None) -> Html:
