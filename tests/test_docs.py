@@ -6,6 +6,8 @@ from pathlib import Path
 
 import pytest
 
+from melodycoach.cli import main
+from melodycoach.commands.exit_codes import ANSWER_IS_NO
 from melodycoach.core.event import LineEdited
 from melodycoach.core.scorer import leading
 from melodycoach.core.session import apply, begin
@@ -49,6 +51,20 @@ def test_ci_runs_the_test_command_of_the_readme() -> None:
     assert len(commands) == 2
     assert commands[0].endswith("melodycoach demo")
     assert commands[1] in (ROOT / ".ci" / "run").read_text(encoding="utf-8")
+
+
+def test_the_page_on_checking_shows_its_example_and_what_the_program_says_of_it(
+    capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setenv("COLUMNS", "80")
+    monkeypatch.chdir(ROOT / "examples")
+    assert main(["check", "waiting.txt", "--stay-in", "huseyni"]) == ANSWER_IS_NO
+    printed = capsys.readouterr().out
+    page = (ROOT / "docs" / "check.md").read_text(encoding="utf-8")
+    line, answer = (block[1:] for block in page.split("```")[1::2] if block.startswith("\n"))
+    assert line == (ROOT / "examples" / "waiting.txt").read_text(encoding="utf-8")
+    assert printed.startswith(answer)
+    assert len(answer.splitlines()) > 10
 
 
 @pytest.mark.parametrize("path", EXAMPLES, ids=lambda path: path.name)
