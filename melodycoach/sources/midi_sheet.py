@@ -7,30 +7,37 @@ channels, wherever in the file these stand. A pedal does not prolong a note.
 
 from __future__ import annotations
 
+from itertools import pairwise
 from math import floor
 from typing import TYPE_CHECKING
 
+from melodycoach.core.event import NoteOff, NoteOn
 from melodycoach.core.melody import take_melody_indexed
 from melodycoach.core.note import InputKind, Mark, Note
-from melodycoach.core.pitch import KEY_CENTS, KEY_NAMES, fold_name
-from melodycoach.core.sheet import Place, Sheet, SheetKind
+from melodycoach.core.pitch import COMMAS_53, KEY_CENTS, KEY_NAMES, fold_name
+from melodycoach.core.sheet import Place, Sheet, SheetKind, beat_words
 from melodycoach.errors import UsageError
 from melodycoach.sources.midi_choice import Choice, choose_part, count_drum_notes, n_of
 from melodycoach.sources.midi_file import read_midi_file
 from melodycoach.sources.midi_match import is_strike, matched
 from melodycoach.sources.midi_pitch import CHANNELS, DEFAULT_RANGE_CENTS, DRUM_CHANNEL, PitchTracker
+from melodycoach.sources.midi_range import WIDE_RANGE, wide_range
 from melodycoach.sources.midi_time import MICROSECONDS, BarMap
 from melodycoach.sources.midi_tuning import KEYS, PLAIN_CENTS
+from melodycoach.sources.midi_written import in_beats, is_written
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping, Sequence
 
     from melodycoach.core.event import Event
     from melodycoach.core.note import Item
+    from melodycoach.core.pitch import ToneSystem
     from melodycoach.sources.midi_choice import Part
     from melodycoach.sources.midi_file import MidiFile
     from melodycoach.sources.midi_pitch import ChannelTuning
+    from melodycoach.sources.midi_time import TempoMap
     from melodycoach.sources.midi_track import TimedMessage
+    from melodycoach.sources.midi_written import Span, Written
 
 _WORDS = (
     "piano grand acoustic electric bright guitar bass strings string ensemble section violin viola cello "
@@ -43,12 +50,19 @@ _WORDS = (
 INSTRUMENT_NAMES = frozenset(_WORDS.split())
 """Words, as `fold_name` gives them, that name an instrument or nothing, but no piece."""
 
+_WIDE_RANGE_MEANT = (
+    "the file sends no bend range: in the usual ±2 semitones nobody would hear its bends, "
+    f"in ±{WIDE_RANGE} all its pitches are written ones"
+)
+
 _SECONDS_A_MINUTE = 60
 _SYSEX = 0xF0
 _NOTE_KINDS, _TUNING_KINDS = (0x80, 0x90), (0xB0, 0xE0)
 
 
-def read_midi(data: bytes, where: str, track: str = "", channel: int | None = None) -> Sheet:
+def read_midi(
+    data: bytes, where: str, system: ToneSystem = COMMAS_53, track: str = "", channel: int | None = None
+) -> Sheet:
     """Read the melody of a Standard MIDI File.
 
     Parameters
@@ -57,6 +71,8 @@ def read_midi(data: bytes, where: str, track: str = "", channel: int | None = No
         The whole file.
     where
         What the file is called in messages.
+    system
+        The tone system of the pack: bent notes that all lie on its units are written pitches.
     track
         The track to take: its number from 1, or a part of its name in any spelling. Empty: the
         track that holds the melody, by the rule of `melodycoach.sources.midi_choice`.
@@ -80,23 +96,30 @@ def read_midi(data: bytes, where: str, track: str = "", channel: int | None = No
     n_without_length = _n_strikes(messages)
     messages = matched(messages)
     n_without_length -= _n_strikes(messages)
-    events, ticks = _play(midi, part, messages, tracker)
+    ranges = wide_range(messages, part.channels, system)
+    messages = [*ranges, *messages]
+    times = midi.tempo_map(part.track)
+    events, ticks = _play(part, messages, tracker, times)
     line, heard = take_melody_indexed(events)
-    note_ticks = [ticks[place] for place in heard]
+    spans = _spans(events, ticks, heard)
     signatures = midi.signatures(part.track)
     bars = None if midi.division.is_seconds else BarMap(int(midi.division.ticks), signatures)
-    times = midi.tempo_map(part.track)
-    places = tuple(_place(bars, tick, times.seconds(tick)) for tick in note_ticks)
-    tempos = midi.tempos(part.track)
+    places = tuple(_place(bars, start, times.seconds(start)) for start, _ in spans)
+    written = _written(line, spans, midi, system)
+    tempo = _tempo(midi, part, spans[0][0]) if bars else None
+    if written:
+        line, tempo = written.items, None if tempo is None else tempo / written.beat
     return Sheet(
         kind=SheetKind.MIDI,
         items=_with_marks(line, places if signatures else ()),
         places=places,
         title=_title(midi, part),
-        tempo=round(_SECONDS_A_MINUTE * MICROSECONDS / tempos[0][1], 3) if tempos and bars else None,
+        tempo=None if tempo is None else round(tempo, 3),
         says=(
             _says_choice(midi, choice),
             *_says_tuning(tracker, line, part),
+            *((_WIDE_RANGE_MEANT,) if ranges else ()),
+            *_says_lengths(bars, written),
             *_says_left_out(midi, choice, n_without_length),
             *_says_bars(bars, has_signature=bool(signatures)),
         ),
@@ -105,19 +128,53 @@ def read_midi(data: bytes, where: str, track: str = "", channel: int | None = No
 
 
 def _play(
-    midi: MidiFile, part: Part, messages: Sequence[TimedMessage], tracker: PitchTracker
+    part: Part, messages: Sequence[TimedMessage], tracker: PitchTracker, times: TempoMap
 ) -> tuple[list[Event], list[int]]:
     """Send the messages of a part through the tracker; give the events, and the tick of each."""
-    seconds = midi.tempo_map(part.track).seconds
     events: list[Event] = []
     ticks: list[int] = []
     for tick, message in messages:
-        happened = tracker.decode(message, seconds(tick))
+        happened = tracker.decode(message, times.seconds(tick))
         if happened:
             events += happened
             ticks += [tick] * len(happened)
-    ended = tracker.silence(seconds(part.track.end_tick))
-    return [*events, *ended], [*ticks, *(part.track.end_tick for _ in ended)]
+    end = part.track.end_tick
+    ended = tracker.silence(times.seconds(end))
+    return [*events, *ended], [*ticks, *([end] * len(ended))]
+
+
+def _spans(events: Sequence[Event], ticks: Sequence[int], heard: Sequence[int]) -> list[Span]:
+    """Give the ticks at which the notes of a line start and end, from the places of their note-ons.
+
+    As in the line, a note ends when its key comes up, and at the latest when the next one starts.
+    """
+    spans = []
+    for place, following in pairwise((*heard, len(events))):
+        started = events[place]
+        assert isinstance(started, NoteOn)
+        own_end = (
+            at
+            for at in range(place + 1, following)
+            if isinstance(ended := events[at], NoteOff) and ended.voice == started.voice
+        )
+        spans.append((ticks[place], ticks[next(own_end, min(following, len(events) - 1))]))
+    return spans
+
+
+def _written(
+    line: Sequence[Item], spans: Sequence[Span], midi: MidiFile, system: ToneSystem
+) -> Written | None:
+    """Give the line in beats, if it was written."""
+    ticks = int(midi.division.ticks)
+    if midi.division.is_seconds or not is_written([start for start, _ in spans], ticks):
+        return None
+    return in_beats(line, spans, ticks, system)
+
+
+def _tempo(midi: MidiFile, part: Part, tick: int) -> float | None:
+    """Give the quarters a minute when the first note sounds, or None where the file does not say."""
+    in_force = [tempo for at, tempo in midi.tempos(part.track) if at <= tick]
+    return _SECONDS_A_MINUTE * MICROSECONDS / in_force[-1] if in_force else None
 
 
 def _messages(midi: MidiFile, part: Part) -> list[TimedMessage]:
@@ -232,6 +289,13 @@ def _lost_messages(tracker: PitchTracker) -> tuple[str, ...]:
     if not tracker.n_skipped:
         return ()
     return (f"{n_of(tracker.n_skipped, 'damaged message')} among those that tune were passed over",)
+
+
+def _says_lengths(bars: BarMap | None, written: Written | None) -> tuple[str, ...]:
+    """Say how the lengths of the notes were taken, and their pitches with them."""
+    if written:
+        return (*written.says, f"its notes lie on the beats, as written: {beat_words(written.beat)}")
+    return ("its notes lie off the beats, as played: lengths are taken in seconds",) if bars else ()
 
 
 def _says_left_out(midi: MidiFile, choice: Choice, n_without_length: int) -> tuple[str, ...]:

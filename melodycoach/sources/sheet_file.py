@@ -25,6 +25,10 @@ if TYPE_CHECKING:
 FIRST_BYTES = 200
 """So much of a file is enough to tell its kind."""
 
+SEARCHED_BYTES = 64 * 1024
+"""A MIDI file may have rubbish of so many bytes before it: see `melodycoach.sources.midi_file`."""
+
+_MIDI_CHUNKS = (b"MThd\0", b"MTrk\0")  # with the first byte of their length, which no text has
 UTF_8_BOM = b"\xef\xbb\xbf"
 _UTF_16 = MappingProxyType({b"\xff\xfe": "utf-16-le", b"\xfe\xff": "utf-16-be"})
 
@@ -85,6 +89,8 @@ def kind_of(data: bytes) -> SheetKind:
         return SheetKind.MIDI
     if data[:4] == b"PK\x03\x04" or _begins_like_xml(data):
         return SheetKind.MUSIC_XML
+    if any(chunk in data[:SEARCHED_BYTES] for chunk in _MIDI_CHUNKS):
+        return SheetKind.MIDI
     return SheetKind.NOTE_TEXT
 
 
