@@ -18,6 +18,7 @@ from melodycoach.core.course import Course, course_of
 from melodycoach.core.judge import InView, in_view, stretch_judges
 from melodycoach.core.model import hypothesis_of
 from melodycoach.core.note import InputKind
+from melodycoach.core.octave import lie_of
 from melodycoach.core.offmode import OffMode, off_mode
 from melodycoach.core.owed import follow, start_track
 from melodycoach.core.plain_keys import keyboard_note
@@ -172,7 +173,7 @@ def check_sheet(model: ScoringModel, sheet: Sheet, target: Mode | None = None) -
     line = rewrite(model, empty_line(model), sheet.items)
     states, heard = line.states, line.heard
     whole = leading(model, states[-1])
-    view = in_view(model, states, heard, target, whole)
+    view = in_view(model, states[-1], lie_of(heard), target, whole)
     bounds = phrase_bounds(line.items)
     return Checked(
         model=model,

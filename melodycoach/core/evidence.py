@@ -28,7 +28,7 @@ from melodycoach.core.event import PitchReading
 from melodycoach.core.function import find_degree
 from melodycoach.core.model import register_columns
 from melodycoach.core.note import InputKind
-from melodycoach.core.octave import placed_final
+from melodycoach.core.octave import NOWHERE, lie_of, placed_final
 from melodycoach.core.pitch import key_of
 from melodycoach.core.scorer import closing, note_weight, temper
 
@@ -181,7 +181,8 @@ def balance(
     known = earlier if earlier is not None and (earlier.a, earlier.b) == (a, b) else None
     if known is not None and known.model is not model:
         known = None
-    finals = placed_final(model, a, heard), placed_final(model, b, heard)
+    lie = lie_of(heard) if model.reading is PitchReading.ANY else NOWHERE
+    finals = placed_final(model, a, lie), placed_final(model, b, lie)
     while known is not None and not (known.finals == finals and _is_beginning(known, states)):
         known = known.before
     if known is None or not known.state.n_notes:

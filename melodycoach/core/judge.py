@@ -8,7 +8,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, NamedTuple
 
 from melodycoach.core.change import NONE
-from melodycoach.core.octave import moved_final, standing_final
+from melodycoach.core.octave import Lie, lie_of, moved_final, standing_final
 from melodycoach.core.scorer import posterior
 from melodycoach.core.span import Span, heard_instead, span
 from melodycoach.core.stretch import stretch_of
@@ -41,23 +41,35 @@ class InView(NamedTuple):
 
 def in_view(
     model: ScoringModel,
-    states: Sequence[ScorerState],
-    heard: Sequence[Heard],
+    state: ScorerState,
+    lie: Lie,
     target: Mode | None,
     lean: Leaning,
 ) -> InView:
-    """Give the mode in view: the target, where there is one, and else the leading mode."""
+    """Give the mode in view: the target, where there is one, and else the leading mode.
+
+    Parameters
+    ----------
+    model, state
+        The scoring model, and what it holds after the line.
+    lie
+        Where the line lies.
+    target
+        The mode that is aimed at, or None.
+    lean
+        Where the line leans.
+    """
     if target is None:
-        final_units = standing_final(model, lean.best, heard)
+        final_units = standing_final(model, lean.best, lie)
         return InView(model.mode_of(lean.best), final_units, lean.best, lean.rival)
     candidates = [i for i, index in enumerate(model.mode_index) if model.modes[index].id == target.id]
     if not candidates:
-        final_units = moved_final(target, target.final_units, heard, model.pack.system)
+        final_units = moved_final(target, target.final_units, lie, model.pack.system)
         return InView(target, final_units, None, None)
-    chance = posterior(model, states[-1])
+    chance = posterior(model, state)
     best = max(candidates, key=lambda i: chance[i])
     rival = lean.rival if model.mode_index[lean.best] == model.mode_index[best] else lean.best
-    return InView(target, standing_final(model, best, heard), best, rival)
+    return InView(target, standing_final(model, best, lie), best, rival)
 
 
 class Judge(NamedTuple):
@@ -71,7 +83,7 @@ class Judge(NamedTuple):
 def judges(
     model: ScoringModel,
     states: Sequence[ScorerState],
-    heard: Sequence[Heard],
+    lie: Lie,
     in_view: tuple[Mode, int],
     leader: int | None,
 ) -> tuple[Judge, ...]:
@@ -85,8 +97,10 @@ def judges(
 
     Parameters
     ----------
-    model, states, heard
-        The scoring model, the state after each number of notes, and the notes.
+    model, states
+        The scoring model, and the state after each number of notes.
+    lie
+        Where the line lies.
     in_view
         The mode in view and where it stands, in units from A4.
     leader
@@ -103,7 +117,7 @@ def judges(
         since = change.seam_at or 1
         is_excursion = since > 1 and bool(found) and found[-1].since - since < SHORTEST_STRETCH
         if not is_excursion:
-            final_units = standing_final(model, change.announced, heard)
+            final_units = standing_final(model, change.announced, lie)
             found.append(Judge(since, model.mode_of(change.announced), final_units))
         if change.seam_at is None:
             break
@@ -120,8 +134,9 @@ def stretch_judges(
     heard in another mode than the one announced for it gets that one, and neighbours in the same mode
     are one stretch.
     """
-    leader = in_view(model, states, heard, None, whole)
-    found = judges(model, states, heard, leader[:2], whole.best)[::-1]
+    lie = lie_of(heard)
+    leader = in_view(model, states[-1], lie, None, whole)
+    found = judges(model, states, lie, leader[:2], whole.best)[::-1]
     found = (found[0]._replace(since=1), *found[1:])
     known: dict[tuple[int, int], Span] = {}
     while True:
@@ -129,18 +144,18 @@ def stretch_judges(
         bounds = [(judge.since, last) for judge, last in zip(found, ends, strict=True)]
         known |= {pair: span(model, heard, *pair) for pair in bounds if pair not in known}
         parts = [known[pair] for pair in bounds]
-        named = [_renamed(model, heard, judge, part) for judge, part in zip(found, parts, strict=True)]
+        named = [_renamed(model, lie, judge, part) for judge, part in zip(found, parts, strict=True)]
         merged = tuple(one for at, one in enumerate(named) if not at or one[1:] != named[at - 1][1:])
         if merged == found:
             return tuple(zip(found, parts, strict=True))
         found = merged
 
 
-def _renamed(model: ScoringModel, heard: Sequence[Heard], judge: Judge, part: Span) -> Judge:
+def _renamed(model: ScoringModel, lie: Lie, judge: Judge, part: Span) -> Judge:
     instead = heard_instead(model, part, judge.mode)
     if instead is None:
         return judge
-    return Judge(judge.since, model.mode_of(instead), standing_final(model, instead, heard))
+    return Judge(judge.since, model.mode_of(instead), standing_final(model, instead, lie))
 
 
 def _before(states: Sequence[ScorerState], change: ChangeState) -> ChangeState:

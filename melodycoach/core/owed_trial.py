@@ -22,7 +22,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from melodycoach.core.mode import Need
-from melodycoach.core.octave import standing_final
+from melodycoach.core.octave import lie_of, standing_final
 from melodycoach.core.owed import follow, start_track
 from melodycoach.core.ranking import rank_owed, step_note
 from melodycoach.core.scorer import advance, leading, log_posterior, start
@@ -70,7 +70,7 @@ def try_owed(model: ScoringModel, notes: Sequence[Heard], hypothesis: int) -> Ow
         None when the mode owes nothing; colour is never owed.
     """
     mode = model.mode_of(hypothesis)
-    final_units = standing_final(model, hypothesis, notes)
+    final_units = standing_final(model, hypothesis, lie_of(notes))
     state = start(model)
     track = start_track(mode, final_units, model.pack.system)
     for note in notes:

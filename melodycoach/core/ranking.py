@@ -21,7 +21,7 @@ import numpy as np
 from melodycoach.core.mode import Need, StepKind
 from melodycoach.core.note import Heard, InputKind
 from melodycoach.core.pitch import KEY_CENTS, key_of
-from melodycoach.core.scorer import advance, temper
+from melodycoach.core.scorer import advance_unwatched, temper
 
 if TYPE_CHECKING:
     from melodycoach.core.arrays import FloatArray
@@ -157,10 +157,10 @@ def _play(
     for n, pitch in enumerate(pitches[:-1], start=1):
         known = tried.get(pitches[:n])
         if known is None:
-            known = advance(model, state, step_note(pitch, kind, is_last=False))
+            known = advance_unwatched(model, state, step_note(pitch, kind, is_last=False))
             tried[pitches[:n]] = known
         state = known
-    return advance(model, state, step_note(pitches[-1], kind, is_last=True))
+    return advance_unwatched(model, state, step_note(pitches[-1], kind, is_last=True))
 
 
 def step_note(pitch_cents: float, kind: InputKind, *, is_last: bool) -> Heard:

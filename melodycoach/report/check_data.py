@@ -17,7 +17,7 @@ from melodycoach.core.check import leaving
 from melodycoach.core.function import meant_units
 from melodycoach.core.ladder import ladder
 from melodycoach.core.note import Note
-from melodycoach.core.octave import standing_final
+from melodycoach.core.octave import lie_of, standing_final
 from melodycoach.core.offmode import off_mode_words
 from melodycoach.core.scorer import mode_posterior, posterior
 from melodycoach.core.span import before_closing
@@ -142,7 +142,7 @@ def _final(checked: Checked, index: int) -> int:
     model = checked.model
     by_hypothesis = posterior(model, checked.line.states[-1]).reshape(-1, model.n_modes)
     hypothesis = int(by_hypothesis[:, index].argmax()) * model.n_modes + index
-    return standing_final(model, hypothesis, checked.line.heard)
+    return standing_final(model, hypothesis, lie_of(checked.line.heard))
 
 
 def _in_view(checked: Checked) -> dict[str, Any]:

@@ -9,11 +9,11 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from melodycoach.core.evidence import Balance, balance
-from melodycoach.core.judge import in_view
+from melodycoach.core.judge import in_view, judges
 from melodycoach.core.ladder import ladder
 from melodycoach.core.mode import Mode, Need
 from melodycoach.core.note import InputKind, shared_start
-from melodycoach.core.octave import standing_final
+from melodycoach.core.octave import NOWHERE, Lie, lie_of, standing_final
 from melodycoach.core.owed import StepTrack, follow, start_track
 from melodycoach.core.pitch import key_name
 from melodycoach.core.plain_keys import keyboard_note
@@ -23,7 +23,7 @@ from melodycoach.core.step_words import step_label
 from melodycoach.core.stretch import stretch_of
 from melodycoach.core.verdict import competing_words, reading_words, verdict
 from melodycoach.core.why import reasons_of_balance
-from melodycoach.screen.line_of import line_notes
+from melodycoach.screen.line_of import LineMaker
 from melodycoach.screen.view import LeaningRow, OwedRow, Status, ViewState, WhyRow
 
 if TYPE_CHECKING:
@@ -45,6 +45,7 @@ class ViewMaker:
         self._tracks: list[StepTrack] = []
         self._followed: tuple[object, ...] = ()
         self._balance: Balance | None = None
+        self._line = LineMaker()
 
     def view_of(self, session: SessionState, status: Status, tokens: tuple[str, ...] = ()) -> ViewState:
         """Give what the screen shows of a session.
@@ -61,20 +62,23 @@ class ViewMaker:
         model, line, names = session.model, session.line, session.pack.names
         state = line.states[-1]
         lean = leading(model, state)
-        shown = in_view(model, line.states, line.heard, session.target, lean)
+        lie = lie_of(line.heard)
+        shown = in_view(model, state, lie, session.target, lean)
         mode, final_units, hypothesis, rival = shown
         track = self._track(session, mode, final_units)
         heard_anything = bool(line.heard)
+        led_by = lean.best if session.target is None else None
+        judged_by = judges(model, line.states, lie, (mode, final_units), led_by)
         return ViewState(
             verdict=verdict(model, lean, state.n_notes),
             now=_now(model, line, lean),
             decided=heard_anything and lean.decided,
-            leanings=_leaning_rows(session, state),
+            leanings=_leaning_rows(session, state, lie),
             in_view=mode.name,
             rival=model.mode_of(rival).name if rival is not None else "",
             is_target=session.target is not None,
             owed=_owed_rows(session, hypothesis, rival, track),
-            line=line_notes(session, mode, final_units, lean.best),
+            line=self._line.line_notes(session, judged_by),
             ladder=ladder(mode, final_units, names),
             why=self._why_rows(session, hypothesis, rival) if heard_anything else (),
             keyboard_note=_keyboard_note(session, hypothesis, rival),
@@ -125,7 +129,7 @@ def _now(model: ScoringModel, line: Line, lean: Leaning) -> str:
     return f"right now it sounds like {names}, since note {stretch.since}"
 
 
-def _leaning_rows(session: SessionState, state: ScorerState) -> tuple[LeaningRow, ...]:
+def _leaning_rows(session: SessionState, state: ScorerState, lie: Lie) -> tuple[LeaningRow, ...]:
     model = session.model
     by_hypothesis = posterior(model, state).reshape(-1, model.n_modes)
     by_mode = by_hypothesis.sum(axis=0)
@@ -140,7 +144,7 @@ def _leaning_rows(session: SessionState, state: ScorerState) -> tuple[LeaningRow
         mode = model.modes[index]
         hypothesis = int(by_hypothesis[:, index].argmax()) * model.n_modes + index
         is_likely = by_mode[index] >= LEAST_LIKELY  # where the others stand is not worth the work
-        final = standing_final(model, hypothesis, session.line.heard if is_likely else ())
+        final = standing_final(model, hypothesis, lie if is_likely else NOWHERE)
         rows.append(
             LeaningRow(
                 mode_id=mode.id,

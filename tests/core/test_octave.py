@@ -8,7 +8,7 @@ from melodycoach.core.event import PitchReading
 from melodycoach.core.mode import Mode
 from melodycoach.core.model import ScoringModel, build_model
 from melodycoach.core.note import Heard, InputKind
-from melodycoach.core.octave import moved_final, placed_final, standing_final
+from melodycoach.core.octave import lie_of, moved_final, placed_final, standing_final
 from melodycoach.sources.pack_file import load_pack
 
 PACK = load_pack("makam")
@@ -33,7 +33,7 @@ def sung(text: str, octaves: int = 0) -> list[Heard]:
 
 
 def moved(mode: Mode, line: list[Heard]) -> int:
-    return moved_final(mode, mode.final_units, line, SYSTEM) - mode.final_units
+    return moved_final(mode, mode.final_units, lie_of(line), SYSTEM) - mode.final_units
 
 
 @pytest.mark.parametrize("octaves", [-2, -1, 0, 1, 2])
@@ -103,21 +103,21 @@ def final_of(model: ScoringModel, mode: Mode, final: int) -> int:
 )
 def test_with_any_pitch_the_mode_stands_where_the_line_rests(mode: Mode, line: str, octaves: int) -> None:
     hypothesis = final_of(ANY, mode, 0)
-    assert placed_final(ANY, hypothesis, sung(line, octaves)) == 53 * octaves
-    assert standing_final(ANY, hypothesis, sung(line, octaves)) == 53 * octaves
+    assert placed_final(ANY, hypothesis, lie_of(sung(line, octaves))) == 53 * octaves
+    assert standing_final(ANY, hypothesis, lie_of(sung(line, octaves))) == 53 * octaves
 
 
 def test_until_the_line_rests_all_its_notes_count() -> None:
-    assert placed_final(ANY, final_of(ANY, HUSEYNI, 0), sung("31 39 44")) == 0
-    assert placed_final(ANY, final_of(ANY, MUHAYYER, 0), sung("53 61")) == 0
+    assert placed_final(ANY, final_of(ANY, HUSEYNI, 0), lie_of(sung("31 39 44"))) == 0
+    assert placed_final(ANY, final_of(ANY, MUHAYYER, 0), lie_of(sung("53 61"))) == 0
 
 
 def test_before_the_first_note_a_hypothesis_of_any_pitch_has_its_own_octave() -> None:
     hypothesis = final_of(ANY, HUSEYNI, 5)
-    assert placed_final(ANY, hypothesis, []) == ANY.final_units[hypothesis]
+    assert placed_final(ANY, hypothesis, lie_of([])) == ANY.final_units[hypothesis]
 
 
 def test_as_written_a_mode_keeps_its_place_among_reasons_but_moves_with_the_line_for_its_steps() -> None:
     low = sung(HUSEYNI_LINE, -1)
-    assert placed_final(WRITTEN, 0, low) == 0
-    assert standing_final(WRITTEN, 0, low) == -53
+    assert placed_final(WRITTEN, 0, lie_of(low)) == 0
+    assert standing_final(WRITTEN, 0, lie_of(low)) == -53

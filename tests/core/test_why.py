@@ -3,9 +3,10 @@
 import pytest
 
 from melodycoach.core.event import PitchReading
-from melodycoach.core.evidence import DegreeKey, Evidence, Factor, RegisterKey, balance, placed_final
+from melodycoach.core.evidence import DegreeKey, Evidence, Factor, RegisterKey, balance
 from melodycoach.core.model import build_model
 from melodycoach.core.note import Heard, InputKind
+from melodycoach.core.octave import NOWHERE, lie_of, placed_final
 from melodycoach.core.scorer import ScorerState, advance, start
 from melodycoach.core.why import LEAST_NATS, Reason, _Words, opening_place, reasons, reasons_of_balance
 from melodycoach.sources.pack_file import load_pack
@@ -98,7 +99,7 @@ def test_before_the_first_note_there_is_no_reason() -> None:
 
 
 def say(one: Evidence, a: str, b: str) -> str:
-    finals = placed_final(MODEL, INDEX[a], ()), placed_final(MODEL, INDEX[b], ())
+    finals = placed_final(MODEL, INDEX[a], NOWHERE), placed_final(MODEL, INDEX[b], NOWHERE)
     return _Words(MODEL, INDEX[a], INDEX[b], finals).say(one)
 
 
@@ -232,7 +233,7 @@ def test_any_pitch_is_told_in_the_octave_of_the_line() -> None:
     rast, ussak = (
         next(h for h in range(106) if model.final_units[h] == f and h % 2 == m) for m, f in ((0, 44), (1, 0))
     )
-    assert placed_final(model, rast, heard) == -9
+    assert placed_final(model, rast, lie_of(heard)) == -9
     texts = [one.text for one in reasons(model, states, heard, rast, ussak)]
     assert "you rested on rast: the karar of Rast, the yeden of Uşşak" in texts
     assert not any("opened" in text for text in texts)
