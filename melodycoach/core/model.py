@@ -16,6 +16,7 @@ two keys belongs to both in proportion.
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from functools import cached_property
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -110,6 +111,16 @@ class ScoringModel:
     def n_modes(self) -> int:
         """How many modes compete."""
         return len(self.modes)
+
+    @cached_property
+    def home_middle(self) -> FloatArray:
+        """The middle of each mode's home, in units above its final, shape (n_modes,).
+
+        Home is the octave over the final, and the opening region.
+        """
+        size = self.pack.system.divisions
+        homes = [(min(0, mode.opening[0]), max(size, mode.opening[1])) for mode in self.modes]
+        return sealed(np.array([(low + high) / 2 for low, high in homes]))
 
     def mode_of(self, hypothesis: int) -> Mode:
         """Give the mode of a hypothesis."""

@@ -71,6 +71,9 @@ class Hearing:
         Power of the register factor beside the octave-folded one.
     change_power
         Power on a note's evidence in the change filter.
+    knows_octave
+        Its octave can be relied on: a phrase that ends on the octave of a final has not come to rest
+        on it. A recording is often an octave off.
     """
 
     blur_cents: float
@@ -78,6 +81,7 @@ class Hearing:
     book_share: float
     register_power: float
     change_power: float
+    knows_octave: bool = True
 
 
 _HEARING = MappingProxyType(
@@ -85,7 +89,7 @@ _HEARING = MappingProxyType(
         InputKind.TYPED: Hearing(0.45 * COMMA_CENTS, 0.12, 0.8, 0.15, 2.5),
         InputKind.KEYS: Hearing(0.45 * COMMA_CENTS, 0.12, 0.5, 0.15, 2.5),
         InputKind.TUNED: Hearing(0.60 * COMMA_CENTS, 0.12, 0.5, 0.15, 2.5),
-        InputKind.RECORDED: Hearing(1.10 * COMMA_CENTS, 0.25, 0.0, 0.10, 1.5),
+        InputKind.RECORDED: Hearing(1.10 * COMMA_CENTS, 0.25, 0.0, 0.10, 1.5, knows_octave=False),
     }
 )
 

@@ -25,7 +25,8 @@ import numpy as np
 
 from melodycoach.core.arrays import sealed
 from melodycoach.core.change import NONE, ChangeState, Field, advance_change, start_change
-from melodycoach.core.sounding import MEMORY_OCTAVES, sounding_of
+from melodycoach.core.event import PitchReading
+from melodycoach.core.sounding import MEMORY_OCTAVES, MEMORY_OCTAVES_BELOW, sounding_of
 from melodycoach.core.theory import MOVING, RESTING
 from melodycoach.errors import ImpossibleEvidenceError
 
@@ -241,12 +242,29 @@ def closing(model: ScoringModel, state: ScorerState) -> FloatArray:
 def closing_if_ended(model: ScoringModel, state: ScorerState) -> FloatArray:
     """Give what the end of a phrase would say if it ended with the latest note."""
     total = np.zeros(len(state.loglik))
+    finals = _closing_finals(model, state)
     for heard in state.latest:
         sounding = sounding_of(model, heard)
-        likely = sounding.shares @ model.tables(heard.kind).closing[model.mode_index, sounding.columns]
+        tables = model.tables(heard.kind)
+        likely = sounding.shares @ tables.closing[model.mode_index, sounding.columns]
+        if finals is not None and model.parameters.hearing[heard.kind].knows_octave:
+            resting = sounding.shares @ tables.theory[model.mode_index, RESTING, sounding.columns]
+            at = model.pack.system.cents_to_units(heard.pitch_cents) - model.final_shift
+            likely = np.where(abs(at - finals) <= model.pack.system.divisions / 2, likely, resting)
         total += note_weight(model, heard) * np.log(likely)
     parameters = model.parameters
     return parameters.closing_power * min(1.0, parameters.closing_temper / temper(model, state)) * total
+
+
+def _closing_finals(model: ScoringModel, state: ScorerState) -> FloatArray | None:
+    """Give where each final stands in the octave in which the line lies; None where it has no octave."""
+    if model.reading is PitchReading.ANY:
+        return None
+    size = model.pack.system.divisions
+    units = np.arange(len(state.memory)) - MEMORY_OCTAVES_BELOW * size
+    middle = float(units @ state.memory) / float(state.memory.sum())
+    octaves = np.round((middle - model.final_units - model.home_middle[model.mode_index]) / size)
+    return np.asarray(model.final_units + octaves * size, dtype=np.float64)
 
 
 def log_posterior(model: ScoringModel, state: ScorerState) -> FloatArray:

@@ -1,5 +1,7 @@
 """What carried the evidence between two hypotheses."""
 
+from dataclasses import replace
+
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
@@ -213,8 +215,7 @@ def test_the_end_of_a_phrase_is_an_item_of_its_own() -> None:
 def test_an_uneven_prior_is_an_item() -> None:
     prior = WRITTEN.log_prior.copy()
     prior[HUSEYNI] += 0.5
-    fields = {**vars(WRITTEN), "log_prior": prior}
-    uneven = ScoringModel(**fields)
+    uneven = replace(WRITTEN, log_prior=prior)
     found = evidence(uneven, [start(uneven)], [], HUSEYNI, USSAK)
     assert [(one.factor, round(one.nats, 9), one.n_notes) for one in found] == [(Factor.PRIOR, 0.5, 0)]
 
