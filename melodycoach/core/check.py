@@ -26,6 +26,7 @@ from melodycoach.core.ranking import OwedStep, rank_owed
 from melodycoach.core.scorer import leading
 from melodycoach.core.session import Line, empty_line, rewrite
 from melodycoach.core.span import (
+    LEAST_NOTES,
     Span,
     bar_bounds,
     growing_spans,
@@ -120,7 +121,8 @@ class Checked:
     whole
         Where the line as a whole leans.
     view
-        The mode in view: the target, else the leading one.
+        The mode in view: the target, else the leading one, or that of the longest stretch where no
+        stretch is in the leading one.
     stretches
         They cover the line.
     off
@@ -173,8 +175,10 @@ def check_sheet(model: ScoringModel, sheet: Sheet, target: Mode | None = None) -
     line = rewrite(model, empty_line(model), sheet.items)
     states, heard = line.states, line.heard
     whole = leading(model, states[-1])
-    view = in_view(model, states[-1], lie_of(heard), target, whole)
     bounds = phrase_bounds(line.items)
+    found = _stretches(model, line, whole, bounds)
+    shown = target or _mode_of_stretches(model, whole, found)
+    view = in_view(model, states[-1], lie_of(heard), shown, whole)
     return Checked(
         model=model,
         sheet=sheet,
@@ -182,7 +186,7 @@ def check_sheet(model: ScoringModel, sheet: Sheet, target: Mode | None = None) -
         line=line,
         whole=whole,
         view=view,
-        stretches=(found := _stretches(model, line, whole, bounds)),
+        stretches=found,
         off=_off(model, line, view if target is not None else None, found),
         phrases=tuple(span(model, heard, first, last) for first, last in bounds),
         bars=tuple((bar, span(model, heard, first, last)) for bar, first, last in bar_bounds(sheet.places)),
@@ -220,16 +224,19 @@ def leaving(checked: Checked, target: Mode) -> Leaving | None:
 
 
 def _turns_at(checked: Checked, stretch: Stretch, target: Mode) -> int:
-    """Give the note where a stretch turns: a seam, or the note from which the first one is decided."""
+    """Give the note where a stretch turns, or 1 if it never was in the target.
+
+    That is its first note; in the first stretch the one from which on the target never leads again.
+    """
     first, last = stretch.span.first, stretch.span.last
     if first > 1:
         return first
     model, turned = checked.model, last
     for part in reversed(growing_spans(model, checked.line.heard, first, last)):
-        if heard_instead(model, part, target) is None:
+        if model.mode_of(part.leaning.best).id == target.id:
             break
         turned = part.last
-    return turned
+    return turned if turned > LEAST_NOTES else 1
 
 
 def _stretches(
@@ -261,6 +268,14 @@ def _stretch(
     )
 
 
+def _mode_of_stretches(model: ScoringModel, whole: Leaning, found: Sequence[Stretch]) -> Mode | None:
+    """Give the mode of the longest stretch where the line as one leans to a mode that no stretch has."""
+    modes = {stretch.mode.id for stretch in found}
+    if not found or model.mode_of(whole.best).id in modes:
+        return None
+    return max(found, key=lambda stretch: stretch.span.n_notes).mode
+
+
 def _noticed_at(line: Line, first: int) -> int | None:
     """Give the note at which the change to a stretch was noticed, or None if it is the first one."""
     changes = (state.change for state in line.states[first:])
@@ -285,7 +300,7 @@ def _off(
     for stretch in stretches:
         mode, final_units = (stretch.mode, stretch.final_units) if view is None else view[:2]
         for note in line.heard[stretch.span.first - 1 : stretch.span.last]:
-            off = off_mode(mode, final_units, note, model.pack.system)
+            off = off_mode(mode, final_units, note, model.pack.names)
             found.append(None if off is None else (mode, off))
     return tuple(found)
 

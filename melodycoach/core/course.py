@@ -11,7 +11,7 @@ from statistics import median, median_low
 from typing import TYPE_CHECKING
 
 from melodycoach.core.evidence import OPENING_MARGIN_UNITS, OPENING_NOTES
-from melodycoach.core.function import find_degree, function_of, meant_units
+from melodycoach.core.function import Function, find_degree, function_of, meant_units
 from melodycoach.core.why import opening_place
 
 if TYPE_CHECKING:
@@ -108,10 +108,12 @@ class _Beside:
             return Trait(None, f"too short to tell where it opens; it begins on {start}")
         low, high = mode.opening[0] - OPENING_MARGIN_UNITS, mode.opening[1] + OPENING_MARGIN_UNITS
         inside, begins = (low <= at - self.final_units <= high for at in (median(first), first[0]))
+        if inside:
+            region = " to ".join(self.name(self.final_units + edge) for edge in mode.opening)
+            return Trait(True, f"it opens on {start}, in the region where {mode.name} opens: {region}")
         place = opening_place(mode, self.final_units, self.model)
-        strays = begins and not inside
-        lies = f", but its first notes lie round {self.name(median_low(first))}" if strays else ""
-        return Trait(inside, f"it opens on {start}{lies}; {mode.name} opens {place}")
+        lies = f", but its first notes lie round {self.name(median_low(first))}" if begins else ""
+        return Trait(False, f"it opens on {start}{lies}; {mode.name} opens {place}")
 
     def register(self) -> Trait:
         heights, mode = self.heights(), self.mode
@@ -126,6 +128,8 @@ class _Beside:
 
     def cadence(self, end: PhraseEnd) -> Trait:
         word, last = self.model.pack.names.word("final"), self.name(end.height)
+        if len(self.heard) < OPENING_NOTES:
+            return Trait(None, f"too short to tell how it closes; it stops on {last}")
         if end.height == self.final_units:
             return Trait(True, f"it comes to rest on {last}, the {word} of {self.mode.name}")
         closes = self.heard[-1].closes
@@ -138,7 +142,10 @@ class _Beside:
         system = self.model.pack.system
         degree = find_degree(self.mode, self.final_units, note.pitch_cents, note.kind, system)
         function = function_of(self.mode, degree, system.divisions)
+        told = self.model.pack.names.word(function.value)
+        if function is Function.FINAL and degree:
+            told = f"octave of the {told}"
         height = round(system.cents_to_units(note.pitch_cents))
         if degree is not None:
             height = self.final_units + degree
-        return PhraseEnd(number, height, self.model.pack.names.word(function.value))
+        return PhraseEnd(number, height, told)

@@ -55,12 +55,17 @@ def tolerance_units(kind: InputKind, system: ToneSystem) -> float:
     return cents / system.unit_cents
 
 
-def nearest_degree(mode: Mode, units: float, divisions: int) -> int:
-    """Give the placed degree nearest to a pitch, so many units above the final.
+def degrees_near(mode: Mode, units: float, divisions: int, reach: float) -> tuple[int, ...]:
+    """Give the placed degrees within reach of a pitch, so many units above the final, the nearest first."""
+    away = sorted((_distance(place, units), place[0]) for place in _placed(mode, units, divisions))
+    return tuple(degree for distance, degree in away if distance <= reach)
 
-    The distance is that from the degree as written or as usually played, whichever is smaller.
-    """
-    return _nearest(_placed(mode, units, divisions), units)[0]
+
+def is_passing(mode: Mode, degree: int, divisions: int) -> bool:
+    """Say whether a placed degree is a mere colour of the mode, in whatever octave."""
+    own = {*mode.rising, *mode.falling, *mode.below, *mode.above}
+    folded = {one % divisions for one in own}
+    return degree not in own and degree % divisions in {one % divisions for one in mode.passing} - folded
 
 
 def find_degree(

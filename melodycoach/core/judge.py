@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, NamedTuple
 from melodycoach.core.change import NONE
 from melodycoach.core.octave import Lie, lie_of, moved_final, standing_final
 from melodycoach.core.scorer import posterior
-from melodycoach.core.span import Span, heard_instead, span
+from melodycoach.core.span import Span, better_name, span
 from melodycoach.core.stretch import stretch_of
 
 if TYPE_CHECKING:
@@ -152,7 +152,7 @@ def stretch_judges(
 
 
 def _renamed(model: ScoringModel, lie: Lie, judge: Judge, part: Span) -> Judge:
-    instead = heard_instead(model, part, judge.mode)
+    instead = better_name(model, part, judge.mode)
     if instead is None:
         return judge
     return Judge(judge.since, model.mode_of(instead), standing_final(model, instead, lie))

@@ -29,8 +29,11 @@ PHRASE_REST_BEATS = 1.0
 
 
 OUTWEIGHED = 4.0
-"""Notes are clearly heard in another mode than the one they should be in when that is decided, and so
-many times as likely."""
+"""A mode that is decided, and so many times as likely as another, is the better name for some notes."""
+
+UNLIKELY, EXCLUDED = 0.05, 0.02
+"""Notes are not heard in a mode that is less likely than the first while another is decided, or less
+likely than the second whatever else they may be in."""
 
 LEAST_NOTES = 5
 """Fewer notes are no ground to say that they are heard in another mode."""
@@ -105,39 +108,59 @@ def mode_probability(model: ScoringModel, part: Span, mode: Mode) -> float:
     return sum(float(p) for p, one in zip(part.by_mode, model.modes, strict=True) if one.id == mode.id)
 
 
-def heard_instead(model: ScoringModel, part: Span, mode: Mode) -> int | None:
-    """Give the hypothesis that some notes are clearly heard in, if that is another mode than this one."""
-    best = part.leaning.best
-    if part.n_notes < LEAST_NOTES or not part.leaning.decided or model.mode_of(best).id == mode.id:
-        return None
+def better_name(model: ScoringModel, part: Span, mode: Mode) -> int | None:
+    """Give the hypothesis that names some notes clearly better than a mode does, or None."""
+    best = _other(model, part, mode)
     outweighed = OUTWEIGHED * mode_probability(model, part, mode)
-    return best if part.leaning.p_best > outweighed else None
+    return best if part.leaning.decided and part.leaning.p_best > outweighed else None
+
+
+def heard_instead(model: ScoringModel, part: Span, mode: Mode) -> int | None:
+    """Give the likeliest hypothesis where some notes are clearly not heard in a mode, or None."""
+    best, chance = _other(model, part, mode), mode_probability(model, part, mode)
+    return best if chance < (UNLIKELY if part.leaning.decided else EXCLUDED) else None
+
+
+def _other(model: ScoringModel, part: Span, mode: Mode) -> int | None:
+    """Give the likeliest hypothesis if it is of another mode and there are notes enough to say so."""
+    best = part.leaning.best
+    return None if part.n_notes < LEAST_NOTES or model.mode_of(best).id == mode.id else best
 
 
 def phrase_bounds(items: Sequence[Item]) -> tuple[tuple[int, int], ...]:
     """Give the first and last note of each phrase, counted from 1.
 
-    A phrase ends at a breath, at a phrase end, and at a rest of `PHRASE_REST_BEATS`.
+    A phrase ends where its end is written. A line in which none is written before its last note has
+    phrases that end at a breath and at a rest of `PHRASE_REST_BEATS`.
 
-    >>> a = Note(6900, 0, 1, beats=1)
+    >>> a, end = Note(6900, 0, 1, beats=1), Mark.PHRASE_END
+    >>> phrase_bounds([a, a, Mark.BREATH, a, end, a, end])
+    ((1, 3), (4, 4))
     >>> phrase_bounds([a, a, Mark.BREATH, a, Mark.BAR, a, Silence(1, beats=0.5), a, Silence(1, beats=1), a])
     ((1, 2), (3, 5), (6, 6))
     """
+    places = [at for at, item in enumerate(items) if isinstance(item, Note)]
+    inner = items[: places[-1]] if places else ()
+    parts = _is_end if any(map(_is_end, inner)) else _is_breath
     bounds: list[tuple[int, int]] = []
     first, last = 1, 0
     for item in items:
         if isinstance(item, Note):
             last += 1
-        elif _parts_phrases(item) and last >= first:
+        elif parts(item) and last >= first:
             bounds.append((first, last))
             first = last + 1
     return (*bounds, (first, last)) if last >= first else tuple(bounds)
 
 
-def _parts_phrases(item: Mark | Silence) -> bool:
-    if isinstance(item, Mark):
-        return item is not Mark.BAR
-    return item.beats is None or item.beats >= PHRASE_REST_BEATS
+def _is_end(item: Item) -> bool:
+    return item is Mark.PHRASE_END
+
+
+def _is_breath(item: Item) -> bool:
+    if isinstance(item, Silence):
+        return item.beats is None or item.beats >= PHRASE_REST_BEATS
+    return item is Mark.BREATH or item is Mark.PHRASE_END
 
 
 def bar_bounds(places: Sequence[Place]) -> tuple[tuple[str, int, int], ...]:

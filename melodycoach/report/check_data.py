@@ -19,7 +19,7 @@ from melodycoach.core.ladder import ladder
 from melodycoach.core.note import Note
 from melodycoach.core.octave import lie_of, standing_final
 from melodycoach.core.offmode import off_mode_words
-from melodycoach.core.scorer import mode_posterior, posterior
+from melodycoach.core.scorer import log_odds, mode_posterior, posterior
 from melodycoach.core.span import before_closing
 from melodycoach.core.verdict import competing_words, reading_words, verdict
 from melodycoach.report.check_values import (
@@ -162,10 +162,11 @@ def _in_view(checked: Checked) -> dict[str, Any]:
 
 def _rival(checked: Checked) -> dict[str, Any] | None:
     view, model = checked.view, checked.model
-    if not checked.n_notes or view.rival is None:
+    if not checked.n_notes or view.rival is None or view.hypothesis is None:
         return None
-    mode = model.mode_of(view.rival)
-    by_mode = mode_posterior(model, checked.line.states[-1])
+    mode, state = model.mode_of(view.rival), checked.line.states[-1]
+    by_mode = mode_posterior(model, state)
+    odds = log_odds(model, state, view.hypothesis, view.rival)
     told = [
         (reason, {"says": reason.text, "nats": round(reason.nats, 3), "notes": list(reason.numbers)})
         for reason in checked.reasons
@@ -175,6 +176,7 @@ def _rival(checked: Checked) -> dict[str, Any] | None:
         "probability": rounded(by_mode[view.rival % model.n_modes]),
         "for_leader": [data for reason, data in told if reason.nats > 0],
         "for_rival": [data for reason, data in told if reason.nats < 0],
+        "rest_nats": round(odds - sum(reason.nats for reason, _ in told), 3),
     }
 
 
@@ -281,4 +283,4 @@ def _leaving_words(first: Leaving, mode: Mode, names: PitchNames) -> str:
         says, mend = off_mode_words(first.off, mode, names)
         return f"{names.name(first.off.pitch_cents)} is {says}; {mend} would mend it"
     assert first.to is not None
-    return f"from here on it sounds like {first.to.name}"
+    return f"{'from here on ' if first.number > 1 else ''}it sounds like {first.to.name}"

@@ -83,7 +83,7 @@ class LineMaker:
     def _row(
         self, number: int, at: int, note: Heard, judge: Judge, marks: Sequence[Mark], names: PitchNames
     ) -> LineNote:
-        pitch = (note.pitch_cents, note.kind, judge.mode.id, judge.final_units)
+        pitch = (note.pitch_cents, note.kind, note.rests, judge.mode.id, judge.final_units)
         if len(self._told) > TOLD_AT_MOST:
             self._told.clear()
         told = self._told[pitch] = self._told.get(pitch) or _judged(note, judge, names)
@@ -122,7 +122,7 @@ class _Judgement(NamedTuple):
 def _judged(note: Heard, judge: Judge, names: PitchNames) -> _Judgement:
     """Give height, name and written name of a note, what is wrong with it, and what mends it."""
     mode, final_units = judge.mode, judge.final_units
-    off = off_mode(mode, final_units, note, names.system)
+    off = off_mode(mode, final_units, note, names)
     wrong, mend = off_mode_words(off, mode, names) if off is not None else ("", "")
     height = meant_units(mode, final_units, note.pitch_cents, note.kind, names.system)
     cents = names.system.units_to_cents(height)

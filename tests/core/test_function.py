@@ -6,10 +6,10 @@ import pytest
 
 from melodycoach.core.function import (
     Function,
+    degrees_near,
     find_degree,
     function_of,
     meant_units,
-    nearest_degree,
     tolerance_units,
 )
 from melodycoach.core.mode import Course, Mode
@@ -118,10 +118,10 @@ def test_the_tolerance_is_a_pitch_difference_whatever_the_tone_system() -> None:
 
 
 def test_the_nearest_degree_may_be_any_distance_away() -> None:
-    assert nearest_degree(mode(), 3.0, 53) == 0
-    assert nearest_degree(mode(), 5.0, 53) == 8  # 2 from the played 7, 5 from 0
-    assert nearest_degree(mode(), 56.0, 53) == 53  # 3 from 53, 4 from the played copy 60
-    assert nearest_degree(mode(), 58.0, 53) == 61
+    assert degrees_near(mode(), 3.0, 53, 53)[0] == 0
+    assert degrees_near(mode(), 5.0, 53, 53)[0] == 8  # 2 from the played 7, 5 from 0
+    assert degrees_near(mode(), 56.0, 53, 53)[0] == 53  # 3 from 53, 4 from the played copy 60
+    assert degrees_near(mode(), 58.0, 53, 53)[0] == 61
 
 
 def test_a_key_border_belongs_to_the_upper_key() -> None:

@@ -1,6 +1,7 @@
 """An answer as data: what programs read, and what the other reports are made from."""
 
 import json
+import math
 from itertools import pairwise
 from typing import Any
 
@@ -75,7 +76,8 @@ def test_a_change_stands_between_two_stretches() -> None:
     assert change["note"] == after["first"] == before["last"] + 1
     assert change["place"] == {"bar": "7", "beat": 1.0, "at": ""}
     assert change["decided"] == after["decided"]
-    assert change["says"].startswith("turns from Hüseynî to ")
+    assert "turn" in change["says"]
+    assert "from Hüseynî to " in change["says"]
 
 
 def test_each_stretch_is_held_against_the_course_of_its_own_mode() -> None:
@@ -115,7 +117,10 @@ def test_the_rival_gets_its_reasons_too() -> None:
     assert rival["name"] != TURNED["whole"]["name"]
     assert all(reason["nats"] > 0 for reason in rival["for_leader"])
     assert all(reason["nats"] < 0 for reason in rival["for_rival"])
+    nats = [reason["nats"] for reason in (*rival["for_leader"], *rival["for_rival"])]
     leanings = {one["name"]: one["probability"] for one in TURNED["whole"]["leanings"]}
+    odds = leanings[TURNED["in_view"]["name"]] / leanings[rival["name"]]
+    assert sum(nats) + rival["rest_nats"] == pytest.approx(math.log(odds), abs=0.05)
     assert rival["probability"] == leanings[rival["name"]]
 
 
@@ -143,7 +148,7 @@ def test_the_question_is_answered_with_the_first_place_where_the_line_leaves() -
 def test_a_line_that_turns_without_a_wrong_note_says_what_it_sounds_like() -> None:
     segah = "B4-1:2 Bb4+4 B4-1 C5 D5:3 , C5 B4-1 A4 B4-1:4 . B4-1:2 C5 D5:3 , C5 B4-1 A4 B4-1:4 ."
     first = answer(segah.replace("Bb4+4", "A4"), "rast", stay=True)["stay_in"]["first"]
-    assert first["says"].startswith("from here on it sounds like ")
+    assert "it sounds like " in first["says"]
 
 
 def test_a_line_without_notes_is_an_answer_too() -> None:
