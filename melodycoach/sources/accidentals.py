@@ -14,7 +14,7 @@ which programs that write scores fill in so differently that it counts last.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, TypeAlias
+from typing import TYPE_CHECKING, NamedTuple, TypeAlias
 
 from melodycoach.core.pitch import COMMA_CENTS, COMMAS_53, KEY_CENTS, SEMITONES_12, Spelling
 from melodycoach.errors import shorten
@@ -39,7 +39,6 @@ NOTATION_NAMES = {
     Notation.LITERAL: "literal (piano keys)",
 }
 
-
 HOMES = (Notation.AEU, Notation.FOLK, Notation.LITERAL, Notation.ARABIC, Notation.PERSIAN)
 """Where a sign that means nothing in the notation of its score is looked up, in this order."""
 
@@ -51,8 +50,7 @@ _GRID = {2: "double-sharp", 1.5: "three-quarters-sharp", 1: "sharp", 0.5: "quart
 _GRID |= {-2: "flat-flat", -1.5: "three-quarters-flat", -1: "flat", -0.5: "quarter-flat"}
 
 
-@dataclass(frozen=True, slots=True)
-class Sign:
+class Sign(NamedTuple):
     """A printed accidental: its MusicXML value, its SMuFL glyph name, or both; the other is empty."""
 
     token: str

@@ -11,12 +11,11 @@ prints no sign at all.
 from __future__ import annotations
 
 from collections import Counter
-from dataclasses import dataclass
 from math import isfinite
 from typing import TYPE_CHECKING, NamedTuple, TypeAlias
 
 from melodycoach.core.note import InputKind
-from melodycoach.core.pitch import COMMA_CENTS, KEY_CENTS, LETTERS, Spelling
+from melodycoach.core.pitch import COMMA_CENTS, KEY_CENTS, LETTERS
 from melodycoach.sources.accidental_table import Notation
 from melodycoach.sources.accidentals import (
     NOTATION_NAMES,
@@ -42,9 +41,6 @@ SHARPS_IN_ORDER = "FCGDAEB"
 MOST_FIFTHS = 21
 """Sharps or flats of a key beyond this, three on each letter, are not counted."""
 
-SIGN_COST_CENTS = 25.0
-"""A sharp or flat is spelled when it leaves a remainder smaller by this; so 4 commas down is Bb4+1."""
-
 MOST_CONFLICTS = 20
 """How many kinds of conflict are told one by one."""
 
@@ -55,13 +51,11 @@ KeyEntry: TypeAlias = "tuple[str, float | None, Sign | None, int | None]"
 """One altered letter of a key signature: step, ``key-alter``, ``key-accidental``, ``key-octave``."""
 
 
-@dataclass(frozen=True, slots=True)
-class StaffNote:
-    """What a printed note sounds like: cents on the MIDI scale, how exact, and how it is written."""
+class StaffNote(NamedTuple):
+    """What a printed note sounds like: cents on the MIDI scale, and how exact that is."""
 
     cents: float
     kind: InputKind
-    spelling: Spelling
 
 
 class _Raise(NamedTuple):
@@ -72,6 +66,14 @@ class _Raise(NamedTuple):
     source: str
 
 
+class _Answer(NamedTuple):
+    """A note that was worked out: what its sign leaves in the bar, and what conflicts it shows."""
+
+    note: StaffNote
+    printed: _Raise | None
+    conflicts: tuple[str, ...]
+
+
 class StaffPitch:
     """Follows one staff of one part; feed it in the order in which the notes sound.
 
@@ -80,20 +82,20 @@ class StaffPitch:
     notation
         What the accidentals mean.
     system
-        The tone system of the pack: its naturals and how it spells.
+        The tone system of the pack: its naturals.
     signs_printed
         Whether the score prints any sign, at a note or in a key signature by name. Where it prints
         none, ``alter`` comes first.
 
     Examples
     --------
-    Segâh under a key with a koma flat, as some program wrote it (alter -0.5):
+    Segâh, a comma below B4, under a key with a koma flat, as some program wrote it (alter -0.5):
 
     >>> from melodycoach.core.pitch import COMMAS_53
     >>> staff = StaffPitch(Notation.AEU, COMMAS_53)
     >>> staff.set_key([("B", -0.5, Sign("quarter-flat"), None)])
-    >>> str(staff.pitch("B", 4, None, -0.5).spelling)
-    'B4-1'
+    >>> round(COMMAS_53.cents_to_units(staff.pitch("B", 4, None, -0.5).cents))
+    8
     """
 
     def __init__(self, notation: Notation, system: ToneSystem, *, signs_printed: bool = True) -> None:
@@ -102,7 +104,8 @@ class StaffPitch:
         self._alter_first = notation is Notation.LITERAL or not signs_printed
         self._key: dict[str, dict[int | None, _Raise]] = {}
         self._bar: dict[tuple[str, int], _Raise] = {}
-        self._notes: dict[tuple[str, int, float], StaffNote] = {}
+        # most notes of a score come again under the same key, so each is worked out once
+        self._answers: dict[tuple[str, int, Sign | None, float | None, _Raise | None], _Answer] = {}
         self._conflicts: Counter[str] = Counter()
 
     @property
@@ -122,14 +125,17 @@ class StaffPitch:
         entries = traditional_key(key) if isinstance(key, int) else key
         self._key = {}
         self._bar = {}
+        self._answers = {}
         for step, alter, sign, octave in entries:
             _check(step, alter)
-            if (raised := self._from_key(alter, sign)) is not None:
+            conflicts: list[str] = []
+            if (raised := self._from_key(alter, sign, conflicts)) is not None:
                 self._key.setdefault(step, {})[octave] = raised
+            self._conflicts.update(conflicts)
 
     def new_bar(self) -> None:
         """Forget the accidentals of the bar."""
-        self._bar = {}
+        self._bar.clear()
 
     def pitch(
         self,
@@ -156,39 +162,59 @@ class StaffPitch:
         ValueError
             At a step that is no letter from A to G, and at an ``alter`` that is no finite number.
         """
-        _check(step, alter)
         if tied_from is not None and sign is None:
-            return self._note(step, octave, tied_from)
-        natural = natural_cents(step, octave, self.notation, self.system)
-        return self._note(step, octave, natural + self._raised(step, octave, sign, alter))
+            return self._note(tied_from)
+        asked = (step, octave, sign, alter, self._bar.get((step, octave)))
+        answer = self._answers.get(asked)
+        if answer is None:
+            answer = self._answers[asked] = self._work_out(*asked)
+        if answer.printed is not None:
+            self._bar[step, octave] = answer.printed
+        if answer.conflicts:
+            self._conflicts.update(answer.conflicts)
+        return answer.note
 
-    def _raised(self, step: str, octave: int, sign: Sign | None, alter: float | None) -> float:
-        """Give how far a note lies above its letter; remember its sign for the bar."""
-        printed = self._read(sign, alter) if sign else None
-        if printed is not None:
-            self._bar[step, octave] = printed
-        holds = printed or self._of_bar(step, octave) or self._of_key(step, octave)
+    def _work_out(
+        self, step: str, octave: int, sign: Sign | None, alter: float | None, in_bar: _Raise | None
+    ) -> _Answer:
+        """Work out a note by its letter, what is printed at it, and what holds in the bar and the key."""
+        _check(step, alter)
+        conflicts: list[str] = []
+        printed = self._read(sign, alter, conflicts) if sign else None
+        if in_bar is not None:
+            in_bar = in_bar._replace(source=f"{in_bar.source}{IN_BAR}")
+        holds = printed or in_bar or self._of_key(step, octave)
+        raised = self._raised(holds, alter, conflicts, printed=printed is not None)
+        natural = natural_cents(step, octave, self.notation, self.system)
+        return _Answer(self._note(natural + raised), printed, tuple(conflicts))
+
+    def _raised(
+        self, holds: _Raise | None, alter: float | None, conflicts: list[str], *, printed: bool
+    ) -> float:
+        """Give how far a note lies above its letter."""
         if self._alter_first:
-            return self._by_alter(holds, alter, printed is not None)
+            return self._by_alter(holds, alter, conflicts, printed=printed)
         if holds is None:
             return self._meant(alter or 0.0)
         # whoever writes scores leaves out the alter of a natural, never that of a plain sign
-        given = 0.0 if alter is None and holds.plain and printed is None else alter
-        self._compare(holds, alter, given)
+        given = 0.0 if alter is None and holds.plain and not printed else alter
+        conflicts += self._compare(holds, alter, given)
         return holds.cents
 
-    def _by_alter(self, holds: _Raise | None, alter: float | None, printed: bool) -> float:
+    def _by_alter(
+        self, holds: _Raise | None, alter: float | None, conflicts: list[str], *, printed: bool
+    ) -> float:
         """Give how far a note lies above its letter where its ``alter`` comes first."""
         if alter is None:
             return holds.cents if holds and (printed or not holds.plain) else 0.0
         if self.notation is Notation.LITERAL:
             if printed and holds:
-                self._compare(holds, alter, alter)
+                conflicts += self._compare(holds, alter, alter)
             return alter * KEY_CENTS
         near = holds is not None and abs(holds.cents - alter * KEY_CENTS) <= CONFLICT_CENTS
         return holds.cents if holds and near and grid_sign(alter) else self._meant(alter)
 
-    def _read(self, sign: Sign, alter: float | None) -> _Raise | None:
+    def _read(self, sign: Sign, alter: float | None, conflicts: list[str]) -> _Raise | None:
         """Give what a sign says, at home if it is foreign here; None if nothing can be made of it."""
         cents, home = raised_cents(sign, self.notation), home_of(sign)
         literal = self.notation is Notation.LITERAL and alter is not None
@@ -197,11 +223,11 @@ class StaffPitch:
         if home is not None and not literal:
             cents = raised_cents(sign, home) or 0.0
             here, there = NOTATION_NAMES[self.notation], NOTATION_NAMES[home]
-            self._conflicts[f"{sign} is no {here} sign: read as {there}, {_size(cents)}"] += 1
+            conflicts.append(f"{sign} is no {here} sign: read as {there}, {_size(cents)}")
             return _Raise(cents, False, str(sign))
         if home is None:
             taken = "left out" if alter is None else f"read as its alter {alter:g} says"
-            self._conflicts[f"{sign} is no accidental that is known: {taken}"] += 1
+            conflicts.append(f"{sign} is no accidental that is known: {taken}")
         return None if alter is None else _Raise(self._meant(alter), False, str(sign))
 
     def _meant(self, alter: float) -> float:
@@ -210,7 +236,7 @@ class StaffPitch:
         cents = raised_cents(sign, self.notation) if sign else None
         return alter * KEY_CENTS if cents is None else cents
 
-    def _from_key(self, alter: float | None, sign: Sign | None) -> _Raise | None:
+    def _from_key(self, alter: float | None, sign: Sign | None, conflicts: list[str]) -> _Raise | None:
         """Give what one entry of a key signature says; None if it says nothing."""
         by_alter = None
         if alter is not None:
@@ -219,16 +245,12 @@ class StaffPitch:
             by_alter = _Raise(self._meant(alter), plain, f"{name or f'key-alter {alter:g}'}{IN_KEY}")
         if sign is None or (by_alter is not None and self.notation is Notation.LITERAL):
             return by_alter
-        read = self._read(sign, alter)
+        read = self._read(sign, alter, conflicts)
         if read is None:
             return by_alter
         holds = read._replace(source=f"{sign}{IN_KEY}")
-        self._compare(holds, alter, alter)
+        conflicts += self._compare(holds, alter, alter)
         return holds
-
-    def _of_bar(self, step: str, octave: int) -> _Raise | None:
-        kept = self._bar.get((step, octave))
-        return kept and kept._replace(source=f"{kept.source}{IN_BAR}")
 
     def _of_key(self, step: str, octave: int) -> _Raise | None:
         """Give what the key says of a letter: at this octave, anywhere, or at the nearest octave."""
@@ -238,32 +260,23 @@ class StaffPitch:
         nearest = min((at for at in entries if at is not None), key=lambda at: (abs(at - octave), at))
         return entries[nearest]
 
-    def _compare(self, holds: _Raise, alter: float | None, given: float | None) -> None:
-        """Note a conflict where a sign and the number beside it do not mean the same."""
+    def _compare(self, holds: _Raise, alter: float | None, given: float | None) -> tuple[str, ...]:
+        """Give the conflict where a sign and the number beside it do not mean the same."""
         if given is None or abs(holds.cents - given * KEY_CENTS) <= CONFLICT_CENTS:
-            return
+            return ()
         found = "no alter" if alter is None else f"alter {alter:g}"
         by_sign, by_number = _size(holds.cents), _size(given * KEY_CENTS)
         if self.notation is Notation.LITERAL:
-            text = f"{holds.source} with {found}: read as {by_number}, as alter says, not {by_sign}"
-        else:
-            text = f"{holds.source} with {found}: read as {by_sign}, as the sign says, not {by_number}"
-        self._conflicts[text] += 1
+            return (f"{holds.source} with {found}: read as {by_number}, as alter says, not {by_sign}",)
+        return (f"{holds.source} with {found}: read as {by_sign}, as the sign says, not {by_number}",)
 
-    def _note(self, step: str, octave: int, cents: float) -> StaffNote:
-        """Give the note of a pitch; most notes of a score come again, so each is made once."""
-        known = self._notes.get((step, octave, cents))
-        if known is None:
-            known = self._notes[step, octave, cents] = self._new_note(step, octave, cents)
-        return known
-
-    def _new_note(self, step: str, octave: int, cents: float) -> StaffNote:
-        kind = InputKind.TYPED
-        if self.notation is Notation.LITERAL:
-            on_key = abs(cents - round(cents / KEY_CENTS) * KEY_CENTS) < 1e-6
-            kind = InputKind.KEYS if on_key else InputKind.TUNED
-            cents = round(cents / KEY_CENTS) * KEY_CENTS if on_key else cents
-        return StaffNote(cents, kind, spell_at(step, octave, cents, self.system))
+    def _note(self, cents: float) -> StaffNote:
+        if self.notation is not Notation.LITERAL:
+            return StaffNote(cents, InputKind.TYPED)
+        key = round(cents / KEY_CENTS) * KEY_CENTS
+        if abs(cents - key) < 1e-6:
+            return StaffNote(key, InputKind.KEYS)
+        return StaffNote(cents, InputKind.TUNED)
 
 
 def traditional_key(fifths: int) -> tuple[KeyEntry, ...]:
@@ -285,24 +298,6 @@ _PLAIN = {
     -2: Sign("flat-flat"),
     -3: Sign("triple-flat"),
 }
-
-
-def spell_at(step: str, octave: int, cents: float, system: ToneSystem) -> Spelling:
-    """Write a pitch on a given letter and octave, in the tone system of the pack.
-
-    >>> from melodycoach.core.pitch import COMMAS_53
-    >>> str(spell_at("B", 4, COMMAS_53.units_to_cents(5), COMMAS_53))  # 4 commas below B4
-    'Bb4+1'
-    """
-    units = system.cents_to_units(cents)
-    best: tuple[float, Spelling] | None = None
-    for signs in (0, 1, -1, 2, -2, 3, -3):
-        left = round(units - system.spelling_units(Spelling(step, signs, 0, octave)), 6)
-        cost = abs(left) * system.unit_cents + abs(signs) * SIGN_COST_CENTS
-        if best is None or cost < best[0]:
-            best = (cost, Spelling(step, signs, left, octave))
-    assert best is not None
-    return best[1]
 
 
 def _size(cents: float) -> str:

@@ -123,7 +123,7 @@ def _root_file(container: bytes, where: str) -> str:
     def root_file(attributes: dict[str, str]) -> None:
         names.append(attributes.get("full-path", ""))
 
-    parse_xml(container, where, Handlers(lambda name: None, {"rootfile": root_file}, {}))
+    parse_xml(container, where, Handlers(lambda name: None, {"rootfile": root_file}))
     return names[0] if names else ""
 
 

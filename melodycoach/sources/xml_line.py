@@ -1,33 +1,27 @@
-"""From one voice of one part of a score to a line: pitches, ties, chords, rests, marks, places.
+"""From one voice of one part of a score to a line: chords, overlaps, rests, marks, places, beats.
 
 Conventions
 -----------
-All notes of a part are followed, since an accidental holds for every voice of its staff; those of
-one voice make the line. Of what a voice lets sound together the highest note is taken. Repeats are
-read once. The line is in sounding pitch.
+Of what a voice lets sound together the highest note is taken. Repeats are read once. The line is in
+sounding pitch.
 
 References
 ----------
-W3C MusicXML 4.0: ``transpose`` says what has to be added to the written pitch to give the sounding
-one. A fermata, a breath and a caesura stand at the note before them. In comma notations a
-transposition keeps to the commas: a whole tone is 9 and the half tone between two letters 4, which
-makes ``5 * semitones - steps`` for every interval (Pythagorean order, as in `core.pitch`).
+W3C MusicXML 4.0: a fermata, a breath and a caesura stand at the note before them.
 """
 
 from __future__ import annotations
 
-import math
-from collections import Counter
 from dataclasses import dataclass
-from operator import attrgetter
+from operator import attrgetter, itemgetter
 from typing import TYPE_CHECKING
 
-from melodycoach.core.note import InputKind, Mark, Note, Silence
-from melodycoach.core.pitch import COMMA_CENTS, HIGHEST_CENTS, KEY_CENTS, LOWEST_CENTS, OCTAVE_CENTS
+from melodycoach.core.note import Mark, Note, Silence
+from melodycoach.core.pitch import HIGHEST_CENTS, LOWEST_CENTS
 from melodycoach.core.sheet import Place, usual_beat
-from melodycoach.sources.accidentals import COMMA_NOTATIONS
-from melodycoach.sources.note_token import LONGEST_BEATS, SHORTEST_BEATS
-from melodycoach.sources.staff_pitch import StaffPitch
+from melodycoach.sources.note_token import DEFAULT_TEMPO, LONGEST_BEATS, SHORTEST_BEATS
+from melodycoach.sources.xml_score import NEAR
+from melodycoach.sources.xml_sounding import Sounding, Tone, who
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator, Sequence
@@ -35,27 +29,24 @@ if TYPE_CHECKING:
     from melodycoach.core.note import Item
     from melodycoach.core.pitch import ToneSystem
     from melodycoach.sources.accidental_table import Notation
-    from melodycoach.sources.xml_score import Bar, KeyChange, Part, Shift, WrittenNote
+    from melodycoach.sources.xml_score import Bar, Part, Shift
 
 GRACE_BEATS = 0.25
 """A grace note is so long in the line, and takes nothing from the notes beside it."""
 
 OUT_OF_REACH = "a note out of the reach of MIDI, left out"
 
-_STEPS_BY_SEMITONES = (0, 1, 1, 2, 2, 3, 3, 4, 5, 5, 6, 6)  # how an interval is usually written
-_NEAR = 1e-6  # quarter notes
-_NO_TIE = (math.nan, 0.0)
-_at, _cents = attrgetter("at"), attrgetter("cents")
+_cents, _first = attrgetter("cents"), itemgetter(0)
 
 
 @dataclass(frozen=True, slots=True)
 class VoiceLine:
-    """The line of a voice, not laid out in time.
+    """The line of a voice.
 
     Parameters
     ----------
-    items, places
-        As in `Sheet`; the notes still have no onset and no duration.
+    items, places, tempo
+        As in `Sheet`.
     beat
         The note value that one beat is, in quarter notes.
     conflicts
@@ -64,33 +55,27 @@ class VoiceLine:
         What the voice holds.
     shifts
         The transpositions that were applied, each once, in order.
-    staff
-        The one that is kept, where the voice stands on several at once; else empty.
     """
 
     items: tuple[Item, ...]
     places: tuple[Place, ...]
+    tempo: float | None
     beat: float
     conflicts: tuple[str, ...]
     n_graces: int
     has_chords: bool
     shifts: tuple[Shift, ...]
-    staff: str
-
-
-@dataclass(slots=True)
-class _Tone:
-    """A note of the part with its pitch; it grows while notes are tied to it."""
-
-    written: WrittenNote
-    cents: float
-    kind: InputKind
-    tied: bool
-    quarters: float
 
 
 def read_voice(
-    part: Part, voice: str, notation: Notation, system: ToneSystem, *, signs_printed: bool
+    part: Part,
+    voice: str,
+    staff: str,
+    notation: Notation,
+    system: ToneSystem,
+    *,
+    signs_printed: bool,
+    quarters_a_minute: float | None,
 ) -> VoiceLine:
     """Make the line of one voice.
 
@@ -98,120 +83,49 @@ def read_voice(
     ----------
     part
         Its damage grows by the notes that are out of reach.
-    voice
-        As the file names it.
+    voice, staff
+        As the file names them; all staves where it is empty.
     notation, system, signs_printed
         As `StaffPitch` takes them.
+    quarters_a_minute
+        The tempo; None where the score gives none.
     """
-    staves = {
-        staff: StaffPitch(notation, system, signs_printed=signs_printed)
-        for staff in sorted({note.staff for bar in part.bars for note in bar.notes})
-    }
-    kept = _staff_kept(part, voice)
-    line = _Line(part, notation)
-    for bar, tones in _sounding(part, staves):
-        of_voice = [tone for tone in tones if tone.written.voice == voice]
-        line.add_bar(bar, [tone for tone in of_voice if kept in ("", tone.written.staff)])
-    conflicts = dict.fromkeys(said for staff in staves.values() for said in staff.conflicts)
-    return line.finish(tuple(conflicts), kept)
-
-
-def _staff_kept(part: Part, voice: str) -> str:
-    """Give the staff to read of a voice that stands on several at once: the one with the most notes.
-
-    A voice that goes from staff to staff is read on all of them, and so is a chord over two: then
-    the text is empty.
-    """
-    of_voice = [[note for note in bar.notes if note.voice == voice] for bar in part.bars]
-    n_by_staff = Counter(note.staff for notes in of_voice for note in notes)
-    if len(n_by_staff) > 1 and any(map(_on_several_staves, of_voice)):
-        return n_by_staff.most_common(1)[0][0]
-    return ""
-
-
-def _on_several_staves(notes: Iterable[WrittenNote]) -> bool:
-    """Tell whether a note of a bar begins on one staff while one of another staff still sounds."""
-    ends: dict[str, float] = {}
-    for note in sorted((note for note in notes if not note.grace and not note.chord), key=_at):
-        if any(end > note.at + _NEAR for staff, end in ends.items() if staff != note.staff):
-            return True
-        ends[note.staff] = note.at + note.length
-    return False
-
-
-def shift_cents(shift: Shift, notation: Notation) -> float:
-    """Give what a transposing part sounds higher than it is written.
-
-    >>> from melodycoach.sources.accidental_table import Notation
-    >>> from melodycoach.sources.xml_score import Shift
-    >>> whole_tone_down = Shift(-2, -1, 0)
-    >>> round(shift_cents(whole_tone_down, Notation.AEU) / COMMA_CENTS), shift_cents(
-    ...     whole_tone_down, Notation.LITERAL
-    ... )
-    (-9, -200.0)
-    """
-    octaves = shift.octaves * OCTAVE_CENTS
-    if notation not in COMMA_NOTATIONS or shift.semitones % 1:
-        return shift.semitones * KEY_CENTS + octaves
-    steps = shift.steps
-    if steps is None:
-        size = int(abs(shift.semitones))
-        steps = size // 12 * 7 + _STEPS_BY_SEMITONES[size % 12]
-        steps = int(math.copysign(steps, shift.semitones))
-    return (5 * shift.semitones - steps) * COMMA_CENTS + octaves
-
-
-def _sounding(part: Part, staves: dict[str, StaffPitch]) -> Iterator[tuple[Bar, list[_Tone]]]:
-    """Give the notes of each bar with their written pitches, in the order in which they sound."""
-    open_ties: dict[tuple[str, str, int], tuple[float, float]] = {}  # voice and pitch: end, cents
-    begins = 0.0
+    sounding = Sounding(part, notation, system, signs_printed=signs_printed)
+    line = _Line(part)
     for bar in part.bars:
-        for staff in staves.values():
-            staff.new_bar()
-        keys = sorted(bar.keys, key=_at, reverse=True)
-        tones: list[_Tone] = []
-        for note in sorted(bar.notes, key=_at):
-            while keys and keys[-1].at <= note.at + _NEAR:
-                _change_key(staves, keys.pop())
-            who = (note.voice, note.step, note.octave)
-            ended, held = open_ties.pop(who, _NO_TIE) if open_ties else _NO_TIE
-            tied = abs(ended - begins - note.at) < _NEAR
-            on_staff = staves[note.staff]
-            sound = on_staff.pitch(note.step, note.octave, note.sign, note.alter, held if tied else None)
-            if note.tie_starts:
-                open_ties[who] = (begins + note.at + note.length, sound.cents)
-            tones.append(_Tone(note, sound.cents, sound.kind, tied, note.length))
-        while keys:
-            _change_key(staves, keys.pop())
-        begins += bar.length
-        yield bar, tones
-
-
-def _change_key(staves: dict[str, StaffPitch], change: KeyChange) -> None:
-    for number, staff in staves.items():
-        if change.staff in ("", number):
-            staff.set_key(change.key)
+        tones = sounding.tones(bar, voice)
+        line.add_bar(bar, [tone for tone in tones if staff in ("", tone.written.staff)])
+    items, beat, tempo = line.finish(quarters_a_minute)
+    return VoiceLine(
+        items,
+        tuple(line.places),
+        tempo,
+        beat,
+        sounding.conflicts(),
+        line.n_graces,
+        line.has_chords,
+        tuple(sounding.shifts),
+    )
 
 
 class _Line:
     """The line while it is put together; a silence is a plain count of quarter notes."""
 
-    def __init__(self, part: Part, notation: Notation) -> None:
-        self._part, self._notation = part, notation
-        self._items: list[_Tone | float | Mark] = []
-        self._places: list[Place] = []
+    def __init__(self, part: Part) -> None:
+        self._part = part
+        self._items: list[Tone | float | Mark] = []
         self._end: int | None = None  # where the breath or phrase end behind the last of them stands
-        self._last: _Tone | None = None  # which a tie or an overlap can still change
+        self._last: Tone | None = None  # which a tie or an overlap can still change
         self._cursor = 0.0  # where in the bar the line has come to
         self._lacks = 0.0  # what the bar lacks, at its start, when it is a pickup
         self._n_bars = 0
-        self._n_graces = 0
-        self._has_chords = False
-        self._shifts: dict[Shift, float] = {}
+        self.places: list[Place] = []
+        self.n_graces = 0
+        self.has_chords = False
 
-    def add_bar(self, bar: Bar, tones: Sequence[_Tone]) -> None:
+    def add_bar(self, bar: Bar, tones: Sequence[Tone]) -> None:
         """Take the notes that the voice has in a bar, in order of time."""
-        marks = sorted(bar.marks, key=lambda mark: mark[0], reverse=True)
+        marks = sorted(bar.marks, key=_first, reverse=True)
         while marks and marks[-1][0] <= 0:
             self._mark(marks.pop()[1])
         if self._n_bars:
@@ -221,7 +135,7 @@ class _Line:
         self._lacks = max(bar.meter.quarters - bar.length, 0.0) if is_first else 0.0
         for group in _groups(tones):
             at = group[0].written.at
-            while marks and marks[-1][0] <= at + _NEAR:
+            while marks and marks[-1][0] <= at + NEAR:
                 self._mark(marks.pop()[1])
             self._rest_until(at)
             self._sound(bar, group)
@@ -230,71 +144,47 @@ class _Line:
             self._mark(marks.pop()[1])
         self._n_bars += 1
 
-    def finish(self, conflicts: tuple[str, ...], staff: str) -> VoiceLine:
-        """End the line, and count it in beats."""
+    def finish(self, quarters_a_minute: float | None) -> tuple[tuple[Item, ...], float, float | None]:
+        """End the line; give it counted in beats and laid out in time, with the beat and the tempo."""
         self._mark(Mark.PHRASE_END)
-        tones = [item for item in self._items if isinstance(item, _Tone)]
-        beat = usual_beat([tone.quarters for tone in tones if not tone.written.grace])
-        return VoiceLine(
-            tuple(_item(item, beat) for item in self._items),
-            tuple(self._places),
-            beat,
-            conflicts,
-            self._n_graces,
-            self._has_chords,
-            tuple(self._shifts),
-            staff,
+        beat = usual_beat(
+            [item.quarters for item in self._items if isinstance(item, Tone) and not item.written.grace]
         )
+        tempo = quarters_a_minute / beat if quarters_a_minute else None
+        return tuple(_laid_out(self._items, beat, tempo or DEFAULT_TEMPO)), beat, tempo
 
-    def _sound(self, bar: Bar, group: Sequence[_Tone]) -> None:
+    def _sound(self, bar: Bar, group: Sequence[Tone]) -> None:
         """Add the highest of the notes that start together."""
-        top = self._shifted(group[0])
+        top = group[0]
         if len(group) > 1:
-            top = max(top, *map(self._shifted, group[1:]), key=_cents)
-            self._has_chords = True
+            top = max(group, key=_cents)
+            self.has_chords = True
         written, last = top.written, self._last
         if not LOWEST_CENTS <= top.cents <= HIGHEST_CENTS:
             self._part.damaged(OUT_OF_REACH, bar.label)
             return
-        if last is not None and written.at < self._cursor - _NEAR:
+        if last is not None and written.at < self._cursor - NEAR:
             last.quarters -= self._cursor - written.at
-            self._has_chords = True
-        if (
-            last is not None
-            and top.tied
-            and (last.written.step, last.written.octave) == (written.step, written.octave)
-        ):
+            self.has_chords = True
+        if last is not None and top.tied and who(last.written) == who(written):
             last.quarters += written.length
         else:
-            self._add(top)
-            beat = round(1 + (written.at + self._lacks) / bar.meter.beat, 6)
-            self._places.append(Place(bar.label, beat))
-            self._n_graces += written.grace
             self._last = top
+            self._add(top)
+            self.places.append(Place(bar.label, round(1 + (written.at + self._lacks) / bar.meter.beat, 6)))
+            self.n_graces += written.grace
         self._cursor = written.at + written.length
         for tone in group:
             if tone.written.mark is not None:
                 self._mark(tone.written.mark)
 
-    def _shifted(self, tone: _Tone) -> _Tone:
-        """Move a note of a transposing part to where it sounds."""
-        shift = tone.written.shift
-        if shift is None:
-            return tone
-        if shift not in self._shifts:
-            self._shifts[shift] = shift_cents(shift, self._notation)
-        tone.cents += self._shifts[shift]
-        if tone.kind is InputKind.KEYS and tone.cents % KEY_CENTS:
-            tone.kind = InputKind.TUNED
-        return tone
-
     def _rest_until(self, at: float) -> None:
-        if at > self._cursor + _NEAR:
+        if at > self._cursor + NEAR:
             self._add(at - self._cursor)
             self._cursor = at
             self._last = None
 
-    def _add(self, item: _Tone | float) -> None:
+    def _add(self, item: Tone | float) -> None:
         self._items.append(item)
         self._end = None
 
@@ -311,12 +201,12 @@ class _Line:
             self._items[self._end] = mark
 
 
-def _groups(tones: Iterable[_Tone]) -> Iterator[list[_Tone]]:
+def _groups(tones: Iterable[Tone]) -> Iterator[list[Tone]]:
     """Put together what starts together: chords, and notes of the voice that stand at one time."""
-    group: list[_Tone] = []
+    group: list[Tone] = []
     for tone in tones:
         note = tone.written
-        together = group and not note.grace and abs(note.at - group[0].written.at) < _NEAR
+        together = group and not note.grace and abs(note.at - group[0].written.at) < NEAR
         if group and (note.chord or (together and not group[0].written.grace)):
             group.append(tone)
             continue
@@ -327,12 +217,22 @@ def _groups(tones: Iterable[_Tone]) -> Iterator[list[_Tone]]:
         yield group
 
 
-def _item(item: _Tone | float | Mark, beat: float) -> Item:
-    """Give an item of the line, counted in beats and without times."""
-    if isinstance(item, _Tone):
-        graced = GRACE_BEATS if item.written.grace else 0.0
-        return Note(item.cents, 0.0, 0.0, item.kind, _beats(graced + item.quarters / beat))
-    return item if isinstance(item, Mark) else Silence(0.0, _beats(item / beat))
+def _laid_out(items: Iterable[Tone | float | Mark], beat: float, tempo: float) -> Iterator[Item]:
+    """Give the items of a line, counted in beats, one after another in time."""
+    beat_s = 60.0 / tempo
+    gone = 0.0
+    for item in items:
+        if isinstance(item, Tone):
+            graced = GRACE_BEATS if item.written.grace else 0.0
+            beats = _beats(graced + item.quarters / beat)
+            yield Note(item.cents, gone * beat_s, beats * beat_s, item.kind, beats)
+        elif isinstance(item, Mark):
+            yield item
+            continue
+        else:
+            beats = _beats(item / beat)
+            yield Silence(beats * beat_s, beats)
+        gone += beats
 
 
 def _beats(beats: float) -> float:

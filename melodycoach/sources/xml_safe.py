@@ -17,7 +17,7 @@ from __future__ import annotations
 
 import codecs
 import re
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from types import MappingProxyType
 from typing import TYPE_CHECKING, NoReturn
 from xml.parsers import expat
@@ -25,7 +25,7 @@ from xml.parsers import expat
 from melodycoach.errors import MusicFileError, shorten
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Mapping
+    from collections.abc import Callable, Mapping, MutableMapping
 
 MAX_FILE_BYTES = 20 * 1024 * 1024
 """A longer file is no score of one melody; the same holds for what comes out of a zip."""
@@ -71,6 +71,9 @@ _BREAKS_OFF = frozenset(
 class Handlers:
     """What is done at the elements of a document, by their names; others are passed over.
 
+    The text of an element is what stands behind the last tag in it, without white space around it, cut
+    at `MAX_TEXT`.
+
     Parameters
     ----------
     root
@@ -78,13 +81,16 @@ class Handlers:
     starts
         Called with the attributes of an element, as it opens.
     ends
-        Called with the text of an element, as it closes: what stands behind the last tag, without
-        white space around it, cut at `MAX_TEXT`.
+        Called with the text of an element, as it closes.
+    kept, texts
+        The text of an element that is one of `kept` is only put into `texts`, under its name.
     """
 
     root: Callable[[str], None]
-    starts: Mapping[str, Callable[[dict[str, str]], None]]
-    ends: Mapping[str, Callable[[str], None]]
+    starts: Mapping[str, Callable[[dict[str, str]], None]] = field(default_factory=dict)
+    ends: Mapping[str, Callable[[str], None]] = field(default_factory=dict)
+    kept: frozenset[str] = frozenset()
+    texts: MutableMapping[str, str] = field(default_factory=dict)
 
 
 def parse_xml(data: bytes, where: str, handlers: Handlers) -> tuple[str, ...]:
@@ -137,8 +143,10 @@ def plain_text(text: str, longest: int = 120) -> str:
     >>> plain_text("Sabah" + chr(0x9B) + "\n  şarkısı")
     'Sabah şarkısı'
     """
-    visible = "".join(c if c.isprintable() else " " for c in text[: 4 * longest])
-    return shorten(" ".join(visible.split()), longest)
+    text = text[: 4 * longest]
+    if not text.isprintable():
+        text = "".join(c if c.isprintable() else " " for c in text)
+    return shorten(" ".join(text.split()), longest)
 
 
 class _Walk:
@@ -146,7 +154,6 @@ class _Walk:
 
     def __init__(self, where: str, encoding: str, handlers: Handlers) -> None:
         self._where = where
-        self._n_elements = 0
         self._parser = parser = expat.ParserCreate(encoding)
         parser.buffer_text = True
         parser.EntityDeclHandler = self._refuse_entity
@@ -170,39 +177,39 @@ class _Walk:
         Two calls for each element are most of the time that reading takes, so what they need are
         plain variables of this function.
         """
-        texts: list[str] = []
-        depth = 0
-        handler_at_start, handler_at_end = handlers.starts.get, handlers.ends.get
+        starts, ends, kept, texts = handlers.starts, handlers.ends, handlers.kept, handlers.texts
+        pieces: list[str] = []  # of text, since the last tag
+        depth = n_elements = 0
 
         def start(name: str, attributes: dict[str, str]) -> None:
-            nonlocal depth
+            nonlocal depth, n_elements
             depth += 1
-            if depth == 1:
+            n_elements += 1
+            if n_elements == 1:
                 handlers.root(name)
-            elif depth > MAX_DEPTH:
+            elif depth > MAX_DEPTH or n_elements > MAX_ELEMENTS:
                 self._too_much()
-            texts.clear()
-            handler = handler_at_start(name)
-            if handler is not None:
-                handler(attributes)
+            pieces.clear()
+            if name in starts:
+                starts[name](attributes)
 
         def end(name: str) -> None:
             nonlocal depth
             depth -= 1
-            handler = handler_at_end(name)
-            if handler is not None:
-                handler("".join(texts).strip()[:MAX_TEXT])
-            texts.clear()
-            self._n_elements += 1
+            if name in kept:
+                texts[name] = "".join(pieces).strip()[:MAX_TEXT]
+            elif name in ends:
+                ends[name]("".join(pieces).strip()[:MAX_TEXT])
+            pieces.clear()
 
         self._parser.StartElementHandler = start
         self._parser.EndElementHandler = end
-        self._parser.CharacterDataHandler = texts.append
+        self._parser.CharacterDataHandler = pieces.append
 
     def _check(self, n_bytes: int) -> None:
         """Hold what has been read so far against the caps that need no look at every element."""
         held = n_bytes - self._parser.CurrentByteIndex
-        if held > MAX_TAG_BYTES or len(self._parser.intern) > MAX_NAMES or self._n_elements > MAX_ELEMENTS:
+        if held > MAX_TAG_BYTES or len(self._parser.intern) > MAX_NAMES:
             self._too_much()
 
     def _too_much(self) -> NoReturn:

@@ -8,7 +8,6 @@ octave, sign, and the number that the file gives as ``alter``.
 
 from __future__ import annotations
 
-from collections import Counter
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, NamedTuple
 
@@ -16,6 +15,10 @@ if TYPE_CHECKING:
     from melodycoach.core.note import Mark
     from melodycoach.sources.accidentals import Sign
     from melodycoach.sources.staff_pitch import KeyEntry
+
+
+NEAR = 1e-6
+"""What is no further apart, in quarter notes, is at one time."""
 
 
 class Shift(NamedTuple):
@@ -41,7 +44,17 @@ NO_METER = Meter(1.0, 0.0)
 """Where a score gives no time signature: beats are quarter notes, bars are as long as they are."""
 
 
-class WrittenNote(NamedTuple):
+class PrintedPitch(NamedTuple):
+    """Where a note stands on its staff and what is printed beside it, as `StaffPitch.pitch` takes it."""
+
+    step: str
+    octave: int
+    sign: Sign | None
+    alter: float | None
+
+
+@dataclass(slots=True)
+class WrittenNote:
     """One note of a score.
 
     Parameters
@@ -50,14 +63,14 @@ class WrittenNote(NamedTuple):
         In quarter notes; a grace note has no length.
     voice, staff
         As the file numbers them.
-    step, octave, sign, alter
-        The pitch as printed.
+    pitch
+        As printed.
     shift
         Of a transposing part, else None.
     grace, chord
         Grace notes take no time; a note of a chord starts with the note before it.
-    tie_starts, tie_stops
-        It is tied to the note after, and before.
+    tied_on
+        It is tied to the note after it.
     mark
         What stands behind it.
     """
@@ -66,15 +79,11 @@ class WrittenNote(NamedTuple):
     length: float
     voice: str
     staff: str
-    step: str
-    octave: int
-    sign: Sign | None
-    alter: float | None
+    pitch: PrintedPitch
     shift: Shift | None
     grace: bool
     chord: bool
-    tie_starts: bool
-    tie_stops: bool
+    tied_on: bool
     mark: Mark | None
 
 
@@ -144,10 +153,8 @@ class Part:
         As the file gives them; the name may be empty.
     bars
         In order.
-    n_by_voice
-        Notes with a pitch in each voice.
     n_unpitched, n_cues
-        Notes that are left out: without pitch, and small ones that show another part.
+        Notes that are left out: of percussion, and small ones that show another part.
     is_percussion
         It stands in a percussion clef or plays on the percussion channel.
     ornaments
@@ -159,12 +166,16 @@ class Part:
     id: str
     name: str = ""
     bars: list[Bar] = field(default_factory=list)
-    n_by_voice: Counter[str] = field(default_factory=Counter)
     n_unpitched: int = 0
     n_cues: int = 0
     is_percussion: bool = False
     ornaments: set[str] = field(default_factory=set)
     damage: dict[str, list[str]] = field(default_factory=dict)
+
+    @property
+    def has_notes(self) -> bool:
+        """Tell whether there is a note with a pitch in it."""
+        return any(bar.notes for bar in self.bars)
 
     def damaged(self, kind: str, label: str) -> None:
         """Keep that something in a bar was not as it must be."""

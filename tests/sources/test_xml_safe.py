@@ -12,7 +12,7 @@ from melodycoach.core.pitch import COMMAS_53, PitchNames
 from melodycoach.core.sheet import Sheet
 from melodycoach.errors import MusicFileError
 from melodycoach.sources.music_xml import read_music_xml
-from melodycoach.sources.xml_parts import MAX_BARS, MAX_NOTES
+from melodycoach.sources.xml_elements import MAX_BARS, MAX_NOTES
 from melodycoach.sources.xml_safe import (
     MAX_DEPTH,
     MAX_ELEMENTS,
