@@ -271,6 +271,8 @@ class StaffPitch:
         return (f"{holds.source} with {found}: read as {by_sign}, as the sign says, not {by_number}",)
 
     def _note(self, cents: float) -> StaffNote:
+        if self.notation is Notation.FOLK:  # its signs are rounder than the degrees that they stand for
+            return StaffNote(cents, InputKind.TUNED)
         if self.notation is not Notation.LITERAL:
             return StaffNote(cents, InputKind.TYPED)
         key = round(cents / KEY_CENTS) * KEY_CENTS

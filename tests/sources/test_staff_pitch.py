@@ -268,9 +268,14 @@ def test_a_literal_tie_keeps_its_kind():
     assert staff(Notation.LITERAL).pitch("B", 4, tied_from=7050.0).kind is InputKind.TUNED
 
 
-@pytest.mark.parametrize("notation", [notation for notation in Notation if notation is not Notation.LITERAL])
-def test_notes_of_every_other_notation_are_typed(notation: Notation):
+@pytest.mark.parametrize("notation", [Notation.AEU, Notation.ARABIC, Notation.PERSIAN])
+def test_notes_of_aeu_and_of_quarter_tones_are_typed(notation: Notation):
     assert staff(notation).pitch("B", 4, FLAT).kind is InputKind.TYPED
+
+
+def test_folk_signs_are_rounder_than_the_degrees_they_stand_for():
+    """F sharp 3 stands for eviç (4 commas in AEU), B flat 2 for segâh (1 comma): common practice."""
+    assert staff(Notation.FOLK).pitch("F", 5, Sign("sharp-3")).kind is InputKind.TUNED
 
 
 # --- conflicts
