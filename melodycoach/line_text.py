@@ -7,7 +7,8 @@ on it; in a file it is written at the line's own pace.
 from __future__ import annotations
 
 from dataclasses import dataclass, field, replace
-from itertools import pairwise, zip_longest
+from itertools import chain, count, pairwise, zip_longest
+from pathlib import Path
 from statistics import median
 from typing import TYPE_CHECKING
 
@@ -16,6 +17,7 @@ from melodycoach.core.note import Item, Mark, Note
 from melodycoach.core.sheet import SheetKind
 from melodycoach.errors import NoteTextError, StorageError, UnknownNameError
 from melodycoach.reading import read_file
+from melodycoach.sources.no_music import no_music
 from melodycoach.sources.note_scan import FASTEST_TEMPO, SLOWEST_TEMPO
 from melodycoach.sources.note_text import (
     DEFAULT_TEMPO,
@@ -26,12 +28,12 @@ from melodycoach.sources.note_text import (
     read_tokens,
     write_note_text,
 )
-from melodycoach.sources.sheet_file import FIRST_BYTES, kind_of, read_sheet, read_utf_8
+from melodycoach.sources.sheet_file import FIRST_BYTES, kind_of, read_sheet, read_text
 from melodycoach.storing import write_whole
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
-    from pathlib import Path
+    from datetime import date
 
     from melodycoach.core.pitch import PitchNames
     from melodycoach.core.session import Line
@@ -76,7 +78,7 @@ def open_line(path: Path, names: PitchNames) -> tuple[Page, tuple[Item, ...]]:
     if kind_of(data) is not SheetKind.NOTE_TEXT:
         sheet = read_sheet(data, path.name, names)
         return _page_of(sheet), sheet.items
-    read = read_note_text(read_utf_8(data, str(path)), names, path.name)
+    read = read_note_text(read_text(data, str(path)), names, path.name)
     remarks = tuple((comment, _note_from(read.items, comment.before)) for comment in read.comments)
     return Page(read.headers, remarks), read.items
 
@@ -128,15 +130,42 @@ def text_path(path: Path) -> Path:
     return path.with_suffix(".txt")
 
 
+def path_to_save(path: Path | None, kind: SheetKind, day: date) -> Path:
+    """Propose where a line is saved: in its own file, beside that, or under the day in this folder.
+
+    Parameters
+    ----------
+    path, kind
+        Where the line comes from, and what kind of file that is; no path: from no file.
+    day
+        Today.
+
+    Examples
+    --------
+    >>> from datetime import date
+    >>> from pathlib import Path
+    >>> path_to_save(Path("draft.mid"), SheetKind.MIDI, date(2026, 3, 9)).name
+    'draft.txt'
+    >>> path_to_save(None, SheetKind.NOTE_TEXT, date(2026, 3, 9)).name
+    'line-2026-03-09.txt'
+    """
+    if path is not None:
+        return path if kind is SheetKind.NOTE_TEXT else text_path(path)
+    names = chain([f"line-{day:%Y-%m-%d}"], (f"line-{day:%Y-%m-%d}-{n}" for n in count(2)))
+    return next(proposed for name in names if not (proposed := Path(f"{name}.txt")).exists())
+
+
 def _refuse_other_kinds(path: Path) -> None:
     try:
         with path.open("rb") as file:
-            kind = kind_of(file.read(FIRST_BYTES))
+            begins = file.read(FIRST_BYTES)
     except OSError:
         return  # it is not there yet, or writing it will say what is wrong
-    if kind is not SheetKind.NOTE_TEXT:
+    kind = kind_of(begins)
+    found = no_music(begins) or ("" if kind is SheetKind.NOTE_TEXT else kind.value)
+    if found:
         raise StorageError(
-            f"{path}: there is a file of another kind there, {kind}, and a line is saved as note text; "
+            f"{path}: there is a file of another kind there, {found}, and a line is saved as note text; "
             f"save it as {text_path(path)}"
         )
 

@@ -29,10 +29,19 @@ def stamp_of(path: Path) -> Stamp | None:
     return Stamp(found.st_mtime_ns, found.st_size, found.st_ino)
 
 
-class Watch:
-    """Tells which files were saved since they were last told of.
+class Sight(NamedTuple):
+    """What is seen of a file: it was saved, or it has gone."""
 
-    A file is told of once it has kept still from one look to the next, so half a save is not read.
+    name: str
+    is_there: bool
+
+
+class Watch:
+    """Tells which files were saved, and which have gone, since they were last told of.
+
+    A file is told of once it has kept still from one look to the next, so half a save is not read, and
+    an editor may take it away for a moment to put another in its place. One that has gone is told of
+    once; when it comes back it counts as saved.
 
     Parameters
     ----------
@@ -44,23 +53,19 @@ class Watch:
 
     def __init__(self, names: Sequence[str], pause: Callable[[], None]) -> None:
         self._pause = pause
-        self._seen = {name: stamp_of(Path(name)) for name in names}
-        self._moving: dict[str, Stamp] = {}
+        self._told: dict[str, Stamp | None] = {name: stamp_of(Path(name)) for name in names}
+        self._last = dict(self._told)
 
-    def saved(self) -> Iterator[str]:
-        """Give the name of each file that is saved, as long as anyone asks."""
+    def sights(self) -> Iterator[Sight]:
+        """Give what is seen of each file, as long as anyone asks."""
         while True:
             self._pause()
             yield from self._look()
 
-    def _look(self) -> Iterator[str]:
-        for name, seen in self._seen.items():
-            stamp = stamp_of(Path(name))
-            if stamp is None or stamp == seen:
-                self._moving.pop(name, None)
-            elif self._moving.get(name) != stamp:
-                self._moving[name] = stamp
-            else:
-                del self._moving[name]
-                self._seen[name] = stamp
-                yield name
+    def _look(self) -> Iterator[Sight]:
+        for name, told in self._told.items():
+            stamp, before = stamp_of(Path(name)), self._last[name]
+            self._last[name] = stamp
+            if stamp == before and stamp != told:
+                self._told[name] = stamp
+                yield Sight(name, stamp is not None)

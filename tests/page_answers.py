@@ -226,6 +226,7 @@ def answer(bars: bool = True, **changes: Any) -> dict[str, Any]:
             "probability": 0.2,
             "for_leader": [{"says": "you rested on hüseynî", "nats": 1.31, "notes": [8]}],
             "for_rival": [{"says": "you passed through nevâ", "nats": -0.42, "notes": [4, 5, 6, 9]}],
+            "rest_nats": 0.39,
         },
         "keyboard_note": "",
         "stay_in": None,

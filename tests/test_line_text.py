@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from datetime import date
+from pathlib import Path
 from typing import TYPE_CHECKING
 
 import mido
@@ -13,13 +15,19 @@ from melodycoach.core.note import InputKind, Mark, Note, Silence
 from melodycoach.core.session import empty_line, rewrite
 from melodycoach.core.sheet import Sheet, SheetKind
 from melodycoach.errors import MusicFileError, NoteTextError, StorageError
-from melodycoach.line_text import Page, _page_of, open_line, played_until, save_line, text_path
+from melodycoach.line_text import (
+    Page,
+    _page_of,
+    open_line,
+    path_to_save,
+    played_until,
+    save_line,
+    text_path,
+)
 from melodycoach.sources.note_text import Headers, read_note_text
 from melodycoach.sources.pack_file import load_pack
 
 if TYPE_CHECKING:
-    from pathlib import Path
-
     from melodycoach.core.session import Line
 
 PACK = load_pack("makam")
@@ -97,7 +105,13 @@ def test_a_line_is_saved_under_a_name_of_note_text(tmp_path: Path, name: str) ->
 
 
 @pytest.mark.parametrize(
-    ("data", "kind"), [(b"MThd\0\0\0\6", "MIDI file"), (b"PK\x03\x04", "MusicXML"), (b"<?xml", "MusicXML")]
+    ("data", "kind"),
+    [
+        (b"MThd\0\0\0\6", "MIDI file"),
+        (b"PK\x03\x04", "MusicXML"),
+        (b"<?xml", "MusicXML"),
+        (b"%PDF-1.7", "a document"),
+    ],
 )
 def test_a_file_of_another_kind_is_never_written_over(tmp_path: Path, data: bytes, kind: str) -> None:
     path = tmp_path / "draft.mid"
@@ -109,3 +123,22 @@ def test_a_file_of_another_kind_is_never_written_over(tmp_path: Path, data: byte
         f"save it as {tmp_path / 'draft.txt'}"
     )
     assert path.read_bytes() == data
+
+
+def test_a_line_is_saved_in_its_own_file_or_beside_one_that_holds_no_text() -> None:
+    day = date(2026, 3, 9)
+    assert path_to_save(Path("drafts/sketch.notes"), SheetKind.NOTE_TEXT, day) == Path("drafts/sketch.notes")
+    assert path_to_save(Path("drafts/sketch.mid"), SheetKind.MIDI, day) == Path("drafts/sketch.txt")
+    assert path_to_save(Path("song.musicxml"), SheetKind.MUSIC_XML, day) == Path("song.txt")
+
+
+def test_a_line_from_nowhere_is_saved_under_the_day_and_never_where_there_is_a_file(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.chdir(tmp_path)
+    names = []
+    for _ in range(3):
+        path = path_to_save(None, SheetKind.NOTE_TEXT, date(2026, 3, 9))
+        path.touch()
+        names.append(str(path))
+    assert names == ["line-2026-03-09.txt", "line-2026-03-09-2.txt", "line-2026-03-09-3.txt"]

@@ -1,4 +1,4 @@
-"""Which files were saved since they were last looked at."""
+"""Which files were saved, and which have gone, since they were last looked at."""
 
 from __future__ import annotations
 
@@ -22,8 +22,10 @@ def saves(names: list[Path], steps: list[Callable[[], object]], n_told: int) -> 
         done += 1
         next(looks)()
 
-    told = Watch([str(name) for name in names], pause).saved()
-    return [name.rpartition("/")[2] for name in islice(told, n_told)], done
+    told = Watch([str(name) for name in names], pause).sights()
+    return [
+        name.rpartition("/")[2] + ("" if is_there else " has gone") for name, is_there in islice(told, n_told)
+    ], done
 
 
 def nothing() -> None:
@@ -51,15 +53,23 @@ def test_an_editor_that_puts_another_file_in_its_place_is_noticed(tmp_path: Path
 def test_a_file_that_is_missing_for_a_moment_is_waited_for(tmp_path: Path) -> None:
     path = tmp_path / "a"
     path.write_text("1")
-    steps = [path.unlink, nothing, lambda: path.write_text("22"), nothing]
-    assert saves([path], steps, 1) == (["a"], 4)
+    steps = [path.unlink, lambda: path.write_text("22"), nothing]
+    assert saves([path], steps, 1) == (["a"], 3)
+
+
+def test_a_file_that_has_gone_is_told_once_and_saved_when_it_is_back_even_as_it_was(tmp_path: Path) -> None:
+    path, elsewhere = tmp_path / "a", tmp_path / "b"
+    path.write_text("1")
+    away, back = (lambda: path.rename(elsewhere)), (lambda: elsewhere.rename(path))
+    steps = [away, nothing, nothing, nothing, back, nothing]
+    assert saves([path], steps, 2) == (["a has gone", "a"], 6)
 
 
 def test_a_file_that_goes_while_it_is_being_saved_is_not_told(tmp_path: Path) -> None:
     path = tmp_path / "a"
     path.write_text("1")
-    steps = [lambda: path.write_text("22"), path.unlink, nothing, lambda: path.write_text("333"), nothing]
-    assert saves([path], steps, 1) == (["a"], 5)
+    steps = [lambda: path.write_text("22"), path.unlink, lambda: path.write_text("333"), nothing]
+    assert saves([path], steps, 1) == (["a"], 4)
 
 
 def test_each_of_several_files_is_told_as_often_as_it_is_saved(tmp_path: Path) -> None:

@@ -25,13 +25,16 @@ def watch(options: argparse.Namespace, question: Question, files: tuple[str, ...
 
     for name in files:
         read_bytes(name)  # what is not there at all is not waited for
-    saves = Watch(files, lambda: time.sleep(POLL_S))
+    files_seen = Watch(files, lambda: time.sleep(POLL_S))
     last = {name: answer(question, name) for name in files}
     read = {name: one for name, one in last.items() if "error" not in one}  # the last that could be read
     for one in last.values():
         _show_whole(options, one)
     say(f"watching {', '.join(files)}; Ctrl-C ends")
-    for name in saves.saved():
+    for name, is_there in files_seen.sights():
+        if not is_there:
+            say(f"{time.strftime('%H:%M:%S')} {name} is gone; waiting for it to come back")
+            continue
         now = answer(question, name)
         say(f"{time.strftime('%H:%M:%S')} {name} saved")
         if "error" in now or name not in read:

@@ -31,10 +31,13 @@ def json_text(data: object) -> str:
 
 
 def say(sentence: str, indent: str = "") -> None:
-    """Print a sentence at once; a file's name or title in it cannot upset the terminal."""
-    from melodycoach.screen.text import tidy
+    """Print a sentence at once, as wide as the terminal; what does not fit stands further in, below it.
 
-    print(f"{indent}{tidy(sentence)}", flush=True)
+    A file's name or title in it cannot upset the terminal.
+    """
+    from melodycoach.report.text_lines import painted, wrapped
+
+    print(painted(wrapped(sentence, columns(), indent, f"{indent}  "), colour=False), flush=True)
 
 
 def complain(sentence: str, faults: Sequence[str] = ()) -> None:

@@ -8,8 +8,9 @@ from __future__ import annotations
 from difflib import SequenceMatcher
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.report.check_words import is_clear, parts_of, turned_to
+from melodycoach.report.check_words import headline, is_clear, parts_of, sounds_elsewhere, turned_to
 from melodycoach.report.places import numbered_place
+from melodycoach.report.words import pitch
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator, Mapping, Sequence
@@ -49,7 +50,7 @@ def what_changed(before: Answer, after: Answer) -> list[str]:
     now_by_then = _moved(before["notes"], after["notes"])
     said = [
         *_whole(before, after),
-        *_stay_in(before["stay_in"], after["stay_in"], now_by_then),
+        *_stay_in(before, after, now_by_then),
         *_off_notes(before, after, now_by_then),
         *_changes(before["changes"], after["changes"], now_by_then),
         *_steps(before, after),
@@ -93,7 +94,10 @@ def _whole(before: Answer, after: Answer) -> Iterator[str]:
     if more:
         yield f"{after['n_notes']} notes, {abs(more)} {'more' if more > 0 else 'fewer'} than before"
     then, now = before["whole"], after["whole"]
-    if (then["mode"], then["decided"]) != (now["mode"], now["decided"]):
+    if any(is_clear(change) for one in (before, after) for change in one["changes"]):
+        if headline(before) != headline(after):
+            yield f"the verdict is now: {headline(after)}; it was: {headline(before)}"
+    elif (then["mode"], then["decided"]) != (now["mode"], now["decided"]):
         yield f"the verdict is now: {now['verdict']}; it was: {then['verdict']}"
     elif abs(points := _points(now) - _points(then)) >= TOLD_POINTS:
         likelier = "likelier" if points > 0 else "less likely"
@@ -107,21 +111,23 @@ def _points(whole: Answer) -> int:
     return round(100 * float(whole["probability"]))
 
 
-def _stay_in(then: Answer | None, now: Answer | None, now_by_then: Mapping[int, int]) -> Iterator[str]:
+def _stay_in(before: Answer, after: Answer, now_by_then: Mapping[int, int]) -> Iterator[str]:
+    then, now = before["stay_in"], after["stay_in"]
     if then is None or now is None:
         return
     if now["stays"]:
         if not then["stays"]:
             yield f"it stays in {now['name']} now"
     elif then["stays"]:
-        yield f"it no longer stays in {now['name']}: {_leaving(now)}"
+        yield f"it no longer stays in {now['name']}: {_leaving(after)}"
     elif now_by_then.get(then["first"]["note"]) != now["first"]["note"]:
-        yield f"it first leaves {now['name']} elsewhere now: {_leaving(now)}"
+        yield f"it first leaves {now['name']} elsewhere now: {_leaving(after)}"
 
 
-def _leaving(stay_in: Answer) -> str:
-    first = stay_in["first"]
-    return f"{numbered_place(first['place'], first['note'])}: {first['says']}"
+def _leaving(answer: Answer) -> str:
+    first = answer["stay_in"]["first"]
+    where = "" if sounds_elsewhere(answer) else f"{numbered_place(first['place'], first['note'])}: "
+    return f"{where}{first['says']}"
 
 
 def _reading(before: Answer, after: Answer) -> Iterator[str]:
@@ -137,7 +143,7 @@ def _off_notes(before: Answer, after: Answer, now_by_then: Mapping[int, int]) ->
     now = {note["number"]: note for note in after["notes"] if note["off"]}
     known = {now_by_then.get(number) for number in then}
     yield from _listed(
-        f"off the mode: {_note(note)}: {note['off']['says']}"
+        f"off the mode: {_note(note)}: {note['off']['says']}; {_mend(note['off'])} mends it"
         for number, note in now.items()
         if number not in known
     )
@@ -155,6 +161,10 @@ def _off_notes(before: Answer, after: Answer, now_by_then: Mapping[int, int]) ->
 
 def _note(note: Answer) -> str:
     return f"{numbered_place(note, note['number'])}, {note['name'] or note['written']}"
+
+
+def _mend(off: Answer) -> str:
+    return pitch({"name": off["mend"], "written": off["mend_written"]})
 
 
 def _changes(
@@ -201,12 +211,12 @@ def _steps(before: Answer, after: Answer) -> Iterator[str]:
     yield from _listed(
         f"owed again, of {mode}: {step['says']}"
         for (mode, name), step in owed_now.items()
-        if (mode, name) in heard_then
+        if (mode, name) in heard_then and step["need"] != "colour"
     )
     yield from _listed(
         f"owed now, of {mode}: {step['says']}"
         for (mode, name), step in owed_now.items()
-        if mode not in modes_then
+        if mode not in modes_then and step["need"] != "colour"  # which is welcome, not owed
     )
 
 

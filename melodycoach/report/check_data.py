@@ -42,6 +42,7 @@ if TYPE_CHECKING:
     from melodycoach.core.check import Checked, Leaving, Stretch
     from melodycoach.core.mode import Mode
     from melodycoach.core.pitch import PitchNames
+    from melodycoach.core.span import Span
     from melodycoach.errors import MelodycoachError
 
 FORMAT, VERSION = "melodycoach-check", 1
@@ -203,9 +204,11 @@ def _likelihoods(checked: Checked, after: Sequence[FloatArray]) -> dict[str, Any
 def _notes(checked: Checked, after: Sequence[FloatArray]) -> list[dict[str, Any]]:
     names = checked.model.pack.names
     items = [item for item in checked.line.items if isinstance(item, Note)]
+    phrases = _parts_of_notes(checked.phrases)
+    stretches = _parts_of_notes([one.span for one in checked.stretches])
     rows = []
     for number, (item, heard) in enumerate(zip(items, checked.line.heard, strict=True), 1):
-        stretch = checked.stretch_at(number)
+        stretch = checked.stretches[stretches[number - 1] - 1]
         mode, final = (stretch.mode, stretch.final_units)
         if checked.target is not None:
             mode, final = checked.view[:2]
@@ -215,8 +218,8 @@ def _notes(checked: Checked, after: Sequence[FloatArray]) -> list[dict[str, Any]
             {
                 "number": number,
                 **place_data(checked, number),
-                "phrase": next(n for n, one in enumerate(checked.phrases, 1) if number <= one.last),
-                "stretch": checked.stretches.index(stretch) + 1,
+                "phrase": phrases[number - 1],
+                "stretch": stretches[number - 1],
                 "onset_s": round(item.onset_s, 3),
                 "length_s": round(item.duration_s, 3),
                 "pitch_cents": round(heard.pitch_cents, 2),
@@ -230,6 +233,11 @@ def _notes(checked: Checked, after: Sequence[FloatArray]) -> list[dict[str, Any]
             }
         )
     return rows
+
+
+def _parts_of_notes(parts: Sequence[Span]) -> list[int]:
+    """Give for each note which of the parts that cover the line it lies in, counted from 1."""
+    return [at for at, part in enumerate(parts, 1) for _ in range(part.n_notes)]
 
 
 def _so_far(checked: Checked, number: int) -> FloatArray:

@@ -11,7 +11,16 @@ from typing import TYPE_CHECKING, Any
 
 from melodycoach.report import page_parts as parts
 from melodycoach.report import page_sections as sections
-from melodycoach.report.check_words import aim_words, path_words, verdict_words
+from melodycoach.report.check_words import (
+    aim_words,
+    changes_words,
+    headline,
+    outside_words,
+    size_words,
+    sounds_elsewhere,
+    tempo_words,
+    verdict_words,
+)
 from melodycoach.report.page_blocks import where
 from melodycoach.report.page_chances import DASHES
 from melodycoach.report.page_chart import chart
@@ -19,7 +28,7 @@ from melodycoach.report.page_html import Html, bullets, element, joined
 from melodycoach.report.page_ladder import guests
 from melodycoach.report.page_script import POLICY, SCRIPT
 from melodycoach.report.page_style import STYLE
-from melodycoach.report.words import capital, counted, plain, short_percent
+from melodycoach.report.words import capital, short_percent
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping
@@ -38,7 +47,7 @@ _MARKS = (
     ("ring", "M3 7a5 3.5 0 1 0 10 0a5 3.5 0 1 0 -10 0", "the perde that mends it"),
     ("tone rests", "M4 7h8", "the line rests on it"),
     ("breath", "M6 12l4 -10", "breath; two strokes: end of a phrase"),
-    ("seam", "M8 0v14", "the mode changes"),
+    ("seam", "M8 0v14", "the mode changes: the name is what the notes behind it say by themselves"),
 )
 """The marks of the chart: class, shape, meaning."""
 
@@ -70,13 +79,12 @@ def check_page(answer: Mapping[str, Any], index: str = "") -> str:
             element("script", Html(SCRIPT)),
         ]
     )
-    return whole_page(f"{title}: {answer['whole']['verdict']}", body)
+    return whole_page(f"{title}: {headline(answer)}", body)
 
 
 def _main(answer: Mapping[str, Any]) -> Iterator[Html | None]:
     """Give the sections, in the order in which a composer asks."""
     yield _verdict(answer)
-    yield sections.reading(answer)
     if answer["n_notes"]:
         yield _chart(answer)
         yield element("div", sections.changes(answer), sections.off_notes(answer), class_="two")
@@ -106,8 +114,7 @@ def whole_page(title: str, body: Html) -> str:
 
 def _header(answer: Mapping[str, Any], title: str, index: str) -> Html:
     back = element("p", element("a", "all files", href=index), class_="hint") if index else None
-    tempo = f"{plain(answer['tempo'])} beats a minute" if answer["tempo"] else None
-    facts = [element("bdi", answer["file"]), answer["kind"], counted(answer["n_notes"], "note"), tempo]
+    facts = [element("bdi", answer["file"]), answer["kind"], size_words(answer), tempo_words(answer)]
     return element(
         "header",
         back,
@@ -117,40 +124,51 @@ def _header(answer: Mapping[str, Any], title: str, index: str) -> Html:
 
 
 def _verdict(answer: Mapping[str, Any]) -> Html:
-    whole, heard, aim = answer["whole"], answer["n_notes"] > 0, aim_words(answer)
-    n_off, path = len(answer["off_notes"]), path_words(answer)
-    glance = [
-        element("a", f"{counted(n_off, 'note')} off the mode", href="#off-notes", class_="off")
-        if n_off
-        else "No note is off the mode",
-        element("a", path, href="#changes") if path else "no change of mode",
-    ]
+    first, *more = verdict_words(answer)
     return element(
         "section",
         element("h2", "The answer", class_="aside"),
-        _stay_in(answer["stay_in"]),
-        element("p", capital(verdict_words(answer)), class_="verdict"),
-        element("p", f"{capital(aim)}.") if heard and aim else None,
-        *((element("p", joined(glance, " · "), class_="glance"), sections.leanings(whole)) if heard else ()),
+        _stay_in(answer),
+        element("p", capital(first), class_="verdict"),
+        *(element("p", f"{capital(sentence)}.") for sentence in more),
+        *(_at_a_glance(answer) if answer["n_notes"] else ()),
+        sections.reading(answer),
+        sections.leanings(answer["whole"]) if answer["n_notes"] else None,
         id="answer",
     )
 
 
-def _stay_in(asked: Mapping[str, Any] | None) -> Html | None:
+def _at_a_glance(answer: Mapping[str, Any]) -> Iterator[Html]:
+    """Give what is asked next: how near the line comes to its aim, how often it errs and turns."""
+    aim, off, turns = aim_words(answer), capital(outside_words(answer)), changes_words(answer)
+    if aim:
+        yield element("p", f"{capital(aim)}.")
+    glance = [
+        element("a", off, href="#off-notes", class_="off") if answer["off_notes"] else off,
+        element("a", turns, href="#changes") if answer["changes"] else turns,
+    ]
+    yield element("p", joined(glance, " · "), class_="glance")
+
+
+def _stay_in(answer: Mapping[str, Any]) -> Html | None:
     """Answer whether the line stays in the mode that was asked for."""
+    asked = answer["stay_in"]
     if asked is None:
         return None
     if asked["stays"]:
         return element("p", f"It stays in {asked['name']}.", class_="stays", data_stays="yes")
-    says = joined([f"It does not stay in {asked['name']}.", *_leaves(asked["first"])])
+    if sounds_elsewhere(answer):
+        why: tuple[Content, ...] = (f": {asked['first']['says']}.",)
+    else:
+        why = (".", *_leaves(asked["first"]))
+    says = joined([f"It does not stay in {asked['name']}", *why])
     return element("p", says, class_="leaves", data_stays="no")
 
 
-def _leaves(first: Mapping[str, Any] | None) -> Iterator[Content]:
-    if first is not None:
-        yield " It leaves first with "
-        yield where(first["place"], first["note"])
-        yield f": {first['says']}."
+def _leaves(first: Mapping[str, Any]) -> Iterator[Content]:
+    yield " It leaves first with "
+    yield where(first["place"], first["note"])
+    yield f": {first['says']}."
 
 
 def _chart(answer: Mapping[str, Any]) -> Html:
@@ -160,7 +178,7 @@ def _chart(answer: Mapping[str, Any]) -> Html:
     says = (
         f"The ladder at the left is that of {view['name']}{aim}: a full line is its {final}, a dashed one "
         f"its {dominant}. Below the line is how likely the modes are after each note, from 0 to 100 %, "
-        "heard from the beginning."
+        "of the whole line up to there."
     )
     if guests(answer):
         says += " A dotted line is a perde that the melody uses and this ladder does not have."

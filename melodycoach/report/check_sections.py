@@ -13,8 +13,10 @@ from melodycoach.report.check_words import (
     NATS,
     alike,
     how_sure,
+    off_title,
     parts_of,
     place_of,
+    rest_words,
     rival_sides,
     rival_title,
     span_words,
@@ -192,7 +194,9 @@ def _rival(answer: Answer, width: int) -> list[Line]:
     for name, reasons in sides:
         lines += wrapped(f"for {name}{'' if reasons else ': nothing of weight'}", width, style="strong")
         lines += table([_reason(one, answer["notes"]) for one in reasons], width)
-    return lines + (wrapped(NATS, width, style="faint") if any(reasons for _, reasons in sides) else [])
+    rest = rest_words(answer)
+    lines += wrapped(rest, width)
+    return lines + (wrapped(NATS, width, style="faint") if rest or any(told for _, told in sides) else [])
 
 
 def _reason(reason: Answer, notes: Sequence[Answer]) -> Row:
@@ -232,7 +236,6 @@ def _span_row(where: str, group: Sequence[Answer], answer: Answer) -> Row:
 
 def _how(answer: Answer, width: int) -> list[Line]:
     rows = [Row("lost", says, "off") for says in answer["lost"]]
-    rows += [Row("read", says) for says in answer["read"]]
     facts = (
         ("pitch", answer["reading"]),
         ("compared", answer["compete"]),
@@ -249,7 +252,7 @@ def _fixed(title: str) -> Callable[[Answer], str]:
 
 SECTIONS: tuple[tuple[Callable[[Answer], str], Callable[[Answer, int], list[Line]]], ...] = (
     (_fixed("Where it changes mode"), _changes),
-    (lambda answer: f"Notes off the mode: {len(answer['off_notes'])}", _off_notes),
+    (lambda answer: f"{off_title(answer)}: {len(answer['off_notes'])}", _off_notes),
     (_fixed("Characteristic steps, heard and owed"), _steps),
     (_course_title, _course),
     (rival_title, _rival),

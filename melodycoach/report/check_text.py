@@ -9,10 +9,16 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 from melodycoach.report.check_sections import SECTIONS
-from melodycoach.report.check_words import aim_words, path_words, verdict_words
-from melodycoach.report.places import place_words
-from melodycoach.report.text_lines import BLANK, MIN_COLUMNS, heading, painted, wrapped
-from melodycoach.report.words import capital, counted, percent, plain
+from melodycoach.report.check_words import (
+    aim_words,
+    outside_words,
+    size_words,
+    stays_words,
+    tempo_words,
+    verdict_words,
+)
+from melodycoach.report.text_lines import BLANK, MIN_COLUMNS, Row, heading, painted, table, wrapped
+from melodycoach.report.words import capital, percent
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping
@@ -73,39 +79,29 @@ def _head(answer: Answer, width: int) -> list[Line]:
     lines = [*heading(title, width, "="), *wrapped(_of_file(answer), width), BLANK]
     for style, sentence in _first_answers(answer):
         lines += wrapped(f"{capital(sentence)}.", width, style=style)
-    return lines
+    read = [Row("read", says) for says in answer["read"]]
+    return [*lines, BLANK, *table(read, width)] if read else lines
 
 
 def _of_file(answer: Answer) -> str:
     """Say what was read."""
-    bars = f" in {counted(len(answer['bars']), 'bar')}" if answer["bars"] else ""
-    tempo = f", {plain(answer['tempo'])} beats a minute" if answer["tempo"] else ""
-    return f"{answer['file']}: {answer['kind']}, {counted(answer['n_notes'], 'note')}{bars}{tempo}"
+    facts = (answer["kind"], size_words(answer), tempo_words(answer))
+    return f"{answer['file']}: {', '.join(fact for fact in facts if fact)}"
 
 
 def _first_answers(answer: Answer) -> Iterator[tuple[str, str]]:
     """Give the answers to what is asked first, each with its style."""
     if answer["stay_in"] is not None:
-        yield _stay_in(answer["stay_in"])
-    yield "strong", verdict_words(answer)
+        yield "heard" if answer["stay_in"]["stays"] else "off", stays_words(answer)
+    for sentence in verdict_words(answer):
+        yield "strong", sentence
     if answer["n_notes"]:
-        if answer["changes"]:
-            yield "strong", path_words(answer)
         yield from _likeliest(answer["whole"])
         if answer["in_view"]["is_target"]:
             yield "", aim_words(answer)
-        n_off = len(answer["off_notes"])
-        lie = counted(n_off, "note lies", "notes lie") if n_off else "no note lies"
-        yield "off" if n_off else "", f"{lie} outside {_judge(answer)}"
+        yield "off" if answer["off_notes"] else "", outside_words(answer)
     if answer["lost"]:
         yield "off", "not all of the file could be read; what was lost is said at the end"
-
-
-def _stay_in(asked: Answer) -> tuple[str, str]:
-    if asked["stays"]:
-        return "heard", f"stays in {asked['name']}"
-    first = asked["first"]
-    return "off", f"leaves {asked['name']} at {place_words(first['place'], first['note'])}: {first['says']}"
 
 
 def _likeliest(whole: Answer) -> Iterator[tuple[str, str]]:
@@ -117,13 +113,3 @@ def _likeliest(whole: Answer) -> Iterator[tuple[str, str]]:
     ]
     if likely:
         yield "faint", f"{'next likeliest' if first else 'the likeliest'}: {', '.join(likely)}"
-
-
-def _judge(answer: Answer) -> str:
-    """Name what the notes are judged by."""
-    if answer["in_view"]["is_target"]:
-        return str(answer["in_view"]["name"])
-    if len(answer["stretches"]) > 1:
-        return "the mode of its stretch"
-    likeliest = "" if answer["whole"]["decided"] else ", the likeliest"
-    return f"{answer['in_view']['name']}{likeliest}"

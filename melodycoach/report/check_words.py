@@ -9,8 +9,8 @@ from __future__ import annotations
 from itertools import groupby
 from typing import TYPE_CHECKING, Any, NamedTuple
 
-from melodycoach.report.places import stretch_words
-from melodycoach.report.words import counted, listed, percent
+from melodycoach.report.places import place_words, stretch_words
+from melodycoach.report.words import counted, listed, percent, plain, times
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator, Mapping, Sequence
@@ -29,35 +29,80 @@ REASONS_TOLD = 5
 NATS = "A number says how strongly a reason speaks: 0.7 doubles the odds, 2.3 makes them ten times as high."
 
 
+# --- what was read
+
+
+def size_words(answer: Answer) -> str:
+    """Say how long the line is."""
+    bars = f" in {counted(len(answer['bars']), 'bar')}" if answer["bars"] else ""
+    return f"{counted(answer['n_notes'], 'note')}{bars}"
+
+
+def tempo_words(answer: Answer) -> str:
+    """Say how fast the line is; empty where the file does not."""
+    return f"{plain(answer['tempo'])} beats a minute" if answer["tempo"] else ""
+
+
 # --- where the line leans
 
 
-def verdict_words(answer: Answer) -> str:
-    """Say where the line leans; one that changes its mode may lean, as one, to a mode of no part of it."""
-    whole, stretches = answer["whole"], answer["stretches"]
-    if len(stretches) < 2:
-        return str(whole["verdict"])
-    if {stretch["mode"] for stretch in stretches} & {whole["mode"], *whole["among"]}:
-        return f"as a whole {whole['verdict']}"
-    names = list(dict.fromkeys(stretch["name"] for stretch in stretches))
-    lean = f"lean to {listed(names)}" if len(names) <= CHANGES_NAMED else "lean to others"
-    return f"taken as one, the line is {whole['verdict']}; its stretches {lean}"
+def verdict_words(answer: Answer) -> list[str]:
+    """Say in which mode the line is: in the first sentence, and what else is to be said of that.
+
+    Of a line that turns for sure the modes that it goes through are the answer, and where it leans
+    taken as one comes second; of one that only may turn it is the other way round.
+    """
+    whole = answer["whole"]["verdict"]
+    if not answer["changes"]:
+        return [whole]
+    path = path_words(answer)
+    if any(map(is_clear, answer["changes"])):
+        return [path, f"taken as one, the line is {whole}"]
+    return [f"as a whole {whole}", path]
+
+
+def headline(answer: Answer) -> str:
+    """Say in one sentence in which mode the line is."""
+    return verdict_words(answer)[0]
 
 
 def path_words(answer: Answer) -> str:
-    """Say how often the mode changes, and through which modes the line goes; empty if it does not."""
+    """Name the modes that the line goes through in turn; of too many, how often it changes and between which.
+
+    What the line only may turn to stands behind ``perhaps``.
+    """
     changes = answer["changes"]
-    if not changes:
-        return ""
-    n_changes, n_clear = len(changes), sum(map(is_clear, changes))
-    often = "once" if n_changes == 1 else f"{n_changes} times"
-    if n_changes > CHANGES_NAMED:
-        path = ""
-    else:
-        path = f": {', then '.join([changes[0]['from'], *map(turned_to, changes)])}"
-    if 0 < n_clear < n_changes:
-        return f"it changes mode {often}, {n_clear} of them clear{path}"
-    return f"it {'changes' if n_clear else 'may change'} mode {often}{path}"
+    steps = [("" if is_clear(one) else "perhaps ") + turned_to(one) for one in changes]
+    path = ", then ".join([changes[0]["from"], *steps])
+    n_clear = sum(map(is_clear, changes))
+    if len(changes) <= CHANGES_NAMED:
+        return path if n_clear else f"it may change mode: {path}"
+    names = list(dict.fromkeys([changes[0]["from"], *map(turned_to, changes)]))
+    between = f", between {listed(names)}" if len(names) <= CHANGES_NAMED else ""
+    return f"it {_how_often(n_clear, len(changes) - n_clear)}{between}"
+
+
+def _how_often(n_clear: int, n_open: int) -> str:
+    if not n_clear:
+        return f"may change mode {times(n_open)}"
+    more = f", and perhaps {times(n_open)} more" if n_open else ""
+    return f"changes mode {times(n_clear)}{more}"
+
+
+def changes_words(answer: Answer) -> str:
+    """Count the changes of mode."""
+    if not answer["changes"]:
+        return "no change of mode"
+    n_clear = sum(map(is_clear, answer["changes"]))
+    n_open = len(answer["changes"]) - n_clear
+    clear = counted(n_clear, "change of mode", "changes of mode")
+    if not n_open:
+        return clear
+    return (
+        f"{clear}, {n_open} more possible"
+        if n_clear
+        else counted(n_open, "possible change of mode", "possible changes of mode")
+    )
 
 
 def aim_words(answer: Answer) -> str:
@@ -68,10 +113,59 @@ def aim_words(answer: Answer) -> str:
     if whole["decided"] and whole["mode"] == view["mode"]:
         return f"{view['name']} is the mode that it aims at"
     share = [one["probability"] for one in whole["leanings"] if one["mode"] == view["mode"]]
-    near = (
-        f"{percent(share[0])} likely" if share else "which is not among the modes that it was compared with"
-    )
-    return f"it aims at {view['name']}, {near}"
+    if not share:
+        return f"it aims at {view['name']}, which is not among the modes that it was compared with"
+    over = " over the whole line" if answer["changes"] else ""
+    return f"it aims at {view['name']}, {percent(share[0])} likely{over}"
+
+
+def judge_words(answer: Answer) -> str:
+    """Name what the notes are judged by: a mode, or of several stretches that of each."""
+    view = answer["in_view"]
+    return "the mode of its stretch" if _judged_apart(answer) else str(view["name"])
+
+
+def _judged_apart(answer: Answer) -> bool:
+    return not answer["in_view"]["is_target"] and len(answer["stretches"]) > 1
+
+
+def off_title(answer: Answer) -> str:
+    """Head the list of notes that break what they are judged by."""
+    return f"Notes off the mode{' of their stretch' if _judged_apart(answer) else ''}"
+
+
+def outside_words(answer: Answer) -> str:
+    """Count the notes that break what they are judged by."""
+    n_off = len(answer["off_notes"])
+    open_ = not (answer["in_view"]["is_target"] or answer["whole"]["decided"] or _judged_apart(answer))
+    lie = counted(n_off, "note lies", "notes lie") if n_off else "no note lies"
+    return f"{lie} outside {judge_words(answer)}{', the likeliest' if open_ else ''}"
+
+
+# --- whether it stays in its mode
+
+
+def stays_words(answer: Answer) -> str:
+    """Answer whether the line stays in the mode that was asked about; where it leaves it, and why."""
+    asked = answer["stay_in"]
+    why = "" if asked["stays"] else f": {asked['first']['says']}"
+    return f"{stays_in_short(answer)}{why}"
+
+
+def stays_in_short(answer: Answer) -> str:
+    """Answer whether the line stays in the mode that was asked about, and where it leaves it."""
+    asked = answer["stay_in"]
+    if asked["stays"]:
+        return f"stays in {asked['name']}"
+    if sounds_elsewhere(answer):
+        return f"does not stay in {asked['name']}"
+    return f"leaves {asked['name']} at {place_words(asked['first']['place'], asked['first']['note'])}"
+
+
+def sounds_elsewhere(answer: Answer) -> bool:
+    """Tell whether no one place leaves the mode that was asked about: the line sounds like another."""
+    first = answer["stay_in"]["first"]
+    return bool(first["note"] == 1 and answer["notes"][0]["off"] is None)
 
 
 # --- a change of mode
@@ -144,6 +238,18 @@ def rival_sides(answer: Answer) -> list[tuple[str, list[Answer]]]:
         (str(name), [one for one in rival[key] if abs(one["nats"]) >= LEAST_NATS][:REASONS_TOLD])
         for name, key in sides
     ]
+
+
+def rest_words(answer: Answer) -> str:
+    """Say what all reasons that are not told add up to, and for which mode; empty where that is little."""
+    rival = answer["rival"]
+    listed_nats = sum(one["nats"] for key in ("for_leader", "for_rival") for one in rival[key])
+    told_nats = sum(one["nats"] for _, reasons in rival_sides(answer) for one in reasons)
+    rest = rival["rest_nats"] + listed_nats - told_nats
+    if abs(rest) <= LEAST_NATS:
+        return ""
+    name = answer["in_view"]["name"] if rest > 0 else rival["name"]
+    return f"all the rest together, for {name}: {abs(rest):.1f}"
 
 
 # --- phrases and bars

@@ -16,7 +16,7 @@ from melodycoach.report.page_frame import BARS_Y, CONTOUR_Y, SEAMS_Y, Frame
 from melodycoach.report.page_html import Html, element, number
 from melodycoach.report.page_layout import BOLD_LETTER, gutter_of, pieces_of, scale_of
 from melodycoach.report.places import notes_between
-from melodycoach.report.words import short_percent
+from melodycoach.report.words import percent
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping
@@ -118,9 +118,13 @@ def _bar_lines(shared: Frame, piece: Piece) -> Iterator[Html]:
 
 
 def _seam_label(change: Mapping[str, Any]) -> str:
-    """Name what the line turns to, and how sure that is where it is one mode."""
-    share = "" if change["family"] else f" {short_percent(change['probability'])}"
-    return f"▸ {_seam_name(change)}{share}"
+    """Name what the line turns to."""
+    return f"▸ {_seam_name(change)}"
+
+
+def _seam_says(change: Mapping[str, Any]) -> str:
+    """Say what stands behind a name at a seam: the curves below it are of the whole line so far."""
+    return f"{change['to']} {percent(change['probability'])}: what the notes from here on say by themselves"
 
 
 def _seam_name(change: Mapping[str, Any]) -> str:
@@ -139,6 +143,7 @@ def _seams(shared: Frame, piece: Piece) -> Iterator[Html]:
         x = max(min(slot.x + 3, piece.width - len(label) * BOLD_LETTER), 0.0)
         yield element(
             "g",
+            element("title", _seam_says(change)),
             element("line", x1=slot.x + 1, x2=slot.x + 1, y1=SEAMS_Y + 4, y2=bottom),
             element("text", label, x=x, y=SEAMS_Y),
             class_="seam",

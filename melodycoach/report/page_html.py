@@ -25,6 +25,10 @@ _VOID = frozenset({"br", "meta"})
 _CAMEL = {"viewbox": "viewBox"}
 
 
+FEW = 10
+"""A table of so many rows is not torn apart where a page of paper ends."""
+
+
 class Html(str):
     """Text that is markup already, and is not escaped again."""
 
@@ -143,5 +147,5 @@ def table(
         element("caption", caption),
         element("thead", head),
         element("tbody", *body),
-        class_=class_,
+        class_=f"{class_} few" if len(rows) <= FEW else class_,
     )

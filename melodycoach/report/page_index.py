@@ -6,8 +6,8 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 from melodycoach.report.check_page import whole_page
+from melodycoach.report.check_words import headline, stays_in_short
 from melodycoach.report.page_html import Html, bullets, element, joined, table
-from melodycoach.report.places import place_words
 from melodycoach.report.words import capital, counted
 
 if TYPE_CHECKING:
@@ -65,21 +65,12 @@ def index_entry(answer: Mapping[str, Any], page: str = "") -> IndexEntry:
         answer["file"],
         page,
         answer["title"],
-        answer["whole"]["verdict"],
+        headline(answer),
         len(answer["changes"]),
         len(answer["off_notes"]),
-        _stays(asked) if asked else "",
+        stays_in_short(answer) if asked else "",
         asked["stays"] if asked else None,
     )
-
-
-def _stays(asked: Mapping[str, Any]) -> str:
-    if asked["stays"]:
-        return f"stays in {asked['name']}"
-    first = asked["first"]
-    if first is None:
-        return f"does not stay in {asked['name']}"
-    return f"leaves {asked['name']} at {place_words(first['place'], first['note'])}"
 
 
 def index_page(entries: Sequence[IndexEntry], title: str = "Lines checked") -> str:

@@ -4,7 +4,15 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.report.check_words import NATS, how_sure, parts_of, place_of, rival_sides, rival_title
+from melodycoach.report.check_words import (
+    NATS,
+    how_sure,
+    parts_of,
+    place_of,
+    rest_words,
+    rival_sides,
+    rival_title,
+)
 from melodycoach.report.page_blocks import folded, note_link, section, where
 from melodycoach.report.page_html import Html, bullets, element, joined
 from melodycoach.report.places import runs
@@ -66,7 +74,7 @@ def _heard_and_owed(of: Mapping[str, Any]) -> Html:
         "div",
         _side("Heard", heard, "none yet", "step heard"),
         _side("Owed, the best to play next first", owed, "nothing", "step owed"),
-        class_="two",
+        class_="two sides",
     )
 
 
@@ -115,9 +123,11 @@ def rival(answer: Mapping[str, Any]) -> Html:
     if answer["rival"] is None:
         return section("The closest rival", element("p", "No other mode comes near."), id_="rival")
     sides = rival_sides(answer)
-    nats = element("p", NATS, class_="quiet") if any(reasons for _, reasons in sides) else None
+    rest = rest_words(answer)
+    nats = element("p", NATS, class_="quiet") if rest or any(reasons for _, reasons in sides) else None
     told = (block for name, reasons in sides for block in _reasons(name, reasons))
-    return section(rival_title(answer), *told, nats, id_="rival")
+    more = element("p", f"{capital(rest)}.") if rest else None
+    return section(rival_title(answer), *told, more, nats, id_="rival")
 
 
 def _reasons(name: str, reasons: Sequence[Mapping[str, Any]]) -> tuple[Html, Html]:

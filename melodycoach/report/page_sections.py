@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.report.check_words import span_words
+from melodycoach.report.check_words import off_title, span_words
 from melodycoach.report.page_blocks import folded, note_link, section
 from melodycoach.report.page_html import Html, bullets, element, joined, table
 from melodycoach.report.places import bar_and_beat, place
@@ -41,11 +41,17 @@ def leanings(line: Mapping[str, Any]) -> Html:
     )
 
 
-def reading(answer: Mapping[str, Any]) -> Html:
-    """Say what the reader did with the file, and what was lost."""
+def reading(answer: Mapping[str, Any]) -> Html | None:
+    """Say what the reader did with the file, and what was lost; nothing where there is nothing to say."""
+    if not answer["read"] and not answer["lost"]:
+        return None
     lost = (element("h3", "Lost"), bullets(answer["lost"], "lost")) if answer["lost"] else ()
-    done = bullets(answer["read"]) if answer["read"] else element("p", "As it stands, from beginning to end.")
-    return section("What was read", done, *lost, id_="read")
+    return element(
+        "div", bullets(map(capital, answer["read"]), "quiet") if answer["read"] else None, *lost, id="read"
+    )
+
+
+TURNS = "Where another mode begins; how likely it is says what the notes of its stretch say by themselves"
 
 
 def changes(answer: Mapping[str, Any]) -> Html:
@@ -63,14 +69,14 @@ def changes(answer: Mapping[str, Any]) -> Html:
         return section("Changes of mode", element("p", "None was heard."), id_="changes")
     return section(
         "Changes of mode",
-        table(("note", "where", "the line", "noticed at note"), rows, "Where another mode begins"),
+        table(("note", "where", "the line", "noticed at note"), rows, TURNS),
         id_="changes",
     )
 
 
 def off_notes(answer: Mapping[str, Any]) -> Html:
     """List the notes that break the mode, and what would mend them."""
-    off = [answer["notes"][number - 1] for number in answer["off_notes"]]
+    title, off = off_title(answer), [answer["notes"][number - 1] for number in answer["off_notes"]]
     rows = [
         (
             note_link(note["number"]),
@@ -82,9 +88,9 @@ def off_notes(answer: Mapping[str, Any]) -> Html:
         for note in off
     ]
     if not rows:
-        return section("Notes off the mode", element("p", "None."), id_="off-notes")
+        return section(title, element("p", "None."), id_="off-notes")
     return section(
-        "Notes off the mode",
+        title,
         table(
             ("note", "where", "stands there", "what is wrong", "what mends it"),
             rows,

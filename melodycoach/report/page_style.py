@@ -112,6 +112,7 @@ _CHART = """
 line.bar{stroke:var(--rule)}
 line.way{stroke:var(--text-mend);stroke-dasharray:1 2}
 .piece .seam text,.piece text.seam{fill:var(--text-seam);font-weight:600}
+.seam text{pointer-events:all;cursor:default}
 .seam line{stroke:var(--text-seam);stroke-width:1.5;stroke-dasharray:5 3}
 .join{fill:none;stroke:var(--line);stroke-width:.9}
 .join.breathes{stroke-dasharray:1 3}
@@ -167,7 +168,9 @@ h1{font-size:1.5rem}
 _PRINT = """
 @media print{
 .halo{stroke:#fff}
-.staff{orphans:1;widows:1}
+.staff{orphans:1;widows:1;zoom:.76;margin-top:.6rem}
+.piece{margin-bottom:.8rem}
+.piece text{font-size:12px}
 @page{size:A4;margin:14mm 12mm}
 html{color-scheme:light;font-size:10.5pt}
 body{background:none}
@@ -178,7 +181,10 @@ main,header,footer{max-width:none;padding:0}
 .folded summary{list-style:none}
 h2,h3,h4,summary,caption{break-after:avoid}
 h2{margin-top:1.4rem}
-tr,li,dd{break-inside:avoid}
+tr,li,dd,.few,.key{break-inside:avoid}
+.sides{grid-template-columns:1fr 1fr;gap:0 2rem}
+.sides p,dt,thead,tbody tr:first-child,tbody tr:nth-last-child(2){break-after:avoid}
+tbody tr:first-child,tbody tr:last-child{break-before:avoid}
 thead{display:table-header-group}
 a{color:inherit;text-decoration:none}
 .share i{print-color-adjust:exact;-webkit-print-color-adjust:exact}

@@ -74,6 +74,15 @@ def counted(count: int, one: str, many: str = "") -> str:
     return f"{count or 'no'} {one if count == 1 else many or one + 's'}"
 
 
+def times(count: int) -> str:
+    """Write how often something is.
+
+    >>> times(1), times(2), times(5)
+    ('once', 'twice', '5 times')
+    """
+    return {1: "once", 2: "twice"}.get(count, f"{count} times")
+
+
 def pitch(of: Mapping[str, Any]) -> str:
     """Name a pitch, and how it is written where that is another word.
 

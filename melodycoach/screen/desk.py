@@ -40,7 +40,8 @@ class Desk:
     send
         Takes the commands.
     choices
-        Gives the names to offer for a kind of question.
+        Gives the names to offer for a kind of question; for that of where to save, first the path that
+        is proposed.
     ascii_only
         Draw with plain letters only.
     """
@@ -159,7 +160,7 @@ class Desk:
         number = self._number + 1
         command = asking.answer(self.question, number)
         if command is None:
-            self.question = None
+            self.question = asking.unanswered(self.question)
             return
         self._number = number
         self.question = replace(self.question, awaited=number)

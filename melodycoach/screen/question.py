@@ -46,9 +46,15 @@ ADVICE = {
     QuestionKind.FINAL: "a pitch; written: each mode's own final; any: unknown",
     QuestionKind.ONLY: "names with commas between; nothing: all modes",
     QuestionKind.PORT: "part of its name will do; Esc goes back",
-    QuestionKind.SAVE: "a path; the line is written as note text; Esc goes back",
+    QuestionKind.SAVE: "a path; the line is written as note text; Ctrl-U empties, Esc goes back",
     QuestionKind.OPEN: "a path: note text, a MIDI file or MusicXML; Esc goes back",
 }
+
+UNANSWERED = {
+    QuestionKind.SAVE: "nothing typed, expected a path such as line.txt; Esc goes back and saves nothing",
+    QuestionKind.OPEN: "nothing typed, expected the path of a file; Esc goes back and opens nothing",
+}
+"""What is said where Enter is pressed with nothing typed; other questions then just close."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -79,8 +85,14 @@ class Question:
 
 
 def ask(kind: QuestionKind, choices: Sequence[str]) -> Question:
-    """Begin a question."""
-    return Question(kind, tuple(choices))
+    """Begin a question; in that of where to save, the first choice is typed already.
+
+    >>> ask(QuestionKind.SAVE, ("sketch.txt",)).text
+    'sketch.txt'
+    """
+    typed_already = choices[0] if kind is QuestionKind.SAVE and choices else ""
+    offered_too = choices[1:] if typed_already else choices
+    return Question(kind, tuple(offered_too), typed_already, len(typed_already))
 
 
 def offered(question: Question) -> tuple[str, ...]:
@@ -193,6 +205,12 @@ def answer(question: Question, number: int) -> Command | None:
             return Save(text, number) if text else None
         case QuestionKind.OPEN:
             return Open(text, number) if text else None
+
+
+def unanswered(question: Question) -> Question | None:
+    """Give what a question becomes where Enter is pressed and nothing is asked for: None, it closes."""
+    complaint = UNANSWERED.get(question.kind)
+    return replace(question, complaint=complaint) if complaint else None
 
 
 def _means_one(question: Question) -> bool:

@@ -12,7 +12,8 @@ from typing import TYPE_CHECKING
 
 from melodycoach.core.note import Mark, Note
 from melodycoach.core.sheet import Place, Sheet, SheetKind
-from melodycoach.errors import NoteTextError, UsageError
+from melodycoach.errors import MusicFileError, NoteTextError, UsageError
+from melodycoach.sources.no_music import no_music
 from melodycoach.sources.note_text import read_note_text
 
 if TYPE_CHECKING:
@@ -129,8 +130,10 @@ def read_sheet(
     NoteTextError
         The file is note text that cannot be read; `faults` names every place.
     MusicFileError
-        It is a MIDI file or a score that cannot be read, or that holds no melody.
+        It is a MIDI file or a score that cannot be read, or that holds no melody; or it is a picture,
+        a recording, a document.
     """
+    refuse_no_music(data, where)
     options, kind = options or ReadOptions(), kind_of(data)
     unfit = options.unfit(kind)
     if unfit and strict:
@@ -148,22 +151,39 @@ def read_sheet(
 
             return read_music_xml(data, where, names, options.part, options.voice, options.notation)
         case SheetKind.NOTE_TEXT:
-            return read_note_sheet(read_utf_8(data, where), names, where)
+            return read_note_sheet(read_text(data, where), names, where)
 
 
-def read_utf_8(data: bytes, where: str) -> str:
-    """Give the text of a note-text file.
+def refuse_no_music(data: bytes, where: str) -> None:
+    """Refuse what no reader can read.
+
+    Raises
+    ------
+    MusicFileError
+        It is a picture, a recording or a document.
+    """
+    found = no_music(data)
+    if found:
+        raise MusicFileError(f"{where}: is {found}, not a line of notes; export MusicXML or MIDI")
+
+
+def read_text(data: bytes, where: str) -> str:
+    """Give the text of a note-text file: UTF-8, or UTF-16 with a mark at its start.
 
     Raises
     ------
     NoteTextError
-        It is no UTF-8 text.
+        It is neither.
+    MusicFileError
+        It is a picture, a recording or a document.
     """
+    refuse_no_music(data, where)
+    encoding, name = _UTF_16.get(data[:2], "utf-8"), "UTF-16" if data[:2] in _UTF_16 else "UTF-8"
     try:
-        return data.decode("utf-8-sig")
+        return data.decode(encoding).removeprefix("\ufeff")
     except UnicodeDecodeError as error:
         raise NoteTextError(
-            f"{where}: byte {error.start} is not UTF-8 text; save the file as UTF-8"
+            f"{where}: byte {error.start} is not {name} text; save the file as UTF-8"
         ) from error
 
 

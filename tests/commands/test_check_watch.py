@@ -8,6 +8,7 @@ import signal
 import subprocess
 import sys
 import time
+from functools import partial
 from typing import TYPE_CHECKING
 
 import pytest
@@ -31,9 +32,9 @@ def draft(tmp_path: Path) -> Path:
 
 
 def watched(
-    monkeypatch: pytest.MonkeyPatch, draft: Path, texts: list[str], *words: str, before: str = LINE
+    monkeypatch: pytest.MonkeyPatch, draft: Path, texts: list[str | None], *words: str, before: str = LINE
 ) -> int:
-    """Save one text after the other, each kept still for two looks; then interrupt."""
+    """Save one text after the other, each kept still for two looks, or take the file away; then interrupt."""
     draft.write_text(before, encoding="utf-8")
 
     def interrupt() -> None:
@@ -41,16 +42,18 @@ def watched(
 
     steps: list[Callable[[], object]] = []
     for text in texts:
-        steps += [lambda text=text: draft.write_text(text, encoding="utf-8"), lambda: None]
+        save = draft.unlink if text is None else partial(draft.write_text, text, encoding="utf-8")
+        steps += [save, lambda: None]
     looks = iter([*steps, interrupt])
     monkeypatch.setattr("time.sleep", lambda _: next(looks)())
     return main(["check", str(draft), "--watch", *FEW, *words])
 
 
 def news(said: str) -> list[list[str]]:
-    """Give what was said after each save, without the line that names the file."""
-    _, *parts = said.split(" saved\n")
-    return [[row.strip() for row in part.splitlines() if row.startswith("  ")] for part in parts]
+    """Give what was said after each save, without the line that names the file; each sentence on one line."""
+    _, *parts = said.replace("\n    ", " ").split(" saved\n")
+    rows = [[row for row in part.splitlines() if row.startswith("  ")] for part in parts]
+    return [[row.strip() for row in part if "draft.txt" not in row] for part in rows]
 
 
 def test_the_whole_answer_comes_first_then_what_each_save_changed(
@@ -58,10 +61,11 @@ def test_the_whole_answer_comes_first_then_what_each_save_changed(
 ) -> None:
     texts = [WRONG, f"{WRONG}\n", LINE]
     assert watched(monkeypatch, draft, texts, "--stay-in", "huseyni") == 130
-    said = capsys.readouterr().out
+    out = capsys.readouterr().out
+    said = " ".join(out.split())
     assert said.index("closest rival") < said.index(f"watching {draft}; Ctrl-C ends")
     assert said.count("closest rival") == 1
-    first, second, third = news(said)
+    first, second, third = news(out)
     assert any(one.startswith("it no longer stays in Hüseynî: note 7, bar 2, beat 3") for one in first)
     assert second == ["nothing changed"]
     assert "it stays in Hüseynî now" in third
@@ -86,6 +90,32 @@ def test_a_text_that_could_never_be_read_gives_its_whole_answer_when_it_can(
     said = capsys.readouterr().out
     assert "'H9'" in said.split("watching")[0]
     assert "closest rival" in said.split("watching")[1]
+
+
+def test_what_does_not_fit_beside_its_beginning_stands_further_in(
+    draft: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.setenv("COLUMNS", "50")
+    assert watched(monkeypatch, draft, [WRONG], "--target", "huseyni") == 130
+    rows = capsys.readouterr().out.split(" saved\n")[1].splitlines()
+    at = rows.index("  off the mode: note 7, bar 2, beat 3, dik kürdî:")
+    assert rows[at + 1 : at + 3] == [
+        "    not in Hüseynî, 3 commas below segâh; segâh",
+        "    (B4-1) mends it",
+    ]
+    assert max(map(len, rows)) <= 50
+
+
+def test_a_file_that_has_gone_is_said_once_and_answered_again_when_it_is_back(
+    draft: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.setenv("COLUMNS", "120")
+    assert watched(monkeypatch, draft, [None], "--target", "huseyni") == 130
+    said = capsys.readouterr().out
+    assert said.replace("\n  ", " ").count("is gone; waiting for it to come back") == 1
+    assert watched(monkeypatch, draft, [None, WRONG], "--target", "huseyni") == 130
+    last = news(capsys.readouterr().out)[-1]
+    assert any(one.startswith("off the mode: note 7") for one in last)
 
 
 def test_the_page_is_written_again_at_every_save(
@@ -131,11 +161,11 @@ def test_the_program_sees_a_save_and_ends_quietly_when_interrupted(draft: Path) 
     assert watching.stdout is not None
     out = watching.stdout.fileno()
     try:
-        read_until(out, b"Ctrl-C ends\n")
+        read_until(out, b"ends\n")
         other = draft.with_name("other")
         other.write_text(WRONG, encoding="utf-8")
         other.replace(draft)  # as editors do
-        read_until(out, b"dik k\xc3\xbcrd\xc3\xae")
+        read_until(out, b"k\xc3\xbcrd\xc3\xae")
         watching.send_signal(signal.SIGINT)
         _, error = watching.communicate(timeout=10)
         assert (watching.returncode, error) == (130, b"")

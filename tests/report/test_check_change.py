@@ -56,7 +56,8 @@ def test_a_text_that_can_no_longer_be_read_says_every_fault() -> None:
 def test_a_note_that_leaves_the_mode_is_said_with_its_place_and_again_when_it_is_mended() -> None:
     wrong = LINE.replace("C5 B4-1 A4:2 , | E5", "C5 Bb4+1 A4:2 , | E5")
     there = what_changed(answer(LINE, "huseyni"), answer(wrong, "huseyni"))
-    assert ("off the mode: note 7, bar 2, beat 3, dik kürdî: not in Hüseynî, 3 commas below segâh") in there
+    wrong_note = "off the mode: note 7, bar 2, beat 3, dik kürdî: not in Hüseynî, 3 commas below segâh"
+    assert f"{wrong_note}; segâh (B4-1) mends it" in there
     back = what_changed(answer(wrong, "huseyni"), answer(LINE, "huseyni"))
     assert "off no more: note 7, bar 2, beat 3, dik kürdî" in back
     assert "no note is off the mode now" in back
@@ -90,7 +91,7 @@ def test_a_change_of_mode_that_appears_and_goes_is_said() -> None:
     turned = LINE + HICAZ
     said = what_changed(answer(LINE), answer(turned))
     assert any(one.startswith("new: the change from Hüseynî to Hicaz at note 2") for one in said)
-    assert any(one.startswith("the verdict is now: ") for one in said)
+    assert "the verdict is now: Hüseynî, then Hicaz; it was: leaning to Hüseynî, over 99 %" in said
     back = what_changed(answer(turned), answer(LINE))
     assert any(one.startswith("no longer there: the change from Hüseynî to Hicaz at note 2") for one in back)
 
@@ -115,7 +116,8 @@ def test_of_two_changes_between_the_same_modes_each_is_held_against_the_nearest(
     second = {**first, "note": first["note"] + 12}
     before["changes"] = [first, second]
     assert what_changed(before, {**before, "changes": [second]}) == [
-        f"no longer there: the change from Hüseynî to Hicaz at note {first['note']}, {HICAZ_AT}"
+        "the verdict is now: Hüseynî, then Hicaz; it was: Hüseynî, then Hicaz, then Hicaz",
+        f"no longer there: the change from Hüseynî to Hicaz at note {first['note']}, {HICAZ_AT}",
     ]
 
 
@@ -126,6 +128,23 @@ def test_a_step_that_is_newly_heard_or_owed_again_is_said() -> None:
     assert len(heard) == 1
     again = what_changed(answer(LINE, "huseyni"), answer(without, "huseyni"))
     assert heard[0].replace("heard now", "owed again") in again
+
+
+def test_a_line_that_sounds_like_another_mode_has_no_place_where_it_leaves_its_own() -> None:
+    before, after = answer(LINE, stay_in="huseyni"), answer(LINE, stay_in="huseyni")
+    first = {"note": 1, "place": after["notes"][0] | {}, "says": "it sounds like Rast"}
+    after["stay_in"] |= {"stays": False, "first": first}
+    assert what_changed(before, after) == ["it no longer stays in Hüseynî: it sounds like Rast"]
+
+
+def test_a_step_that_is_only_welcome_is_not_called_owed() -> None:
+    before, after = answer(LINE), answer(LINE + HICAZ)
+    welcome = [
+        step for part in after["stretches"] for step in part["steps"]["owed"] if step["need"] == "colour"
+    ]
+    assert welcome
+    said = what_changed(before, after)
+    assert not [one for one in said for step in welcome if "owed" in one and step["says"] in one]
 
 
 def test_the_steps_of_a_mode_that_the_line_turns_to_are_said() -> None:

@@ -216,19 +216,30 @@ def test_the_verdict_is_a_sentence_of_its_own() -> None:
 
 
 def test_off_notes_and_changes_are_counted_under_the_verdict() -> None:
-    assert read(check_page(answer())).one(class_="glance").text == "1 note off the mode · no change of mode"
-    root = read(check_page(answer(off_notes=[], changes=[change(9, "a", "b"), change(12, "b", "c")])))
-    glance = root.one(class_="glance")
-    assert glance.text == "No note is off the mode · it changes mode 2 times: a, then b, then c"
-    assert [link["href"] for link in glance.all("a")] == ["#changes"]
-
-
-def test_a_line_that_as_one_leans_where_no_stretch_does_is_told_so() -> None:
-    stretches = [stretch(1, 8, "Rast"), stretch(9, 16, "Hicaz")]
-    root = read(check_page(answer(stretches=stretches, changes=[change(9, "Rast", "Hicaz")])))
-    assert root.one(class_="verdict").text == (
-        "Taken as one, the line is leaning to Hüseynî, 72 %; its stretches lean to Rast and Hicaz"
+    assert (
+        read(check_page(answer())).one(class_="glance").text
+        == "1 note lies outside Hüseynî · no change of mode"
     )
+    stretches = [stretch(1, 8, "a"), stretch(9, 11, "b"), stretch(12, 16, "c")]
+    changes = [change(9, "a", "b"), change(12, "b", "c")]
+    root = read(check_page(answer(off_notes=[], changes=changes, stretches=stretches)))
+    glance = root.one(class_="glance")
+    assert glance.text == "No note lies outside the mode of its stretch · 2 changes of mode"
+    assert [link["href"] for link in glance.all("a")] == ["#changes"]
+    assert root.one(id="off-notes").one("h2").text == "Notes off the mode of their stretch"
+    for unclear, says in ((1, "1 change of mode, 1 more possible"), (2, "2 possible changes of mode")):
+        some = [*(one | {"decided": False} for one in changes[:unclear]), *changes[unclear:]]
+        assert says in read(check_page(answer(changes=some, stretches=stretches))).one(class_="glance").text
+
+
+def test_the_modes_that_a_line_goes_through_are_the_answer_and_the_whole_comes_second() -> None:
+    stretches = [stretch(1, 8, "Rast"), stretch(9, 16, "Hicaz")]
+    one = answer(stretches=stretches, changes=[change(9, "Rast", "Hicaz")])
+    root = read(check_page(one))
+    assert root.one("head").one("title").text == "Night ferry: Rast, then Hicaz"
+    assert root.one(class_="verdict").text == "Rast, then Hicaz"
+    assert "Taken as one, the line is leaning to Hüseynî, 72 %." in root.one(id="answer").text
+    assert "Rast, then Hicaz" in read(index_page([index_entry(one, "a.html")])).one(id="answers").text
 
 
 def test_the_mode_that_it_aims_at_is_named_with_how_near_it_comes() -> None:
@@ -242,7 +253,20 @@ def test_the_mode_that_it_aims_at_is_named_with_how_near_it_comes() -> None:
     ("asked", "yes", "says"),
     [
         ({"mode": "m", "name": "Rast", "stays": True, "first": None}, "yes", "It stays in Rast."),
-        ({"mode": "m", "name": "Rast", "stays": False, "first": None}, "no", "It does not stay in Rast."),
+        (
+            {
+                "mode": "m",
+                "name": "Rast",
+                "stays": False,
+                "first": {
+                    "note": 1,
+                    "place": {"bar": "1", "beat": 1.0, "at": ""},
+                    "says": "it sounds like Sabâ",
+                },
+            },
+            "no",
+            "It does not stay in Rast: it sounds like Sabâ.",
+        ),
         (
             {
                 "mode": "m",
@@ -266,10 +290,16 @@ def test_whether_it_stays_is_answered_with_the_first_place_it_leaves(asked: Any,
 
 def test_what_was_read_and_lost_comes_before_the_chart() -> None:
     root = read(check_page(answer(lost=["track 2, byte 17: cut off"])))
-    ids = [one["id"] for one in root.all("section")]
-    assert ids[:3] == ["answer", "read", "line"]
-    assert root.one("section", id="read").one("ul", class_="lost").text == "track 2, byte 17: cut off"
-    assert "As it stands" in read(check_page(answer(read=[]))).one(id="read").text
+    assert [one["id"] for one in root.all("section")][:2] == ["answer", "line"]
+    was_read = root.one("section", id="answer").one(id="read")
+    assert [one.text for one in was_read.all("li")] == ["Read as note text", "track 2, byte 17: cut off"]
+    assert was_read.one("ul", class_="lost").text == "track 2, byte 17: cut off"
+    assert not read(check_page(answer(read=[]))).all(id="read")
+
+
+def test_the_length_of_the_line_is_told_in_notes_and_bars() -> None:
+    assert "16 notes in 4 bars · 84 beats a minute" in read(check_page(answer())).one("header").text
+    assert "16 notes · 84 beats" in read(check_page(answer(bars=False))).one("header").text
 
 
 # --- the chart
@@ -360,7 +390,10 @@ def test_a_change_of_mode_is_a_line_with_the_name_of_the_mode_and_the_rows_say_t
     root = read(check_page(one))
     seam = root.one("g", data_seam="9")
     assert (seam["data-from"], seam["data-to"]) == ("Hüseynî", "Karcığar")
-    assert seam.one("text").text == "▸ Karcığar 64 %"
+    assert seam.one("text").text == "▸ Karcığar"
+    # the curves below it are of the whole line so far
+    assert seam.one("title").text == "Karcığar 64 %: what the notes from here on say by themselves"
+    assert "the notes behind it say by themselves" in root.one("ul", class_="key").text
     stretches = [
         piece.one("g", class_="gutter").one("text", class_="seam").text
         for piece in root.all("svg", class_="piece")
@@ -372,7 +405,7 @@ def test_a_change_of_mode_is_a_line_with_the_name_of_the_mode_and_the_rows_say_t
 @pytest.mark.parametrize(
     ("one", "label", "row"),
     [
-        (open_change(9, "Hüseynî", "Hicaz"), "▸ Hicaz? 64 %", "in Hicaz?"),
+        (open_change(9, "Hüseynî", "Hicaz"), "▸ Hicaz?", "in Hicaz?"),
         (family_change(9, "Hüseynî", "Hicaz", "hicaz family"), "▸ hicaz family", "in hicaz family"),
     ],
 )
@@ -460,7 +493,7 @@ def test_a_line_without_notes_has_a_page_without_a_drawing() -> None:
     root = read(check_page(empty))
     assert not root.all("svg", class_="piece")
     assert "no notes" in root.one("header").text
-    assert [one["id"] for one in root.all("section")] == ["answer", "read", "how"]
+    assert [one["id"] for one in root.all("section")] == ["answer", "how"]
 
 
 # --- where things stand
@@ -666,7 +699,8 @@ def test_what_speaks_for_each_mode_is_counted_upwards_under_its_name() -> None:
     text = read(check_page(answer(rival=bare))).one(id="rival").text
     assert "Nothing of weight." in text
     assert "+1.0 It is met more oftenWhat" in text
-    light = answer()["rival"] | {"for_rival": [], "for_leader": []}
+    assert "All the rest together, for Hüseynî: 0.4." in section.text
+    light = answer()["rival"] | {"for_rival": [], "for_leader": [], "rest_nats": 0.0}
     assert "doubles the odds" not in read(check_page(answer(rival=light))).one(id="rival").text
 
 
@@ -800,7 +834,7 @@ def test_the_list_leads_to_each_page_and_counts_what_was_found() -> None:
     )
     row = root.one(id="answers").one("tbody").one("tr")
     cells = [cell.text for cell in row.inside if isinstance(cell, Element)]
-    assert cells == ["draft.txt", "Night ferry", "Leaning to Hüseynî, 72 %", "1", "1"]
+    assert cells == ["draft.txt", "Night ferry", "A, then b", "1", "1"]
     assert row.one("a")["href"] == "draft.html"
     assert root.one("header").text == "Lines checked2 files, 1 could not be read"
 
@@ -817,7 +851,19 @@ def test_the_list_gives_the_error_of_a_file_with_all_its_faults() -> None:
     ("asked", "cell"),
     [
         ({"mode": "m", "name": "Rast", "stays": True, "first": None}, "✓ stays in Rast"),
-        ({"mode": "m", "name": "Rast", "stays": False, "first": None}, "✗ does not stay in Rast"),
+        (
+            {
+                "mode": "m",
+                "name": "Rast",
+                "stays": False,
+                "first": {
+                    "note": 1,
+                    "place": {"bar": "1", "beat": 1.0, "at": ""},
+                    "says": "it sounds like Sabâ",
+                },
+            },
+            "✗ does not stay in Rast",
+        ),
         (
             {
                 "mode": "m",

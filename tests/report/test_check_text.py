@@ -185,19 +185,22 @@ def test_the_file_stands_for_a_title_that_is_missing() -> None:
 @pytest.mark.parametrize(
     ("firsts", "says"),
     [
-        ((), "Leaning to Rast, 72 %. Next likeliest:"),
-        ((3,), "It changes mode once: Rast, then Hicaz. Next likeliest:"),
-        ((3, 6), "It changes mode 2 times: Rast, then Hicaz, then Hicaz. Next likeliest:"),
-        ((3, 5, 7, 9, 11), "It changes mode 5 times. Next likeliest:"),
+        ((), "Leaning to Rast, 72 %."),
+        ((3,), "Rast, then Hicaz."),
+        ((3, 6), "Rast, then Hicaz, then Hicaz."),
+        ((3, 5, 7, 9, 11), "It changes mode 5 times, between Rast and Hicaz."),
     ],
 )
-def test_how_often_the_mode_changes_is_said_with_the_verdict(firsts: tuple[int, ...], says: str) -> None:
+def test_the_modes_that_a_line_goes_through_are_the_answer_and_the_whole_comes_second(
+    firsts: tuple[int, ...], says: str
+) -> None:
     text = said(
         whole=PLAIN["whole"] | {"mode": "makam/Rast", "name": "Rast", "verdict": "leaning to Rast, 72 %"},
         stretches=[stretch(1, 2, "Rast"), *(stretch(first, first + 1, "Hicaz") for first in firsts)],
         changes=[change(first, "Rast", "Hicaz") for first in firsts],
     )
-    assert (f"As a whole leaning to Rast, 72 %. {says}" if firsts else says) in text
+    second = "Taken as one, the line is leaning to Rast, 72 %. " if firsts else ""
+    assert f"84 beats a minute {says} {second}Next likeliest:" in text
 
 
 def test_a_target_that_leads_that_trails_and_that_does_not_compete_are_told_apart() -> None:
@@ -239,29 +242,60 @@ def test_what_was_lost_is_pointed_at_from_the_top_and_said_at_the_end() -> None:
     assert "Not all of the file" not in said()
 
 
-def test_a_line_that_as_one_leans_where_no_stretch_does_is_told_so() -> None:
-    parted = {
-        "stretches": [stretch(1, 8, "Rast"), stretch(9, 16, "Hicaz")],
-        "changes": [change(9, "Rast", "Hicaz")],
-    }
-    says = "Taken as one, the line is leaning to Hüseynî, 72 %; its stretches lean to Rast and Hicaz."
-    assert says in said(**parted)
-    among = PLAIN["whole"] | {"verdict": "undecided between Hüseynî and Rast"}
-    assert "As a whole undecided between" in said(
-        whole=among | {"among": ["makam/huseyni", "makam/Rast"]}, **parted
-    )
-    many = [stretch(first, first + 1, name) for first, name in enumerate("abcde", 1)]
-    assert "; its stretches lean to others." in said(stretches=many, changes=[change(2, "a", "b")])
+def turning(*changes: dict[str, Any]) -> str:
+    stretches = [
+        stretch(1, 2, "Hüseynî"),
+        *(stretch(one["note"], one["note"] + 1, one["to"]) for one in changes),
+    ]
+    return said(stretches=stretches, changes=list(changes))
 
 
 def test_changes_that_are_not_clear_are_not_told_as_if_they_were() -> None:
-    stretches = [stretch(1, 4, "Hüseynî"), stretch(5, 8, "Rast"), stretch(9, 16, "Hicaz")]
-    unsure = [open_change(5, "Hüseynî", "Rast"), open_change(9, "Rast", "Hicaz")]
-    path = "Hüseynî, then Rast, then Hicaz."
-    assert f"It may change mode 2 times: {path}" in said(stretches=stretches, changes=unsure)
-    mixed = [unsure[0], family_change(9, "Rast", "Hicaz", "hicaz family")]
-    path = "Hüseynî, then Rast, then the hicaz family."
-    assert f"It changes mode 2 times, 1 of them clear: {path}" in said(stretches=stretches, changes=mixed)
+    open_ = open_change(5, "Hüseynî", "Rast"), open_change(9, "Rast", "Hicaz")
+    assert (
+        "As a whole leaning to Hüseynî, 72 %. "
+        "It may change mode: Hüseynî, then perhaps Rast, then perhaps Hicaz. Next" in turning(*open_)
+    )
+    mixed = open_[0], family_change(9, "Rast", "Hicaz", "hicaz family")
+    assert "a minute Hüseynî, then perhaps Rast, then the hicaz family. Taken as one" in turning(*mixed)
+
+
+def test_of_many_changes_those_that_are_not_clear_are_counted_apart() -> None:
+    clear = [change(at, "Hüseynî", f"Mode {at}") for at in range(3, 7)]
+    open_ = [open_change(at, "Hüseynî", "Rast") for at in range(7, 10)]
+    assert "It changes mode 4 times, and perhaps once more. Taken" in turning(*clear, open_[0])
+    assert "It changes mode twice, and perhaps 3 times more, between Hüseynî, Mode 3, Mode 4 and Rast." in (
+        turning(*clear[:2], *open_)
+    )
+    assert "It may change mode 6 times, between Hüseynî and Rast." in turning(*open_, *open_)
+
+
+def test_how_near_a_line_that_turns_comes_to_its_aim_is_said_of_the_whole() -> None:
+    parted = {"stretches": TURNED["stretches"], "changes": TURNED["changes"]}
+    text = said(in_view=VIEW | {"is_target": True, "mode": "Nevâ", "name": "Nevâ"}, **parted)
+    assert "It aims at Nevâ, 20 % likely over the whole line." in text
+
+
+def test_notes_of_a_line_that_turns_are_off_the_mode_of_their_stretch() -> None:
+    parted = {"stretches": TURNED["stretches"], "changes": TURNED["changes"]}
+    assert "Notes off the mode of their stretch: 1" in said(**parted)
+    assert "Notes off the mode: 1" in said(**parted, in_view=VIEW | {"is_target": True})
+
+
+def test_how_a_file_was_read_stands_before_the_sections_and_only_there() -> None:
+    text = said(read=["accidentals read as AEU", "took track 2"])
+    assert "outside Hüseynî. read accidentals read as AEU read took track 2 Notes off the mode" in text
+    assert text.count("took track 2") == 1
+    assert " read " not in said(read=[]).partition("How it was read")[0]
+
+
+def test_a_line_that_sounds_like_another_mode_has_no_place_where_it_leaves_its_own() -> None:
+    first = {"note": 1, "place": where(1), "says": "it sounds like Rast"}
+    asked = TURNED["stay_in"] | {"first": first}
+    assert "Does not stay in Hüseynî: it sounds like Rast. Leaning" in said(stay_in=asked)
+    off = [PLAIN["notes"][0] | {"off": PLAIN["notes"][OFF - 1]["off"]}, *PLAIN["notes"][1:]]
+    asked = TURNED["stay_in"] | {"first": first | {"says": "hüseynî is not in Hüseynî"}}
+    assert "Leaves Hüseynî at bar 1, beat 1: hüseynî is not in Hüseynî." in said(stay_in=asked, notes=off)
 
 
 # --- changes, wrong notes
@@ -398,14 +432,31 @@ def test_a_side_for_which_nothing_speaks_is_named_too() -> None:
 
 def test_reasons_that_weigh_little_or_are_many_are_left_out_and_the_numbers_explained_once() -> None:
     light = {"says": "a little", "nats": -0.1, "notes": []}
-    text = said(rival=PLAIN["rival"] | {"for_rival": [light]})
+    text = said(rival=PLAIN["rival"] | {"for_rival": [light], "rest_nats": 0.0})
     assert "for Nevâ: nothing of weight A number says how strongly a reason speaks" in text
     assert text.count("0.7 doubles the odds") == 1
-    assert "doubles the odds" not in said(rival=PLAIN["rival"] | {"for_leader": [], "for_rival": [light]})
+    none = PLAIN["rival"] | {"for_leader": [], "for_rival": [light], "rest_nats": 0.2}
+    assert "doubles the odds" not in said(rival=none)
     many = [{"says": f"reason {at}", "nats": 1.0, "notes": []} for at in range(9)]
     text = said(rival=PLAIN["rival"] | {"for_leader": many})
     assert "reason 4" in text
     assert "reason 5" not in text
+
+
+def test_what_is_not_told_is_summed_up_so_that_all_of_it_gives_the_odds() -> None:
+    def rest(nats: float, *reasons: float) -> str:
+        told = [{"says": "so", "nats": one, "notes": []} for one in reasons]
+        sides = {
+            "for_leader": [one for one in told if one["nats"] > 0],
+            "for_rival": [one for one in told if one["nats"] < 0],
+        }
+        return said(rival=PLAIN["rival"] | sides | {"rest_nats": nats})
+
+    assert "all the rest together, for Nevâ: 5.2 A number says" in rest(-5.2)
+    assert "all the rest together, for Hüseynî: 0.4" in rest(0.39)
+    assert "all the rest" not in rest(0.2)
+    # of seven reasons for a mode five are told, and one of 0.1 against it is not: 0.6 + 2 x 1.0 - 0.1
+    assert "all the rest together, for Hüseynî: 2.5" in rest(0.6, *[1.0] * 7, -0.1)
 
 
 def test_a_target_that_trails_is_held_against_the_mode_that_leads() -> None:
@@ -534,6 +585,4 @@ def test_three_wrong_notes_are_the_ones_that_are_reported() -> None:
 
 
 def test_a_line_that_turns_says_where() -> None:
-    assert re.search(
-        r"bar 7, beat 1  turns from Hüseynî to (the hicaz family|Hicaz,)", check_text(real(LINE))
-    )
+    assert re.search(r"bar 7, beat 1  (turns|may turn) from Hüseynî to", check_text(real(LINE)))

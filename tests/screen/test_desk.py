@@ -9,7 +9,7 @@ import pytest
 
 from melodycoach.screen import entry_edit
 from melodycoach.screen import question as asking
-from melodycoach.screen.command import Command, Fresh, Redo, ReplaceText, SetPort, SetTarget, Undo
+from melodycoach.screen.command import Command, Fresh, Redo, ReplaceText, Save, SetPort, SetTarget, Undo
 from melodycoach.screen.desk import Desk
 from melodycoach.screen.question import QuestionKind
 from melodycoach.screen.text import plain_text
@@ -27,7 +27,11 @@ class Session:
     def __init__(self, view: ViewState) -> None:
         self.view = view
         self.commands: list[Command] = []
-        self.desk = Desk(lambda: self.view, self.commands.append, lambda kind: ("Hicaz", "Rast"))
+        self.proposed: tuple[str, ...] = ()
+        self.desk = Desk(lambda: self.view, self.commands.append, self.choices)
+
+    def choices(self, kind: QuestionKind) -> tuple[str, ...]:
+        return self.proposed if kind is QuestionKind.SAVE else ("Hicaz", "Rast")
 
     def show(self, **changes: object) -> None:
         self.view = replace(self.view, **changes)  # type: ignore[arg-type]
@@ -93,12 +97,30 @@ def test_an_answer_is_sent_once_and_the_question_closes_when_it_is_carried_out(s
 
 
 def test_an_answer_of_nothing_closes_the_question_without_a_command(session: Session) -> None:
-    session.desk.ask(QuestionKind.SAVE)
+    session.desk.ask(QuestionKind.FINAL)
     session.desk.answer()
     assert (session.desk.editing, session.commands) == (True, [])
-    session.desk.ask(QuestionKind.SAVE)
+    session.desk.ask(QuestionKind.FINAL)
     session.desk.drop_question()
     assert session.desk.editing
+
+
+@pytest.mark.parametrize("kind", [QuestionKind.SAVE, QuestionKind.OPEN])
+def test_a_path_that_is_missing_is_asked_for(session: Session, kind: QuestionKind) -> None:
+    session.desk.ask(kind)
+    session.desk.answer()
+    assert (session.desk.asking, session.commands) == (True, [])
+    assert "nothing typed, expected" in session.text()
+    session.desk.drop_question()
+    assert session.desk.editing
+
+
+def test_the_line_is_saved_where_it_is_proposed_with_one_key(session: Session) -> None:
+    session.proposed = ("drafts/sketch.txt",)
+    session.desk.ask(QuestionKind.SAVE)
+    assert "save as which file? drafts/sketch.txt" in session.text()
+    session.desk.answer()
+    assert session.commands == [Save("drafts/sketch.txt", 1)]
 
 
 def with_inputs(session: Session, several: bool) -> None:

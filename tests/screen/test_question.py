@@ -15,8 +15,8 @@ MODES = ("Beyâtî", "Hicaz", "Hüseynî", "Hüzzam", "Muhayyer", "Uşşak")
 
 
 def about(kind: QuestionKind, text: str = "", choices: tuple[str, ...] = MODES) -> Question:
-    """Ask and type."""
-    return asking.typed(asking.ask(kind, choices), text)
+    """Ask and type; where to save nothing is proposed."""
+    return asking.typed(asking.ask(kind, () if kind is QuestionKind.SAVE else choices), text)
 
 
 def test_names_are_found_in_any_spelling_and_those_that_begin_so_come_first() -> None:
@@ -71,6 +71,20 @@ def test_picking_goes_round_both_ways() -> None:
 )
 def test_an_answer_becomes_a_command(kind: QuestionKind, text: str, command: Command | None) -> None:
     assert asking.answer(about(kind, text), 3) == command
+
+
+def test_where_to_save_is_proposed_and_a_path_that_was_emptied_is_asked_for() -> None:
+    question = asking.ask(QuestionKind.SAVE, ("drafts/sketch.txt",))
+    assert (question.text, question.cursor, asking.offered(question)) == ("drafts/sketch.txt", 17, ())
+    assert asking.answer(question, 3) == Save("drafts/sketch.txt", 3)
+    assert asking.answer(asking.typed(asking.cleared(question), "b.txt"), 4) == Save("b.txt", 4)
+    emptied = asking.unanswered(asking.cleared(question))
+    assert emptied is not None
+    assert (
+        emptied.complaint
+        == "nothing typed, expected a path such as line.txt; Esc goes back and saves nothing"
+    )
+    assert asking.typed(emptied, "c").complaint == ""
 
 
 def test_a_picked_name_is_the_answer() -> None:

@@ -33,13 +33,13 @@ from melodycoach.screen.command import (
     SetTarget,
     Undo,
 )
+from melodycoach.screen.question import QuestionKind
 from melodycoach.screen.terminal import run_screen, run_screen_async
 from melodycoach.screen.view import Refusal
 
 if TYPE_CHECKING:
     from collections.abc import Awaitable, Callable, Coroutine, Mapping
 
-    from melodycoach.screen.question import QuestionKind
     from melodycoach.screen.view import ViewState
 
 DEADLINE_S = 20.0
@@ -121,7 +121,7 @@ class Stage:
 
     def choices(self, kind: QuestionKind) -> tuple[str, ...]:
         self.asked.append(kind)
-        return ("Hicaz", "Hüseynî", "Hüzzam")
+        return () if kind is QuestionKind.SAVE else ("Hicaz", "Hüseynî", "Hüzzam")
 
     # what a test does
     def text(self) -> str:

@@ -21,7 +21,7 @@ from melodycoach.sources.sheet_file import (
     kind_of,
     read_note_sheet,
     read_sheet,
-    read_utf_8,
+    read_text,
 )
 
 NAMES = load_pack("makam").names
@@ -51,7 +51,7 @@ def midi_file() -> bytes:
         (b"", SheetKind.NOTE_TEXT),
         (b"A4 B4-1", SheetKind.NOTE_TEXT),
         ("\ufeffA4".encode(), SheetKind.NOTE_TEXT),
-        ("A4".encode("utf-16"), SheetKind.NOTE_TEXT),  # it is refused as text, not as a score
+        ("A4".encode("utf-16"), SheetKind.NOTE_TEXT),  # no score: it does not begin with <
         (b"MThd\0\0\0\6", SheetKind.MIDI),
         (b"RIFF\x10\0\0\0RMIDdata", SheetKind.MIDI),
         (b"\0junk" * 1000 + b"MThd\0\0\0\6", SheetKind.MIDI),
@@ -177,7 +177,17 @@ def test_a_text_that_is_no_utf_8_is_refused_with_the_byte() -> None:
     with pytest.raises(NoteTextError) as error:
         read_sheet("A4 dügâh".encode("latin-1"), "a.txt", NAMES)
     assert str(error.value) == "a.txt: byte 4 is not UTF-8 text; save the file as UTF-8"
-    assert read_utf_8("\ufeffdügâh".encode(), "a.txt") == "dügâh"
+    assert read_text("\ufeffdügâh".encode(), "a.txt") == "dügâh"
+
+
+@pytest.mark.parametrize("encoding", ["utf-16-le", "utf-16-be"])
+def test_a_text_in_utf_16_with_its_mark_is_read(encoding: str) -> None:
+    data = "\ufefftitle: Dügâh\nA4 B4-1 dügâh".encode(encoding)
+    sheet = read_sheet(data, "a.txt", NAMES)
+    assert (sheet.kind, sheet.title, len(sheet.places)) == (SheetKind.NOTE_TEXT, "Dügâh", 3)
+    with pytest.raises(NoteTextError) as error:
+        read_text(data[:-1], "a.txt")
+    assert str(error.value) == f"a.txt: byte {len(data) - 2} is not UTF-16 text; save the file as UTF-8"
 
 
 @given(st.binary(max_size=300) | st.text(max_size=100).map(str.encode))
