@@ -242,17 +242,17 @@ def closing(model: ScoringModel, state: ScorerState) -> FloatArray:
 def closing_if_ended(model: ScoringModel, state: ScorerState) -> FloatArray:
     """Give what the end of a phrase would say if it ended with the latest note."""
     total = np.zeros(len(state.loglik))
-    finals = _closing_finals(model, state)
+    finals, parameters, size = _closing_finals(model, state), model.parameters, model.pack.system.divisions
     for heard in state.latest:
-        sounding = sounding_of(model, heard)
-        tables = model.tables(heard.kind)
+        sounding, tables = sounding_of(model, heard), model.tables(heard.kind)
         likely = sounding.shares @ tables.closing[model.mode_index, sounding.columns]
-        if finals is not None and model.parameters.hearing[heard.kind].knows_octave:
+        if finals is not None and parameters.hearing[heard.kind].knows_octave:
             resting = sounding.shares @ tables.theory[model.mode_index, RESTING, sounding.columns]
+            noise = sounding.shares.sum() * parameters.closing_noise / size
+            elsewhere = parameters.closing_final * noise + (1 - parameters.closing_final) * resting
             at = model.pack.system.cents_to_units(heard.pitch_cents) - model.final_shift
-            likely = np.where(abs(at - finals) <= model.pack.system.divisions / 2, likely, resting)
+            likely = np.where(abs(at - finals) <= size / 2, likely, elsewhere)
         total += note_weight(model, heard) * np.log(likely)
-    parameters = model.parameters
     return parameters.closing_power * min(1.0, parameters.closing_temper / temper(model, state)) * total
 
 
