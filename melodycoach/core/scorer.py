@@ -258,8 +258,8 @@ def closing_if_ended(model: ScoringModel, state: ScorerState) -> FloatArray:
 
 def _closing_finals(model: ScoringModel, state: ScorerState) -> FloatArray | None:
     """Give where each final stands in the octave in which the line lies; None where it has no octave."""
-    if model.reading is PitchReading.ANY:
-        return None
+    if model.reading is PitchReading.ANY or not state.weight:
+        return None  # or no note has sounded long enough to weigh anything
     size = model.pack.system.divisions
     units = np.arange(len(state.memory)) - MEMORY_OCTAVES_BELOW * size
     middle = float(units @ state.memory) / float(state.memory.sum())

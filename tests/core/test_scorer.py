@@ -285,6 +285,12 @@ def test_a_rest_on_the_octave_of_a_final_is_no_close_where_the_octave_is_known()
     assert closing(model, low)[asiran] == closing(blind, low)[asiran]
 
 
+def test_a_note_of_no_length_may_end_a_phrase() -> None:
+    model = build_model(PACK, SOME)
+    state = advance(model, start(model), Heard(6900.0, InputKind.KEYS, 0.0, rests=True, closes=True))
+    assert mode_posterior(model, state).sum() == pytest.approx(1.0)
+
+
 def test_a_whole_line_an_octave_away_closes_on_the_final_there() -> None:
     written, lower = ended("E5 D5 C5 B4-1 A4:2 ."), ended("E4 D4 C4 B3-1 A3:2 .")
     assert closing(*written) == pytest.approx(closing(*lower))
