@@ -44,6 +44,10 @@ class PackError(MelodycoachError, ValueError):
     """A mode pack that cannot be used; `faults` has one line for each fault."""
 
 
+class ProfileError(MelodycoachError, ValueError):
+    """A keyboard profile that cannot be used; `faults` has one line for each fault."""
+
+
 class UnknownModeError(MelodycoachError, LookupError):
     """A mode that no loaded pack defines."""
 

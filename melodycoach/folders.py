@@ -1,4 +1,4 @@
-"""Where the program keeps what is the player's: own packs, event logs, messages of drivers."""
+"""Where the program keeps what is the player's: own packs, keyboards, event logs, messages of drivers."""
 
 from __future__ import annotations
 
@@ -10,6 +10,11 @@ from platformdirs import user_config_path, user_data_path
 def user_pack_dir() -> Path:
     """Where the player's own mode packs are looked for."""
     return Path(user_config_path("melodycoach")) / "packs"
+
+
+def user_keyboard_dir() -> Path:
+    """Where the player's keyboard profiles are looked for."""
+    return Path(user_config_path("melodycoach")) / "keyboards"
 
 
 def session_log_dir() -> Path:

@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from melodycoach.core.event import Event
     from melodycoach.core.pitch import PitchNames
     from melodycoach.sources.event_log import RecordedLog
+    from melodycoach.sources.keyboard_profile import KeyboardProfile
     from melodycoach.sources.midi_system import MidiSystem
 
 
@@ -63,14 +64,21 @@ class Keyboard:
         Name of the input, or a part of it; empty: the only one there is.
     system
         Where ports come from; by default the machine's.
+    profile
+        What the player says of the keyboard.
     """
 
     def __init__(
-        self, clock: Callable[[], float], wanted: str = "", system: MidiSystem | None = None
+        self,
+        clock: Callable[[], float],
+        wanted: str = "",
+        system: MidiSystem | None = None,
+        profile: KeyboardProfile | None = None,
     ) -> None:
         self.port = LivePort(clock, wanted, system)
-        self._tracker = PitchTracker()
-        self._tuning_line = tuning_sentence(self._tracker)
+        self._profile = profile
+        self._tracker = PitchTracker() if profile is None else profile.tracker()
+        self._tuning_line = tuning_sentence(self._tracker, profile)
         self._has_played = False
         self._opening = (0, False)
 
@@ -84,7 +92,7 @@ class Keyboard:
         if opening != self._opening:
             events += self._tracker.start_over(now_s)  # no note-off comes from a port that has gone
         if messages or opening != self._opening:
-            self._tuning_line = tuning_sentence(self._tracker)
+            self._tuning_line = tuning_sentence(self._tracker, self._profile)
         self._opening = opening
         self._has_played = self._has_played or bool(events)
         return events
@@ -98,8 +106,15 @@ class Keyboard:
         """Say what is being listened to."""
         sentence = port_sentence(self.port.status)
         if self._tracker.n_ignored_notes and not self._has_played:
-            sentence += "; notes on channel 10 are taken for drums and not heard: send on another channel"
+            sentence += f"; {self._unheard()}"
         return sentence
+
+    def _unheard(self) -> str:
+        """Say why nothing is heard though keys are played."""
+        if self._profile is None or self._profile.channel is None:
+            return "notes on channel 10 are taken for drums and not heard: send on another channel"
+        only = f"only channel {self._profile.channel + 1} is heard, by your profile {self._profile.name!r}"
+        return f"{only}: send on that one, or change the profile"
 
     def tuning_line(self) -> str:
         """Say which tuning is believed, and why."""

@@ -9,8 +9,9 @@ from melodycoach.sources.midi_mpe import CHANNELS
 from melodycoach.sources.midi_tuning import CLASSES, KEYS
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Mapping, Sequence
 
+    from melodycoach.sources.keyboard_profile import KeyboardProfile
     from melodycoach.sources.midi_mpe import MpeZone
     from melodycoach.sources.midi_pitch import ChannelTuning, PitchTracker
 
@@ -24,9 +25,18 @@ _MOST_CHANNELS = 4
 _CLASS_NAMES = ("C", "C#", "D", "Eb", "E", "F", "F#", "G", "G#", "A", "Bb", "B")
 
 
-def tuning_sentence(tracker: PitchTracker) -> str:
+def tuning_sentence(tracker: PitchTracker, profile: KeyboardProfile | None = None) -> str:
     """Say which tuning a keyboard is believed to have, and why.
 
+    Parameters
+    ----------
+    tracker
+        What reads the keyboard.
+    profile
+        What the player has said of it; the tracker was made with it.
+
+    Examples
+    --------
     >>> from melodycoach.sources.midi_pitch import PitchTracker
     >>> tuning_sentence(PitchTracker())
     'plain keys: each stands for every perde near it'
@@ -37,10 +47,11 @@ def tuning_sentence(tracker: PitchTracker) -> str:
     'tuned by a message from the keyboard: E4 -23 c'
     """
     tunings, zones = tracker.tunings(), tracker.zones
-    tuned = [_zone_words(zones, tunings), _retuned_words(tunings), _bend_words(zones, tunings)]
+    retuned = _retuned_words(tunings, _profile_words(profile), tracker.stated_cents)
+    tuned = [_zone_words(zones, tunings), retuned, _bend_words(zones, tunings)]
     if not any(tuned) and all(tuning.tuning_cents % 100 == 0 for tuning in tunings):
-        tuned = ["plain keys: each stands for every perde near it"]
-    moved = [_shift_words(tunings), _concert_words(tracker.concert_cents)]
+        tuned = [f"plain keys{_put_back_words(profile)}: each stands for every perde near it"]
+    moved = [_stated_shift_words(profile), _shift_words(tunings), _concert_words(tracker.concert_cents)]
     return "; ".join(words for words in (*tuned, *moved) if words)
 
 
@@ -57,20 +68,25 @@ def _zone_words(zones: Sequence[MpeZone], tunings: Sequence[ChannelTuning]) -> s
     return f"MPE, {sizes} channel{plural}, range ±{cents / 100:g} semitones {reason}"
 
 
-def _retuned_words(tunings: Sequence[ChannelTuning]) -> str:
-    """Name the keys that a message tuned; channels that are tuned alike are spoken of once."""
-    channels_by_words: dict[str, list[int]] = {}
+def _retuned_words(tunings: Sequence[ChannelTuning], profile: str, stated: Mapping[int, float]) -> str:
+    """Name the keys that a message or the player tuned; channels that are tuned alike are spoken of once.
+
+    What a message has changed is spoken of before what is still as the player has stated.
+    """
+    channels_by_words: dict[tuple[bool, str], list[int]] = {}
     for tuning in tunings:
         if tuning.key_cents:
-            channels_by_words.setdefault(_key_words(tuple(tuning.key_cents.items())), []).append(
-                tuning.channel
-            )
+            told = (tuning.key_cents != stated, _key_words(tuple(tuning.key_cents.items())))
+            channels_by_words.setdefault(told, []).append(tuning.channel)
     if not channels_by_words:
         return ""
-    words, channels = max(channels_by_words.items(), key=lambda item: len(item[1]))
+    told, channels = max(channels_by_words.items(), key=lambda item: (item[0][0], len(item[1])))
+    is_sent, words = told
     where = "" if len(channels) == CHANNELS else f" on {_channel_words(channels)}"
     others = ", other channels differently" if len(channels_by_words) > 1 else ""
-    return f"tuned by a message from the keyboard{where}: {words}{others}"
+    over = f" over {profile}" if stated else ""
+    reason = f"a message from the keyboard{over}" if is_sent else profile
+    return f"tuned by {reason}{where}: {words}{others}"
 
 
 def _channel_words(channels: Sequence[int]) -> str:
@@ -118,6 +134,28 @@ def _bend_words(zones: Sequence[MpeZone], tunings: Sequence[ChannelTuning]) -> s
     most = max(bent, key=lambda tuning: abs(tuning.bend_cents))
     reason = _SENT if most.range_sent else "(none was sent: MIDI's default)"
     return f"bends read on channel {most.channel}, range ±{most.range_cents / 100:g} semitones {reason}"
+
+
+def _put_back_words(profile: KeyboardProfile | None) -> str:
+    """Say why keys are plain though the player has stated a tuning."""
+    if profile is None or not profile.is_tuned:
+        return ""
+    return f", put back by a message from the keyboard over {_profile_words(profile)}"
+
+
+def _profile_words(profile: KeyboardProfile | None) -> str:
+    """Name the profile, and what it is tuned to."""
+    if profile is None:
+        return ""
+    return f"your profile {profile.name!r}" + (f" ({profile.tuning})" if profile.tuning else "")
+
+
+def _stated_shift_words(profile: KeyboardProfile | None) -> str:
+    """Speak of the transposition that the player has stated."""
+    if profile is None or not profile.semitones:
+        return ""
+    plural = "" if abs(profile.semitones) == 1 else "s"
+    return f"every key moved by {profile.semitones:+} semitone{plural} (by your profile {profile.name!r})"
 
 
 def _shift_words(tunings: Sequence[ChannelTuning]) -> str:

@@ -16,6 +16,7 @@ from melodycoach.errors import PortError
 from melodycoach.players import DemoKeyboard, Keyboard, Replay
 from melodycoach.sources.event_json import LogHeader
 from melodycoach.sources.event_log import RecordedLog
+from melodycoach.sources.keyboard_profile import KeyboardProfile
 from melodycoach.sources.midi_port import WATCH_EVERY_S, PortState
 from melodycoach.sources.midi_system import PortName
 from melodycoach.sources.pack_file import load_pack
@@ -68,9 +69,9 @@ class Room:
     def close(self) -> None:
         self.closed = True
 
-    def keyboard(self, wanted: str = "") -> Keyboard:
+    def keyboard(self, wanted: str = "", profile: KeyboardProfile | None = None) -> Keyboard:
         """Give a keyboard that has looked round once."""
-        keyboard = Keyboard(self.clock, wanted, system=self)
+        keyboard = Keyboard(self.clock, wanted, system=self, profile=profile)
         assert keyboard.poll(self.now_s) == []
         return keyboard
 
@@ -164,6 +165,33 @@ def test_an_input_that_is_not_there_is_waited_for() -> None:
     keyboard.choose("organ")
     assert room.later(keyboard, 0.125) == [NoteOff(100.25, 69)]
     assert keyboard.input_line(0.0).startswith("no keyboard 'organ' yet, there is: Upright 20:0")
+
+
+def test_a_keyboard_is_read_and_spoken_of_as_its_profile_says() -> None:
+    room = Room(KEYS)
+    tuned = tuple(-23.0 if key == 9 else 0.0 for key in range(12))
+    keyboard = room.keyboard(profile=KeyboardProfile("home", tuned, channel=2))
+    assert keyboard.tuning_line() == "tuned by your profile 'home': A -23 c"
+    room.play("90 45 50", "80 45 00")
+    assert room.later(keyboard, 0.125) == []
+    assert keyboard.input_line(0.0) == (
+        "listening to Upright 20:0; only channel 3 is heard, by your profile 'home': send on that one, or "
+        "change the profile"
+    )
+    room.play("92 45 50")
+    assert room.later(keyboard, 0.125) == [NoteOn(100.125, 2 * 128 + 69, 6877.0, InputKind.TUNED)]
+    assert keyboard.input_line(0.0) == "listening to Upright 20:0"
+    room.play("F0 43 10 4C 08 02 4A 0E F7")  # XG scale tuning of part 3: A 50 cents down
+    room.later(keyboard, 0.125)
+    assert keyboard.tuning_line().startswith("tuned by a message from the keyboard over your profile 'home'")
+
+
+def test_a_profile_with_no_channel_leaves_the_drums_out() -> None:
+    room = Room(KEYS)
+    keyboard = room.keyboard(profile=KeyboardProfile("home"))
+    room.play("99 45 50")
+    room.later(keyboard, 0.125)
+    assert "notes on channel 10 are taken for drums" in keyboard.input_line(0.0)
 
 
 def test_notes_on_the_drum_channel_are_spoken_of_until_others_are_heard() -> None:

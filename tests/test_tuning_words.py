@@ -5,8 +5,11 @@ Outside sources of the messages, named beside each: MIDI 1.0, MPE, the MIDI Tuni
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import pytest
 
+from melodycoach.sources.keyboard_profile import KeyboardProfile
 from melodycoach.sources.midi_mpe import MpeZone
 from melodycoach.sources.midi_pitch import PitchTracker
 from melodycoach.tuning_words import tuning_sentence
@@ -127,3 +130,58 @@ def test_fine_tuning_is_said() -> None:
 def test_a_concert_pitch_is_said_and_leaves_keys_plain() -> None:
     # 643 of 100 / 8192 c above the middle, 1200 * log2(442 / 440) = 7.85 c
     assert tracked("F0 7F 7F 04 03 03 45 F7") == (f"{PLAIN}; concert pitch A = 442 Hz (sent by the keyboard)")
+
+
+# with a profile
+
+E_AND_B = (0.0, 0.0, 0.0, 0.0, -23.0, 0.0, 0.0, 0.0, 0.0, 0.0, 0.0, -41.5)
+HOME = KeyboardProfile("home", E_AND_B)
+
+
+def profiled(profile: KeyboardProfile, *messages: str) -> str:
+    tracker = profile.tracker()
+    for message in messages:
+        tracker.decode(bytes.fromhex(message), 0.0)
+    return tuning_sentence(tracker, profile)
+
+
+def test_the_tuning_of_a_profile_is_said_with_what_it_is() -> None:
+    assert profiled(HOME) == "tuned by your profile 'home': E -23 c, B -42 c"
+    named = replace(HOME, tuning="Segâh, as usually played")
+    assert profiled(named) == "tuned by your profile 'home' (Segâh, as usually played): E -23 c, B -42 c"
+
+
+def test_a_message_over_a_profile_is_said_to_be_over_it() -> None:
+    # XG scale tuning of part 1: E 50 cents down
+    assert profiled(HOME, "F0 43 10 4C 08 00 45 0E F7") == (
+        "tuned by a message from the keyboard over your profile 'home' on channel 1: E -50 c, B -42 c, "
+        "other channels differently"
+    )
+    # MIDI Tuning Standard, all channels
+    assert profiled(HOME, f"F0 7E 7F 08 08 03 7F 7F {E_AND_B_DOWN} F7") == (
+        "tuned by a message from the keyboard over your profile 'home': E -23 c, B -23 c"
+    )
+
+
+def test_keys_that_a_message_put_back_are_said_to_be_put_back() -> None:
+    plain = " ".join(["40"] * 12)
+    assert profiled(HOME, f"F0 7E 7F 08 08 03 7F 7F {plain} F7") == (
+        "plain keys, put back by a message from the keyboard over your profile 'home': each stands for every "
+        "perde near it"
+    )
+
+
+def test_a_profile_without_offsets_leaves_keys_plain_and_says_its_transposition() -> None:
+    assert profiled(KeyboardProfile("k")) == PLAIN
+    assert profiled(KeyboardProfile("k", semitones=-12)) == (
+        f"{PLAIN}; every key moved by -12 semitones (by your profile 'k')"
+    )
+    assert profiled(KeyboardProfile("k", semitones=1), "F0 7F 7F 04 04 00 3E F7") == (
+        f"{PLAIN}; every key moved by +1 semitone (by your profile 'k'); "
+        "every key moved by -2 semitones (sent by the keyboard)"
+    )
+
+
+def test_the_zone_of_a_profile_is_said_to_be_the_players() -> None:
+    said = profiled(replace(HOME, zones=(MpeZone(0, 7, 2400),)))
+    assert said.startswith("MPE, 7 channels, range ±24 semitones (as you have set it); tuned by your profile")

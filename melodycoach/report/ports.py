@@ -12,7 +12,8 @@ def ports_text(ports: dict[str, Any]) -> str:
     ----------
     ports
         ``inputs`` and ``outputs``, each a list of ``name`` and ``system``; ``problem``, why there
-        can be none, or empty.
+        can be none, or empty; ``keyboards``, the player's keyboard profiles, a list of ``name``, ``path``
+        and ``fault``, which is empty where the profile can be used.
     """
     lines = []
     for title, kind in (("MIDI inputs", "inputs"), ("MIDI outputs", "outputs")):
@@ -28,4 +29,11 @@ def ports_text(ports: dict[str, Any]) -> str:
         ]
     else:
         lines += ["", "melodycoach listen --port NAME listens to one of them; a part of its name will do."]
-    return "\n".join(lines)
+    return "\n".join([*lines, *_keyboard_lines(ports["keyboards"])])
+
+
+def _keyboard_lines(keyboards: list[dict[str, Any]]) -> list[str]:
+    if not keyboards:
+        return []
+    shown = [f"  {one['name']}" + (f"  {one['fault']}" if one["fault"] else "") for one in keyboards]
+    return ["", "Your keyboard profiles, for melodycoach listen --keys NAME:", *shown]

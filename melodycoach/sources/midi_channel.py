@@ -2,10 +2,11 @@
 
 What a key sounds like, in cents on the MIDI scale::
 
-    100 * (key + coarse tuning) + what a tuning message says of the key + fine tuning
+    100 * (key + coarse tuning) + what a tuning message or the player says of the key + fine tuning
         + bend / 8192 * bend range (+ the same of the zone's manager)
 
-Coarse and fine tuning are sums of the channel's own and the instrument's (`Master`).
+Coarse and fine tuning are sums of the channel's own and the instrument's (`Master`), which holds the
+transposition that the player states, too.
 
 References
 ----------
@@ -81,6 +82,7 @@ class Master:
 
     fine_cents: float = 0.0  # -100 to 100
     semitones: int = 0  # -64 to 63
+    stated_semitones: int = 0  # by the player; no message changes it
 
     @property
     def concert_cents(self) -> float:
@@ -152,7 +154,7 @@ class Channel:
 
         ``key_cents`` is what a tuning message says of it: None on a plain channel.
         """
-        place = 100.0 * (key + self.semitones())
+        place = 100.0 * (key + self.semitones() + self.master.stated_semitones)
         offset = self.offset_cents()
         if key_cents is not None:
             return place + key_cents + offset, InputKind.TUNED

@@ -39,9 +39,11 @@ from melodycoach.sources.midi_tuning import (
     ALL_CHANNELS,
     CENTRE,
     KEYS,
+    NOTHING_STATED,
     MasterCoarse,
     MasterFine,
     Other,
+    StatedTuning,
     TunedKeys,
     TunedOctave,
     TuningTables,
@@ -83,7 +85,7 @@ class ChannelTuning:
 
     ``channel`` counts from 1. ``range_sent`` says whether the keyboard sent its bend range or the
     usual two semitones are assumed. ``tuning_cents`` is fine and coarse tuning. ``key_cents`` says
-    how far the keys are off their places, by a tuning message; empty: none came.
+    how far the keys are off their places, by a tuning message or by the player; empty: by neither.
     """
 
     channel: int
@@ -125,6 +127,9 @@ class PitchTracker:
         Channels counted from 0.
     zones
         MPE zones of a surface that does not announce them itself; what it does announce goes first.
+    stated
+        What the player says of the keys. Every channel begins with it, after a reset too; a tuning
+        message on a key goes first.
 
     Raises
     ------
@@ -148,6 +153,7 @@ class PitchTracker:
         port_number: int = 0,
         ignored_channels: frozenset[int] = frozenset({DRUM_CHANNEL}),
         zones: tuple[MpeZone, ...] = (),
+        stated: StatedTuning = NOTHING_STATED,
     ) -> None:
         taken = [channel for zone in zones for channel in zone.channels]
         if len(taken) != len(set(taken)):
@@ -156,6 +162,7 @@ class PitchTracker:
         self.ignored_channels = ignored_channels
         self.n_skipped = 0
         self.n_ignored_notes = 0
+        self._stated, self._stated_table = stated, stated.table()
         self._first_zones = self._zones = ZoneMap(zones)
         self._begin([{} for _ in ALL_CHANNELS])
 
@@ -219,6 +226,11 @@ class PitchTracker:
         return self._zones.zones
 
     @property
+    def stated_cents(self) -> Mapping[int, float]:
+        """How far the player says that keys are off their places; empty: every key is in its place."""
+        return self._stated_table
+
+    @property
     def concert_cents(self) -> float:
         """How far the concert pitch that was sent is from A4 = 440 Hz, in cents; no note is moved by it."""
         return self._master.concert_cents
@@ -240,8 +252,8 @@ class PitchTracker:
 
     def _begin(self, sounding: Sequence[dict[int, Sounding]]) -> None:
         """Forget every bend, range and tuning; the zones stay."""
-        self._master = Master()
-        self._tables = TuningTables()
+        self._master = Master(stated_semitones=self._stated.semitones)
+        self._tables = TuningTables(self._stated_table)
         self._channels = [Channel(self._master, keys) for keys in sounding]
         self._take_roles(ALL_CHANNELS)
 

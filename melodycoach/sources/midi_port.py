@@ -138,8 +138,8 @@ def matching_ports(ports: Sequence[PortName], wanted: str) -> tuple[PortName, ..
     return ()
 
 
-def find_port(ports: Sequence[PortName], wanted: str) -> PortName:
-    """Find the one input that a name or a part of one means.
+def find_port(ports: Sequence[PortName], wanted: str, kind: str = "input") -> PortName:
+    """Find the one input, or output as ``kind`` says, that a name or a part of one means.
 
     Raises
     ------
@@ -157,11 +157,11 @@ def find_port(ports: Sequence[PortName], wanted: str) -> PortName:
         return found[0]
     if found:
         names = ", ".join(repr(port.name) for port in found)
-        raise PortError(f"MIDI input {wanted!r} fits {names}; give more of the name")
+        raise PortError(f"MIDI {kind} {wanted!r} fits {names}; give more of the name")
     if not ports:
-        raise PortError(f"no MIDI input {wanted!r}: there is none at all; run melodycoach ports")
+        raise PortError(f"no MIDI {kind} {wanted!r}: there is none at all; run melodycoach ports")
     hint = nearest_names(wanted, [port.name for port in ports])
-    raise PortError(f"no MIDI input {wanted!r}; {hint}; run melodycoach ports")
+    raise PortError(f"no MIDI {kind} {wanted!r}; {hint}; run melodycoach ports")
 
 
 class LivePort:

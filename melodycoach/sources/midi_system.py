@@ -14,6 +14,7 @@ from __future__ import annotations
 import contextlib
 import os
 import sys
+import time
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, Protocol
@@ -28,6 +29,9 @@ CLIENT_NAME = "melodycoach"
 
 QUEUE_LIMIT = 8192
 """Messages that an input keeps between two readings; rtmidi drops the newest beyond it."""
+
+LEAVE_S = 0.1
+"""How long an output stays open after the last message, so that the system can carry it off."""
 
 _UNIX_SOCKETS = Path("/proc/net/unix")
 _LISTENS = "00010000"
@@ -59,6 +63,16 @@ class MidiInput(Protocol):
 
     def close(self) -> None:
         """Close it; a second call does nothing, and reading gives None from then on."""
+
+
+class MidiOutput(Protocol):
+    """An open output."""
+
+    def send(self, message: bytes) -> None:
+        """Send one whole message; `PortError` if it is closed or cannot be sent."""
+
+    def close(self) -> None:
+        """Close it when what was sent has left; a second call does nothing."""
 
 
 class MidiSystem(Protocol):
@@ -176,18 +190,43 @@ class _QueuedInput:
                 midi_in.delete()
 
 
+class _Output:
+    """An rtmidi output. Sending on a closed one would crash, so it is asked of nobody."""
+
+    def __init__(self, midi_out: Any, name: str) -> None:
+        self._midi_out: Any = midi_out
+        self._name = name
+
+    def send(self, message: bytes) -> None:
+        if self._midi_out is None:
+            raise PortError(f"{self._name!r}: it is closed")
+        try:
+            with _hushed():
+                self._midi_out.send_message(list(message))
+        except _FAILURES as error:
+            raise PortError(f"{self._name!r}: {error}") from error
+
+    def close(self) -> None:
+        midi_out, self._midi_out = self._midi_out, None
+        if midi_out is not None:
+            with _hushed():
+                time.sleep(LEAVE_S)
+                midi_out.close_port()
+                midi_out.delete()
+
+
 class RtMidiSystem:
     """Every MIDI system that python-rtmidi was built for and that works here.
 
-    It keeps one spare client for each system, which lists ports and is never opened. An instance
-    and its inputs belong to one thread.
+    It keeps one spare client for each system, which lists ports and is never opened. An instance,
+    its inputs and its outputs belong to one thread.
     """
 
     def __init__(self) -> None:
         self._rtmidi, self._missing = load_rtmidi()
         self._api_by_system: dict[str, int] = {}
         self._spare_by_system: dict[str, Any] = {}
-        self._open_in_jack: list[_QueuedInput] = []
+        self._open_in_jack: list[_QueuedInput | _Output] = []
         self._jack_server: str | None = None
         if self._rtmidi is not None:
             shown = {
@@ -221,8 +260,7 @@ class RtMidiSystem:
                 if spare is None:
                     continue
                 self._spare_by_system[system] = spare
-                if system == "JACK":
-                    self._jack_server = jack_server() or None
+                self._watch_jack(system)
             with _hushed(), contextlib.suppress(*_FAILURES):
                 found += [PortName(name, system) for name in spare.get_ports()]
         return tuple(found)
@@ -270,8 +308,39 @@ class RtMidiSystem:
             self._open_in_jack.append(opened)
         return opened
 
+    def open_output(self, port: PortName) -> MidiOutput:
+        """Open an output with a client of its own.
+
+        Raises
+        ------
+        PortError
+            It is gone, or the system refuses.
+        """
+        self._let_go_of_dead_jack()
+        with _hushed():
+            try:
+                client = self._rtmidi.MidiOut(self._api_by_system[port.system], name=CLIENT_NAME)
+            except _FAILURES as error:
+                raise PortError(f"{port.name!r}: {port.system} does not answer") from error
+        self._watch_jack(port.system)
+        try:
+            with _hushed():
+                names = client.get_ports()
+                if port.name in names:
+                    client.open_port(names.index(port.name), name="out")
+        except _FAILURES as error:
+            _delete(client)
+            raise PortError(f"{port.name!r}: {error}") from error
+        if port.name not in names:
+            _delete(client)
+            raise PortError(f"{port.name!r}: it has just gone")
+        opened = _Output(client, port.name)
+        if port.system == "JACK":
+            self._open_in_jack.append(opened)
+        return opened
+
     def close(self) -> None:
-        """Delete the spare clients. Inputs are closed by whoever opened them."""
+        """Delete the spare clients. Inputs and outputs are closed by whoever opened them."""
         for spare in self._spare_by_system.values():
             _delete(spare)
         self._spare_by_system.clear()
@@ -284,6 +353,11 @@ class RtMidiSystem:
             except _FAILURES:  # no sequencer, no server
                 return None
 
+    def _watch_jack(self, system: str) -> None:
+        """Remember which run of the server a client that was just made belongs to."""
+        if system == "JACK" and self._jack_server is None:
+            self._jack_server = jack_server() or None
+
     def _let_go_of_dead_jack(self) -> None:
         if self._jack_server is None or jack_server() == self._jack_server:
             return
@@ -291,7 +365,9 @@ class RtMidiSystem:
         for opened in self._open_in_jack:
             opened.close()
         self._open_in_jack.clear()
-        _delete(self._spare_by_system.pop("JACK"))
+        spare = self._spare_by_system.pop("JACK", None)
+        if spare is not None:
+            _delete(spare)
 
 
 def list_ports() -> PortList:

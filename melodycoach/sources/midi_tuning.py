@@ -82,6 +82,29 @@ class MasterCoarse:
     semitones: int
 
 
+@dataclass(frozen=True, slots=True)
+class StatedTuning:
+    """What the player says of a keyboard: no message does.
+
+    Parameters
+    ----------
+    cents_by_class
+        How far each key is off its place, C to B, in every octave of every channel.
+    semitones
+        What every key sounds above its number.
+    """
+
+    cents_by_class: tuple[float, ...] = (0.0,) * CLASSES
+    semitones: int = 0
+
+    def table(self) -> Mapping[int, float]:
+        """Give cents off for each of the 128 keys; empty where every key is in its place."""
+        return _unless_plain({key: self.cents_by_class[key % CLASSES] for key in range(KEYS)})
+
+
+NOTHING_STATED = StatedTuning()
+
+
 class Other(Enum):
     """A message that tunes no keys."""
 
@@ -301,16 +324,17 @@ class TuningTables:
     """How far each key of each channel is off its plain place, by the messages so far.
 
     The latest message on a key counts, whether it came for a stored tuning or for an octave. Every
-    channel begins with bank 0, program 0. A channel all of whose keys are back within a cent of
-    their places is plain again.
+    channel begins with bank 0, program 0, and with what the player has stated (cents off by key). A
+    channel all of whose keys are back within a cent of their places is plain again.
 
     An instance changes as it is told; it belongs to its tracker.
     """
 
-    def __init__(self) -> None:
+    def __init__(self, stated: Mapping[int, float] = MappingProxyType({})) -> None:
+        self._stated = stated
         self._stored: dict[tuple[int, int], dict[int, float]] = {}
         self._chosen = [(0, 0)] * CHANNELS
-        self._tables: list[Mapping[int, float]] = [{}] * CHANNELS  # never changed in place: shared
+        self._tables = [stated] * CHANNELS  # never changed in place: shared
 
     def key_cents(self, channel: int, key: int) -> float | None:
         """Say how far a key is off its place; None when its channel is plain."""
@@ -341,9 +365,9 @@ class TuningTables:
         return told.channels
 
     def choose(self, channel: int, bank: int, program: int) -> None:
-        """Put a stored tuning in force on a channel; one that was never sent is plain."""
+        """Put a stored tuning in force on a channel; keys of which none was sent are as they began."""
         self._chosen[channel] = (bank, program)
-        self._tables[channel] = _unless_plain(self._stored.get((bank, program), {}))
+        self._tables[channel] = _unless_plain({**self._stated, **self._stored.get((bank, program), {})})
 
     def _update(self, channels: Iterable[int], offsets: Mapping[int, float]) -> None:
         before = {channel: self._tables[channel] for channel in channels}

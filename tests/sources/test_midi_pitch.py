@@ -16,6 +16,7 @@ from melodycoach.core.event import NoteOff, NoteOn, PitchMoved
 from melodycoach.core.note import InputKind
 from melodycoach.sources.midi_mpe import MpeZone
 from melodycoach.sources.midi_pitch import ChannelTuning, PitchTracker
+from melodycoach.sources.midi_tuning import StatedTuning
 
 COMMA = 1200 / 53
 
@@ -694,3 +695,33 @@ def test_the_tunings_tell_the_keys_that_a_message_tuned() -> None:
     assert tuning.channel == 4
     moved = {key: cents for key, cents in tuning.key_cents.items() if cents}
     assert moved == dict.fromkeys(range(4, 128, 12), -23.0)
+
+
+# what the player has stated
+
+STATED = StatedTuning(tuple(-23.0 if key == 4 else 0.0 for key in range(12)))
+
+
+def test_what_the_player_states_stands_after_a_reset_and_a_fresh_start() -> None:
+    tracker = PitchTracker(stated=STATED)
+    xg_e_down_50 = bytes.fromhex("F0 43 10 4C 08 00 45 0E F7")  # XG: part 1, E, 0E - 40 is -50 cents
+    for again in (
+        lambda: tracker.decode(bytes.fromhex("F0 7E 7F 09 01 F7"), 0.0),
+        lambda: tracker.start_over(0.0),
+    ):
+        tracker.decode(xg_e_down_50, 0.0)
+        [note] = tracker.decode(bytes.fromhex("90 40 40"), 0.0)
+        assert note.pitch_cents == 6350.0
+        again()
+        tracker.decode(bytes.fromhex("80 40 00"), 0.0)
+        [note] = tracker.decode(bytes.fromhex("90 40 40"), 0.0)
+        assert note.pitch_cents == 6377.0
+        tracker.decode(bytes.fromhex("80 40 00"), 0.0)
+
+
+def test_a_bend_adds_to_what_the_player_states() -> None:
+    tracker = PitchTracker(stated=STATED)
+    tracker.decode(bytes.fromhex("E0 00 30"), 0.0)  # 50 cents down in MIDI's range of two semitones
+    [note] = tracker.decode(bytes.fromhex("90 40 40"), 0.0)
+    assert note.pitch_cents == 6327.0
+    assert tracker.stated_cents[64] == -23.0

@@ -73,6 +73,7 @@ class FakeClient:
         self.opened = ""
         self.ignored: dict[str, bool] = {}
         self.queue: list[tuple[list[int], float]] = [([0x90, 69, 64], 0.25)]
+        self.sent: list[list[int]] = []
 
     def get_ports(self) -> list[str]:
         if self.api in self.module.deaf:
@@ -89,6 +90,11 @@ class FakeClient:
 
     def get_message(self) -> tuple[list[int], float] | None:
         return self.queue.pop(0) if self.queue else None
+
+    def send_message(self, message: list[int]) -> None:
+        if self.module.refuses:
+            raise OSError("resource busy")
+        self.sent.append(message)
 
     def close_port(self) -> None:
         assert self in self.module.alive
@@ -357,3 +363,65 @@ def test_a_running_server_is_seen_from_outside(jack_server: object) -> None:
     assert midi_system.jack_server() == ""
     jack_server.start()
     assert midi_system.jack_server() not in ("", first)
+
+
+# outputs
+
+
+def test_what_is_sent_goes_to_the_output_of_that_name(rtmidi: FakeRtMidi) -> None:
+    rtmidi.outputs[ALSA] = ["Pad 20:0", "Synth 24:0"]
+    system = RtMidiSystem()
+    output = system.open_output(PortName("Synth 24:0", "ALSA"))
+    output.send(bytes.fromhex("90 45 40"))
+    [client] = rtmidi.alive
+    assert (client.opened, client.sent) == ("Synth 24:0", [[0x90, 0x45, 0x40]])
+    output.close()
+    output.close()
+    assert rtmidi.alive == []
+    with pytest.raises(PortError) as error:
+        output.send(b"\xf8")
+    assert str(error.value) == "'Synth 24:0': it is closed"
+
+
+def test_a_message_that_the_system_refuses_is_said(rtmidi: FakeRtMidi) -> None:
+    rtmidi.outputs[ALSA] = ["Synth 24:0"]
+    output = RtMidiSystem().open_output(PortName("Synth 24:0", "ALSA"))
+    rtmidi.refuses = True
+    with pytest.raises(PortError) as error:
+        output.send(b"\xf8")
+    assert str(error.value) == "'Synth 24:0': resource busy"
+
+
+@pytest.mark.parametrize(
+    ("spoil", "reason"),
+    [
+        (lambda module: module.outputs[ALSA].clear(), "it has just gone"),
+        (lambda module: setattr(module, "refuses", True), "resource busy"),
+        (lambda module: module.broken.add(ALSA), "ALSA does not answer"),
+        (lambda module: module.deaf.add(ALSA), "no answer"),
+    ],
+)
+def test_an_output_that_does_not_open_is_refused_and_let_go(
+    rtmidi: FakeRtMidi, spoil: Callable[[FakeRtMidi], None], reason: str
+) -> None:
+    rtmidi.outputs[ALSA] = ["Synth 24:0"]
+    system = RtMidiSystem()
+    spoil(rtmidi)
+    with pytest.raises(PortError) as error:
+        system.open_output(PortName("Synth 24:0", "ALSA"))
+    assert str(error.value) == f"'Synth 24:0': {reason}"
+    assert rtmidi.alive == []
+
+
+def test_an_output_of_a_dead_jack_server_is_let_go_before_a_new_client_is_made(
+    rtmidi: FakeRtMidi, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    rtmidi.outputs[JACK] = ["synth:in"]
+    system = RtMidiSystem()
+    output = system.open_output(PortName("synth:in", "JACK"))
+    monkeypatch.setattr(midi_system, "jack_server", lambda: "2")
+    [old] = rtmidi.alive
+    system.open_output(PortName("synth:in", "JACK"))
+    assert old not in rtmidi.alive
+    with pytest.raises(PortError):
+        output.send(b"\xf8")

@@ -21,9 +21,11 @@ from hypothesis import strategies as st
 
 from melodycoach.sources.midi_tuning import (
     ALL_CHANNELS,
+    NOTHING_STATED,
     MasterCoarse,
     MasterFine,
     Other,
+    StatedTuning,
     TunedKeys,
     TunedOctave,
     TuningTables,
@@ -404,3 +406,38 @@ def test_channels_that_were_tuned_alike_share_their_table() -> None:
     tables = tables_after(E_MESSAGES["octave, one byte, later"][0], E_MESSAGES["XG, one note"][0])
     assert tables.table(1) is tables.table(15)
     assert tables.table(0) is not tables.table(1)
+
+
+# what the player has stated
+
+STATED = StatedTuning(tuple(-23.0 if key == E else 0.0 for key in range(12)))
+
+
+def test_every_channel_begins_with_what_the_player_states() -> None:
+    tables = TuningTables(STATED.table())
+    assert {tables.key_cents(channel, 64) for channel in ALL_CHANNELS} == {-23.0}
+    assert tables.key_cents(0, 65) == 0.0  # the others of the channel are exactly in their places
+
+
+def test_a_statement_that_moves_no_key_leaves_them_plain() -> None:
+    assert StatedTuning((0.5,) * 12).table() == {}
+    assert TuningTables(NOTHING_STATED.table()).key_cents(0, 64) is None
+
+
+def test_a_message_on_a_key_goes_before_what_the_player_states() -> None:
+    tables = TuningTables(STATED.table())
+    tables.tune_octave(TunedOctave((0,), {11: -50.0}, True))
+    assert (tables.key_cents(0, 71), tables.key_cents(0, 64)) == (-50.0, -23.0)
+    tables.tune_octave(TunedOctave((0,), {11: 0.0, 4: 0.0}, True))
+    assert tables.key_cents(0, 64) is None
+    assert tables.key_cents(1, 64) == -23.0
+
+
+def test_a_stored_tuning_that_is_chosen_leaves_the_other_keys_as_stated() -> None:
+    tables = TuningTables(STATED.table())
+    tables.tune_keys(TunedKeys(0, 5, {71: 7050.0}, True))
+    assert tables.key_cents(3, 71) == 0.0
+    tables.choose(3, 0, 5)
+    assert (tables.key_cents(3, 71), tables.key_cents(3, 64)) == (-50.0, -23.0)
+    tables.choose(3, 0, 6)  # never sent
+    assert (tables.key_cents(3, 71), tables.key_cents(3, 64)) == (0.0, -23.0)
