@@ -8,7 +8,7 @@ from pathlib import Path
 from melodycoach.cli import main
 
 PAGE = Path(__file__).with_name("cli.md")
-COMMANDS = ("", "listen", "check", "demo", "modes", "ports", "evaluate")
+COMMANDS = ("", "listen", "check", "demo", "modes", "retune", "ports", "evaluate")
 OPENING = """# The command line
 
 This page is written by `docs/make_cli_page.py` from the program's own help; a test compares the two.

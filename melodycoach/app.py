@@ -13,34 +13,36 @@ import sys
 import threading
 import time
 from dataclasses import dataclass, replace
-from datetime import datetime
 from pathlib import Path
 from queue import Empty, SimpleQueue
 from typing import TYPE_CHECKING, Any
 
-from melodycoach import DEFAULT_PACK, __version__
+from melodycoach import DEFAULT_PACK
 from melodycoach.clock import Clock
 from melodycoach.coach import TURN_S, Coach
 from melodycoach.core.event import PitchReading
+from melodycoach.core.line_rules import LineRules
 from melodycoach.core.session import begin
-from melodycoach.errors import EventLogError, MelodycoachError, PortError
-from melodycoach.folders import driver_log_path, session_log_dir, user_pack_dir
+from melodycoach.errors import MelodycoachError, PortError
+from melodycoach.folders import driver_log_path, user_keyboard_dir, user_pack_dir
 from melodycoach.line_text import open_line, read_final
 from melodycoach.players import DemoKeyboard, Keyboard, Player, Replay
 from melodycoach.reading import mode_named
+from melodycoach.recorded import cut_short, open_log, recorded_beginning, resume
 from melodycoach.screen.plain import plain_line
-from melodycoach.sources.event_json import LogHeader
-from melodycoach.sources.event_log import EventLog, log_path, read_event_log
+from melodycoach.sources.event_log import read_event_log
+from melodycoach.sources.keyboard_profile import list_keyboards, load_keyboard
 from melodycoach.sources.midi_port import PortState, find_port
 from melodycoach.sources.midi_system import list_ports, quiet_stderr
-from melodycoach.sources.pack_file import is_pack_file, load_pack
+from melodycoach.sources.pack_file import load_pack
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
 
     from melodycoach.core.session import SessionState
     from melodycoach.screen.view import ViewState
-    from melodycoach.sources.event_log import RecordedLog
+    from melodycoach.sources.event_log import EventLog
+    from melodycoach.sources.keyboard_profile import KeyboardProfile
 
 HURRIED = 400.0
 """How much faster than real time a hurried demo or replay runs."""
@@ -59,9 +61,11 @@ class Settings:
     final: str | None = None
     any_pitch: bool = False
     port: str | None = None
+    keys: str | None = None
     log: bool = True
     open_file: Path | None = None
     replay: Path | None = None
+    resume: str | None = None  # a log; empty: the newest one
     demo: bool = False
     fast: bool = False
 
@@ -84,23 +88,42 @@ def listen(settings: Settings, full_screen: bool, say: Callable[[str], None]) ->
         The exit code.
     """
     clock = Clock(HURRIED if settings.fast else 1.0)
-    session, player, log = _prepare(settings, clock)
+    session, player, log, notice = _prepare(settings, clock)
     if full_screen:
-        coach = Coach(session, player, clock, log)
+        coach = Coach(session, player, clock, log, notice=notice)
         _open_first_file(coach, settings)
         return _run_full_screen(coach, player, clock)
     printer = _Printer(say)
-    coach = Coach(session, player, clock, log, on_note=printer.note)
+    coach = Coach(session, player, clock, log, on_note=printer.note, notice=notice)
     printer.begin(coach)
+    if settings.keys is not None:
+        say(f"({player.tuning_line()})")
     _open_first_file(coach, settings)
     return _run_plain(coach, player, clock, printer)
 
 
-def _prepare(settings: Settings, clock: Clock) -> tuple[SessionState, Player, EventLog | None]:
-    """Read everything that a session needs, and refuse early what cannot be."""
+def _prepare(settings: Settings, clock: Clock) -> tuple[SessionState, Player, EventLog | None, str]:
+    """Read everything that a session needs, and refuse early what cannot be; say where it comes from."""
     if settings.replay is not None:
         recorded = read_event_log(settings.replay)
-        return _recorded_beginning(recorded, settings), Replay(recorded, settings.replay), None
+        beginning = recorded_beginning(recorded, settings.replay, settings.pack)
+        return beginning, Replay(recorded, settings.replay), None, ""
+    profile = load_keyboard(settings.keys, user_keyboard_dir()) if settings.keys is not None else None
+    if settings.resume is not None:
+        resumed = resume(Path(settings.resume) if settings.resume else None, settings.pack)
+        clock.go_on_from(resumed.session.now_s)
+        keyboard = _keyboard(settings, clock, profile)
+        log = resumed.open_log() if settings.log else None
+        return resumed.session, keyboard, log, resumed.says
+    session = _begin(settings, profile)
+    keyboard = _keyboard(settings, clock, profile)
+    player: Player = DemoKeyboard(session.pack.names, keyboard) if settings.demo else keyboard
+    notice = "" if settings.demo else cut_short()
+    return session, player, open_log(session, settings.pack) if settings.log else None, notice
+
+
+def _begin(settings: Settings, profile: KeyboardProfile | None) -> SessionState:
+    """Begin a session as the command line asks."""
     pack = load_pack(settings.pack, user_pack_dir())
     reading, final_cents = PitchReading.WRITTEN, None
     if settings.any_pitch:
@@ -111,53 +134,18 @@ def _prepare(settings: Settings, clock: Clock) -> tuple[SessionState, Player, Ev
         page, _ = open_line(settings.open_file, pack.names)
         mode_named(pack, page.kind, page.headers.mode)
     only = tuple(mode.id for mode in pack.restrict(settings.only)) if settings.only else ()
-    session = begin(pack, only, reading, final_cents, settings.target)
+    rules = LineRules(profile.split_sounds) if profile else LineRules()
+    return begin(pack, only, reading, final_cents, settings.target, rules=rules)
+
+
+def _keyboard(settings: Settings, clock: Clock, profile: KeyboardProfile | None) -> Keyboard:
+    """Listen to the keyboard that is asked for; one that is named has to be there."""
     if settings.port is not None:
         ports = list_ports()
         if ports.problem:
             raise PortError(f"port {settings.port!r}: {ports.problem}")
         find_port(ports.inputs, settings.port)
-    keyboard = Keyboard(clock, settings.port or "")
-    player: Player = DemoKeyboard(pack.names, keyboard) if settings.demo else keyboard
-    return session, player, _open_log(session, settings) if settings.log else None
-
-
-def _recorded_beginning(recorded: RecordedLog, settings: Settings) -> SessionState:
-    """Begin as a recorded session began. Its pack may have moved since: another ``--pack`` is looked at."""
-    kept, pack_id = recorded.header.settings, recorded.header.pack_id
-    asked = settings.pack != DEFAULT_PACK
-    pack = load_pack(settings.pack if asked else str(kept.get("pack", pack_id)), user_pack_dir())
-    if pack.id != pack_id:
-        raise EventLogError(
-            f"{settings.replay}: recorded with pack {pack_id!r}, found {pack.id!r}; name its file with --pack"
-        )
-    only, reading = kept.get("only", []), kept.get("reading", PitchReading.WRITTEN)
-    final_cents, target = kept.get("final_cents"), kept.get("target")
-    sound = (
-        isinstance(only, list)
-        and all(isinstance(mode_id, str) for mode_id in only)
-        and reading in list(PitchReading)
-        and (isinstance(final_cents, int | float) if reading == PitchReading.FINAL else final_cents is None)
-        and (target is None or isinstance(target, str))
-    )
-    if not sound:
-        raise EventLogError(
-            f"{settings.replay}: line 1: found settings {dict(kept)!r}, expected those of a session"
-        )
-    return begin(pack, tuple(only), PitchReading(reading), final_cents, target)
-
-
-def _open_log(session: SessionState, settings: Settings) -> EventLog:
-    started = datetime.now().astimezone()
-    kept: dict[str, Any] = {
-        "only": list(session.only),
-        "reading": session.reading.value,
-        "final_cents": session.final_cents,
-        "target": session.target.id if session.target else None,
-        "pack": str(Path(settings.pack).absolute()) if is_pack_file(settings.pack) else settings.pack,
-    }
-    header = LogHeader(__version__, started, session.pack.id, kept)
-    return EventLog(log_path(session_log_dir(), started), header)
+    return Keyboard(clock, settings.port or "", profile=profile)
 
 
 def _open_first_file(coach: Coach, settings: Settings) -> None:
@@ -241,6 +229,8 @@ def _choices(coach: Coach) -> Callable[[str], tuple[str, ...]]:
                 return ("written", "any", *(pitch.name for pitch in session.pack.names.named))
             case "port":
                 return coach.inputs()
+            case "save":
+                return (str(coach.save_path()),)
             case _:
                 return ()
 
@@ -296,6 +286,8 @@ def _run_plain(coach: Coach, player: Player, clock: Clock, printer: _Printer) ->
                 if typing and (played_out or not _plays_by_itself(player)):
                     typing = _take_typed(coach, typed)
                 if not typing and (played_out or not _may_still_play(player)):
+                    coach.turn()  # what has come to be said in between
+                    printer.world(coach.view)
                     break
                 time.sleep(TURN_S)
     finally:
@@ -362,10 +354,12 @@ def _ending_by_signal() -> Iterator[None]:
 
 
 def ports() -> dict[str, Any]:
-    """List the ports of this machine as plain values."""
+    """List the ports of this machine, and the player's keyboard profiles, as plain values."""
     found = list_ports()
+    profiles = list_keyboards(user_keyboard_dir())
     return {
         "inputs": [{"name": port.name, "system": port.system} for port in found.inputs],
         "outputs": [{"name": port.name, "system": port.system} for port in found.outputs],
         "problem": found.problem,
+        "keyboards": [{"name": name, "path": str(path), "fault": fault} for name, path, fault in profiles],
     }

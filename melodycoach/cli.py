@@ -21,6 +21,7 @@ from melodycoach.commands.listen import add_listen
 from melodycoach.commands.modes import add_modes
 from melodycoach.commands.ports import add_ports
 from melodycoach.commands.printing import complain
+from melodycoach.commands.retune import add_retune
 from melodycoach.errors import MelodycoachError, system_reason
 from melodycoach.output import accept_every_letter, silence_stdout
 
@@ -94,7 +95,7 @@ def _parser() -> tuple[argparse.ArgumentParser, Sequence[str]]:
     )
     parser.add_argument("--version", action="version", version=f"melodycoach {__version__}")
     commands = parser.add_subparsers(title="commands", metavar="COMMAND")
-    for add in (add_listen, add_check, add_demo, add_modes, add_ports, add_evaluate):
+    for add in (add_listen, add_check, add_demo, add_modes, add_retune, add_ports, add_evaluate):
         add(commands)
     return parser, tuple(commands.choices)
 

@@ -17,6 +17,10 @@ class Clock:
         """Read the clock."""
         return self._offset_s + (time.monotonic() - self._began_s) * self._speed
 
+    def go_on_from(self, at_s: float) -> None:
+        """Show this time now: a session goes on that was there before."""
+        self._began_s, self._offset_s = time.monotonic(), at_s
+
     def slow_down(self) -> None:
         """Go on in real time from now; in real time already, do nothing."""
         if self._speed == 1.0:

@@ -10,6 +10,7 @@ from __future__ import annotations
 import os
 from collections import deque
 from dataclasses import replace
+from datetime import date
 from pathlib import Path
 from queue import Empty, SimpleQueue
 from typing import TYPE_CHECKING
@@ -38,6 +39,7 @@ from melodycoach.line_text import (
     entry_items,
     notes_with_marks,
     open_line,
+    path_to_save,
     played_until,
     read_final,
     save_line,
@@ -103,6 +105,8 @@ class Coach:
         Where events are written, or None.
     on_note
         Called with a view after each note that has ended; for output line by line.
+    notice
+        What the player is told at the start.
     """
 
     def __init__(
@@ -112,6 +116,7 @@ class Coach:
         clock: Callable[[], float],
         log: EventLog | None = None,
         on_note: Callable[[ViewState], None] | None = None,
+        notice: str = "",
     ) -> None:
         self.session = session
         self._player = player
@@ -122,8 +127,9 @@ class Coach:
         self._view_maker = ViewMaker()
         self._page = Page()
         self._own_files: set[Path] = set()
+        self._path: Path | None = None  # where the line comes from, or was saved last
         self._warning = log.fault or "" if log else ""
-        self._notice = ""
+        self._notice = notice
         self._handled = 0
         self._refusals: deque[Refusal] = deque(maxlen=REFUSALS_KEPT)
         self._ticked_s = 0.0
@@ -161,13 +167,18 @@ class Coach:
 
     def take(self, event: Event) -> None:
         """Apply one event and log it."""
-        if isinstance(event, NoteOn) and self.session.sounding is not None:
-            self.session = apply(self.session, TimePassed(event.at_s))
-            self._tell(event)  # the note that this one ends, before the new one is heard
-        ends_a_note = isinstance(event, NoteOff) and event.voice == self.session.sounding
-        self.session = apply(self.session, event)
+        before = self.session
+        if isinstance(event, NoteOn | NoteOff):
+            before = apply(before, TimePassed(event.at_s))
+        after = apply(before, event)
         if self._log is not None and (fault := self._log.append(event)):
             self._warning = fault
+        begins = after.line.last_note_at > before.line.last_note_at
+        if isinstance(event, NoteOn) and begins and before.sounding is not None:
+            self.session = before
+            self._tell(event)  # the note that this one ends, before the new one is heard
+        self.session = after
+        ends_a_note = isinstance(event, NoteOff) and event.voice == before.sounding
         if ends_a_note or isinstance(event, LineEdited):
             self._tell(event)  # last: whoever is told may end the program
 
@@ -215,6 +226,7 @@ class Coach:
                 self.take(Redone(now_s))
             case Fresh():
                 self.take(FreshStart(now_s))
+                self._path = None  # the file keeps its line
             case SetTarget():
                 mode = self.session.pack.find(command.text) if command.text else None
                 self.take(TargetChosen(now_s, mode.id if mode else None))
@@ -274,7 +286,12 @@ class Coach:
         self._page = replace(self._page, headers=headers)
         save_line(path, self._page, self.session.line, self.names)
         self._own_files.add(path)
+        self._path, self._page = path, replace(self._page, kind=SheetKind.NOTE_TEXT)
         self._notice = f"saved as {path}"
+
+    def save_path(self) -> Path:
+        """Propose where the line is saved; any thread may ask."""
+        return path_to_save(self._path, self._page.kind, date.today())
 
     def open_text(self, path: Path) -> None:
         """Put the line of a file, whatever kind of file it is, in place of this one.
@@ -303,7 +320,7 @@ class Coach:
             self._warning = "; ".join((*page.lost, passed_over) if passed_over else page.lost)
         if passed_over:
             page = replace(page, headers=replace(page.headers, mode=""))
-        self._page = page
+        self._page, self._path = page, path
         self.take(LineEdited(now_s, 0, len(self.session.line.items), items))
 
     # --- the view ---------------------------------------------------------------------------

@@ -21,7 +21,15 @@ from melodycoach.clock import Clock
 from melodycoach.core.event import LineEdited, NoteOn, TimePassed
 from melodycoach.core.note import InputKind, Note
 from melodycoach.demo import HAND_OVER, STAGES, DemoPlayer
-from melodycoach.errors import EventLogError, NoteTextError, PortError, StorageError, UnknownModeError
+from melodycoach.errors import (
+    EventLogError,
+    NoteTextError,
+    PortError,
+    StorageError,
+    UnknownModeError,
+    UnknownNameError,
+)
+from melodycoach.folders import session_log_dir
 from melodycoach.line_text import Page
 from melodycoach.report.ports import ports_text
 from melodycoach.screen.command import ReplaceText
@@ -104,7 +112,7 @@ def run_plain(monkeypatch: pytest.MonkeyPatch) -> Callable[..., list[str]]:
 
 
 def logs() -> list[Path]:
-    folder = app.session_log_dir()
+    folder = session_log_dir()
     return sorted(folder.iterdir()) if folder.exists() else []
 
 
@@ -317,6 +325,74 @@ def test_a_port_on_a_machine_without_midi_is_refused_with_the_reason(machine: Ma
     assert str(error.value) == "port 'Upright': no MIDI: nothing answers"
 
 
+# keyboard profiles
+
+
+def home_keyboard(*lines: str) -> None:
+    folder = app.user_keyboard_dir()
+    folder.mkdir(parents=True)
+    (folder / "home.toml").write_text("\n".join(["[keyboard]", 'name = "home"', *lines]), encoding="utf-8")
+
+
+def play_under_and_over_the_split(machine: Machine, said: list[str]) -> None:
+    """Play A2, then A4 for a moment, and end by a signal when a note was told."""
+    machine.played = [bytes((0x90, 45, 80)), bytes((0x80, 45, 0)), bytes((0x90, 69, 80))]
+
+    def come() -> bool:
+        if not machine.played:
+            time.sleep(0.05)
+            machine.played.append(bytes((0x80, 69, 0)))
+        return bool(notes_in(said))
+
+    end_by_signal_when(come)
+
+
+def test_a_profile_is_in_force_from_the_first_note_and_said(machine: Machine) -> None:
+    home_keyboard("cents = [0, 0, 0, 0, 0, 0, 0, 0, 0, -23, 0, 0]", 'split = "C4"', "transposition = -12")
+    machine.list = PortList((KEYS,), ())
+    said: list[str] = []
+    play_under_and_over_the_split(machine, said)
+    assert listen(Settings(only=THREE, keys="home"), full_screen=False, say=said.append) == 0
+    tuning = (
+        "(tuned by your profile 'home': A -23 c; every key moved by -12 semitones (by your profile 'home'))"
+    )
+    assert tuning in said[:4]
+    log = only_log()
+    played = [event.pitch_cents for event in log.events if isinstance(event, NoteOn)]
+    assert played == [3277.0, 5677.0]  # the log keeps what is played under the split, too
+    assert [line[:2] for line in notes_in(said)] == ["1 "]  # and the line does not
+    assert log.header.settings["split_key"] == 48
+
+
+def test_a_profile_that_is_not_there_is_refused_before_there_is_a_log() -> None:
+    home_keyboard()
+    with pytest.raises(UnknownNameError) as error:
+        listen(Settings(keys="hoem"), full_screen=False, say=print)
+    assert str(error.value).endswith("did you mean 'home'?")
+    assert not logs()
+
+
+def test_a_replay_leaves_out_what_was_played_under_the_split(
+    run_plain: Callable[..., list[str]], machine: Machine
+) -> None:
+    home_keyboard('split = "C4"')
+    machine.list = PortList((KEYS,), ())
+    said: list[str] = []
+    play_under_and_over_the_split(machine, said)
+    listen(Settings(only=THREE, keys="home"), full_screen=False, say=said.append)
+    [path] = logs()
+    again = notes_in(run_plain(Settings(replay=path, fast=True)))
+    assert [line[:9] for line in again] == ["1 dügâh A"]
+
+
+def test_profiles_are_listed_with_the_ports(machine: Machine) -> None:
+    home_keyboard("channel = 17")
+    assert [one["name"] for one in ports()["keyboards"]] == ["home"]
+    text = ports_text(ports())
+    assert "Your keyboard profiles, for melodycoach listen --keys NAME:\n  home  " in text
+    assert "1 fault in this keyboard profile" in text
+
+
 def end_by_signal_when(come: Callable[[], object]) -> threading.Thread:
     """Send ourselves SIGTERM as soon as something has come."""
 
@@ -386,7 +462,7 @@ def test_no_ports_are_listed_with_what_to_do(machine: Machine) -> None:
     text = ports_text(ports())
     assert text.startswith("MIDI inputs:\n  none\nMIDI outputs:\n  none\n")
     assert "Plug one in and switch it on" in text
-    assert ports() == {"inputs": [], "outputs": [], "problem": ""}
+    assert ports() == {"inputs": [], "outputs": [], "problem": "", "keyboards": []}
 
 
 def test_ports_are_listed_with_their_system(machine: Machine) -> None:
@@ -398,6 +474,7 @@ def test_ports_are_listed_with_their_system(machine: Machine) -> None:
         "inputs": [{"name": "Upright 20:0", "system": "ALSA"}],
         "outputs": [{"name": "Synth 30:0", "system": "ALSA"}],
         "problem": "",
+        "keyboards": [],
     }
 
 
@@ -446,6 +523,7 @@ def with_settings(path: Path, **changed: object) -> Path:
         {"only": "rast"},
         {"only": [1]},
         {"target": 5},
+        {"split_key": "C4"},
     ],
 )
 def test_damaged_settings_of_a_log_are_said_and_not_guessed(
@@ -472,6 +550,41 @@ def test_a_log_of_an_earlier_version_has_no_pack_name_and_is_found_by_the_pack_s
     del header["settings"]["pack"]
     path.write_text(json.dumps(header) + "\n" + "".join(rest), encoding="utf-8")
     assert len(notes_in(run_plain(Settings(replay=path, fast=True)))) == len(before)
+
+
+# resuming
+
+
+def test_a_resumed_session_goes_on_with_its_numbers_its_target_and_its_time(
+    run_plain: Callable[..., list[str]],
+) -> None:
+    path, _ = recorded(run_plain, Settings(only=THREE, target="rast"))
+    left = read_event_log(path)
+    said = run_plain(Settings(resume=""), "D5\n")
+    assert any("goes on, with 4 notes in its line" in line for line in said)
+    assert [line.split()[0] for line in notes_in(said)] == ["5"]
+    newest = next(log for log in logs() if log != path)
+    events = read_event_log(newest).events
+    assert events[: len(left.events)] == left.events
+    assert [event.at_s for event in events] == sorted(event.at_s for event in events)
+    assert read_event_log(newest).header.settings == left.header.settings
+
+
+def test_a_resumed_session_need_not_be_recorded(run_plain: Callable[..., list[str]]) -> None:
+    path, _ = recorded(run_plain, Settings(only=THREE))
+    run_plain(Settings(resume=str(path), log=False), "D5\n")
+    assert logs() == [path]
+
+
+def test_a_session_that_was_cut_short_is_spoken_of_but_not_in_the_demo(
+    run_plain: Callable[..., list[str]],
+) -> None:
+    path, _ = recorded(run_plain, Settings(only=THREE))
+    *whole, _ended = path.read_bytes().splitlines(keepends=True)
+    path.write_bytes(b"".join(whole))
+    demo = run_plain(Settings(demo=True, fast=True, log=False))
+    plain = run_plain(Settings(only=THREE))
+    assert [sum("was cut short" in line for line in said) for said in (demo, plain)] == [0, 1]
 
 
 def own_pack(folder: Path) -> Path:

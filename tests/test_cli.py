@@ -90,6 +90,11 @@ def test_help_loads_nothing_heavy() -> None:
         (["listen", "--fast"], "--fast goes with --replay"),
         (["listen", "a.txt", "--replay", "b.jsonl"], "one line to begin with at a time"),
         (["listen", "--replay", "b.jsonl", "--target", "rast"], "--replay shows a session as it was"),
+        (["listen", "--resume"], "found no log of a session with notes in it"),
+        (["listen", "--resume", "nowhere.jsonl"], "nowhere.jsonl"),
+        (["listen", "--resume", "b.jsonl", "a.txt"], "name one of them"),
+        (["listen", "--resume", "--replay", "b.jsonl"], "name one of them"),
+        (["listen", "--resume", "--any-pitch"], "--resume brings a session back with its own settings"),
         (["evaluate", "nowhere.jsonl"], "nowhere.jsonl"),
     ],
 )
@@ -291,11 +296,15 @@ def test_what_is_typed_on_the_command_line_is_asked_of_the_session(
     assert not asked.full_screen  # nobody looks at a terminal
     assert main(["listen", "--replay", "old.jsonl", "--fast"]) == 0
     assert asked.settings == Settings(replay=Path("old.jsonl"), fast=True)
+    assert main(["listen", "--resume", "--port", "Keys"]) == 0
+    assert asked.settings == Settings(resume="", port="Keys")
+    assert main(["listen", "--resume", "old.jsonl"]) == 0
+    assert asked.settings == Settings(resume="old.jsonl")
     assert main(["--final", "A4", "--port", "Keys"]) == 0
     assert asked.settings == Settings(final="A4", port="Keys")
     assert main(["demo", "--fast", "--port", "Keys"]) == 0
     assert asked.settings == Settings(demo=True, fast=True, port="Keys")
-    assert capsys.readouterr().out == "something\n" * 4
+    assert capsys.readouterr().out == "something\n" * 6
 
 
 class Terminal(io.StringIO):

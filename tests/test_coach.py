@@ -131,6 +131,34 @@ def test_where_the_log_goes_is_said_from_the_player_s_own_folder_on(
     coach.close()
 
 
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="this system has no /dev/full")
+def test_a_log_that_fails_is_warned_of_and_playing_goes_on(
+    hands: Hands, clock: StillClock, tmp_path: Path
+) -> None:
+    header = LogHeader("0.1.0", datetime(2026, 5, 1, 18, 4, 9), "makam")
+    log = EventLog(tmp_path / "may.jsonl", header)
+    coach = Coach(begin(PACK, ONLY), hands, clock, log)
+    assert log._file is not None
+    log._file.close()
+    with Path("/dev/full").open("ab", buffering=0) as full:
+        log._file = full  # the disk fills up while one plays
+        hands.events = [NoteOn(0.1 * n, 60 + n, 6000.0 + 100 * n, InputKind.KEYS) for n in range(1, 4)]
+        clock.now_s = 1.0
+        coach.turn()
+        assert "no space left on device; playing goes on" in coach.view.status.warning
+        assert len(coach.view.line) == 3
+        assert asked(coach, Undo()).status.warning == ""  # said once
+        coach.close()
+
+
+def test_what_the_player_is_told_at_the_start_stands_until_something_is_asked(
+    hands: Hands, clock: StillClock
+) -> None:
+    coach = Coach(begin(PACK, ONLY), hands, clock, notice="the session of May goes on")
+    assert coach.view.status.notice == "the session of May goes on"
+    assert asked(coach, Undo()).status.notice == ""
+
+
 def test_the_view_says_when_the_player_has_to_choose_an_input(coach: Coach, hands: Hands) -> None:
     coach.turn()
     assert not coach.view.status.asks_input
@@ -214,6 +242,17 @@ def test_a_saved_line_opens_again_as_it_was(coach: Coach, tmp_path: Path) -> Non
     assert view.in_view == "Rast"
 
 
+def test_the_place_to_save_is_that_of_the_line_until_another_is_begun(coach: Coach, tmp_path: Path) -> None:
+    path = tmp_path / "line.txt"
+    assert coach.save_path().name.startswith("line-20")
+    asked(coach, ReplaceText(0, 0, "G4 A4"), Save(str(path)))
+    assert coach.save_path() == path
+    asked(coach, Fresh())
+    assert coach.save_path() != path
+    asked(coach, Open(str(path)))
+    assert coach.save_path() == path
+
+
 def test_a_line_that_cannot_be_saved_is_kept_and_that_is_said(coach: Coach, tmp_path: Path) -> None:
     (tmp_path / "file").write_text("in the way")
     path = tmp_path / "file" / "line.txt"
@@ -228,7 +267,7 @@ def test_a_line_that_cannot_be_saved_is_kept_and_that_is_said(coach: Coach, tmp_
     ("content", "said"),
     [
         (None, "no such file or directory; name a file of note text"),
-        (b"\xff\xfe\x00", "byte 0 is not UTF-8 text"),
+        (b"\xff\xfe\x00", "byte 2 is not UTF-16 text"),
     ],
 )
 def test_a_file_that_cannot_be_opened_is_refused(
@@ -342,6 +381,18 @@ def test_each_note_that_ends_is_told_with_what_was_known_then(hands: Hands, cloc
     clock.now_s = 5.0
     coach.turn()
     assert [view.n_notes for view in told] == [1, 2]
+
+
+def test_a_chord_is_told_once_and_a_grace_note_beside_its_main_note(hands: Hands, clock: StillClock) -> None:
+    told: list[str] = []
+    coach = Coach(begin(PACK, ONLY), hands, clock, on_note=lambda view: told.append(view.tokens[-1]))
+    keys = InputKind.KEYS
+    chord = NoteOn(0.0, 60, 6000.0, keys), NoteOn(0.01, 72, 7200.0, keys), NoteOff(0.5, 60), NoteOff(0.5, 72)
+    grace = NoteOn(1.0, 71, 7100.0, keys), NoteOn(1.02, 69, 6900.0, keys), NoteOff(1.06, 71)
+    hands.events = [*chord, *grace, NoteOn(1.5, 71, 7100.0, keys), NoteOff(1.9, 71)]
+    clock.now_s = 2.0
+    coach.turn()
+    assert [token[:3] for token in told] == ["C5~", "B4~", "A4~", "B4~"]
 
 
 def test_text_put_behind_the_line_is_told_note_by_note_with_its_marks(

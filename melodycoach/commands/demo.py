@@ -22,5 +22,7 @@ def add_demo(commands: Any) -> None:
 def _run(options: argparse.Namespace) -> int:
     from melodycoach.app import Settings
 
-    settings = Settings(port=options.port, log=not options.no_log, demo=True, fast=options.fast)
+    settings = Settings(
+        port=options.port, keys=options.keys, log=not options.no_log, demo=True, fast=options.fast
+    )
     return run_live(settings, plain=options.plain)

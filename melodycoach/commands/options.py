@@ -67,6 +67,7 @@ def add_aim(command: Any) -> None:
 def add_live(command: Any) -> None:
     """Add what a live session can be told."""
     command.add_argument("--port", metavar="NAME", help="MIDI input; a part of its name will do")
+    command.add_argument("--keys", metavar="PROFILE", help="what your keyboard does not say: a profile of it")
     command.add_argument("--plain", action="store_true", help="one line of text a note, no full screen")
     command.add_argument("--no-log", action="store_true", help="keep no event log of the session")
 

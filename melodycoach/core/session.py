@@ -1,13 +1,14 @@
 """A session: what the events so far have made of the line, and how it is scored.
 
-`apply` is the only way in which a session changes: session and event in, session out. It first
-settles what the time of the event says by itself (the sounding note has grown, a silence has
-become a breath), so a session does not depend on how often the clock was read: the recorded
-events alone give it again.
+`apply` is the only way in which a session changes: session and event in, session out. One melody
+line is taken out of what is played by the rules of `melodycoach.core.melody`, which also say what
+the mere passing of time makes of it (the sounding note has grown, a silence has become a breath).
+A session does not depend on how often the clock was read: the recorded events alone give it again.
 
 Conventions
 -----------
-One melody line is taken out of what is played by the rules of `melodycoach.core.melody`.
+A bend that leaves the newest note where it is does not touch the line: the note's growth is written
+down with the next event of another kind, or when the clock is looked at.
 """
 
 from __future__ import annotations
@@ -30,13 +31,14 @@ from melodycoach.core.event import (
     TimePassed,
     Undone,
 )
-from melodycoach.core.melody import is_struck_with, mark_of_silence
+from melodycoach.core.line_rules import LineRules, Taking
+from melodycoach.core.melody import Step, let_go, take
 from melodycoach.core.model import build_model
 from melodycoach.core.note import PACE_NOTES, Heard, Item, Mark, Note, hear, shared_start
 from melodycoach.core.scorer import ScorerState, advance, start
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Iterable, Sequence
 
     from melodycoach.core.mode import Mode, ModePack
     from melodycoach.core.model import ScoringModel
@@ -44,6 +46,9 @@ if TYPE_CHECKING:
 
 UNDO_LIMIT = 200
 """How many changes of the line can be taken back."""
+
+
+NOTHING_PLAYED = Taking()
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -57,7 +62,8 @@ class Line:
     heard
         The notes as the scorer hears them, one for each note.
     states
-        ``states[k]`` is the scorer's state after k notes; one more than there are notes.
+        ``states[k]`` is the scorer's state after k notes; one more than there are notes. With none
+        at all the line is not scored.
     last_note_at
         Index in ``items`` of the last note, -1 when there is none.
     """
@@ -79,8 +85,15 @@ def empty_line(model: ScoringModel) -> Line:
     return Line((), (), (start(model),), -1)
 
 
+def _unscored(items: Sequence[Item]) -> Line:
+    """Give a line that is not scored, and stays so whatever becomes of it: it has no states."""
+    return Line(tuple(items), (), (), _last_note_at(items))
+
+
 def rewrite(model: ScoringModel, line: Line, items: Sequence[Item]) -> Line:
     """Give the line with other items; what stays the same from the start is not scored again."""
+    if not line.states:
+        return _unscored(items)
     return _scored(model, line, tuple(items), hear(items), 0, _last_note_at(items))
 
 
@@ -91,6 +104,8 @@ def extend(model: ScoringModel, line: Line, *items: Item) -> Line:
 
 def _with_tail(model: ScoringModel, line: Line, items: tuple[Item, ...]) -> Line:
     """Hear again from the last note of ``line`` on; all items before it are unchanged."""
+    if not line.states:
+        return _unscored(items)
     first, n_known = max(line.last_note_at, 0), 0
     while first > 0 and n_known < PACE_NOTES:
         first -= 1
@@ -132,13 +147,8 @@ class SessionState:
         The mode that the player aims at, or None.
     line
         Since the last fresh start.
-    sounding
-        Voice of the newest note while its key is down, or None.
-    played_last
-        The newest change of the line was a played note: only then is the silence after it written
-        down, so that a mark which the player takes out stays out.
-    now_s
-        Time of the last event.
+    taking
+        What is remembered of the playing, and the rules by which a line is taken out of it.
     past, future
         Items of the lines that undo and redo go to, nearest last.
     """
@@ -149,9 +159,7 @@ class SessionState:
     only: tuple[str, ...] = ()
     final_cents: float | None = None
     target: Mode | None = None
-    sounding: int | None = None
-    played_last: bool = False
-    now_s: float = 0.0
+    taking: Taking = NOTHING_PLAYED
     past: tuple[tuple[Item, ...], ...] = ()
     future: tuple[tuple[Item, ...], ...] = ()
 
@@ -159,6 +167,25 @@ class SessionState:
     def reading(self) -> PitchReading:
         """What is known of the final."""
         return self.model.reading
+
+    @property
+    def now_s(self) -> float:
+        """Time of the last event."""
+        return self.taking.now_s
+
+    @property
+    def sounding(self) -> int | None:
+        """Voice of the newest note while its key is down, or None."""
+        return self.taking.sounding
+
+    @property
+    def played_last(self) -> bool:
+        """Whether the newest change of the line was a played note.
+
+        Only then is the silence after it written down, so that a mark which the player takes out
+        stays out.
+        """
+        return self.taking.note is not None
 
 
 def begin(
@@ -168,8 +195,9 @@ def begin(
     final_cents: float | None = None,
     target: str | None = None,
     parameters: ScoringParameters | None = None,
+    rules: LineRules | None = None,
 ) -> SessionState:
-    """Begin a session with an empty line.
+    """Begin a session with an empty line; ``rules`` is what the player has chosen of those of the line.
 
     Raises
     ------
@@ -178,7 +206,13 @@ def begin(
     """
     model = build_model(pack, pack.restrict(only), reading, final_cents, parameters)
     return SessionState(
-        pack, model, empty_line(model), only, final_cents, pack.find(target) if target else None
+        pack,
+        model,
+        empty_line(model),
+        only,
+        final_cents,
+        pack.find(target) if target else None,
+        NOTHING_PLAYED if rules is None else Taking(rules),
     )
 
 
@@ -193,14 +227,8 @@ def apply(session: SessionState, event: Event) -> SessionState:
     UnknownModeError
         The event names a mode that the pack does not have.
     """
-    session = _settle(session, event.at_s)
+    session = _played(session, event)
     match event:
-        case NoteOn():
-            return _note_on(session, event)
-        case NoteOff():
-            return replace(session, sounding=None) if event.voice == session.sounding else session
-        case PitchMoved():
-            return _pitch_moved(session, event)
         case LineEdited():
             return _edited(session, event)
         case Undone():
@@ -208,7 +236,8 @@ def apply(session: SessionState, event: Event) -> SessionState:
         case Redone():
             return _redone(session)
         case FreshStart():
-            return _changed(session, empty_line(session.model)) if session.line.items else session
+            emptied = rewrite(session.model, session.line, ())
+            return _changed(session, emptied) if session.line.items else session
         case TargetChosen():
             target = session.pack.find(event.mode_id) if event.mode_id else None
             return replace(session, target=target)
@@ -216,20 +245,38 @@ def apply(session: SessionState, event: Event) -> SessionState:
             return _rebuilt(session, session.only, event.reading, event.final_cents)
         case ModesRestricted():
             return _rebuilt(session, event.mode_ids, session.reading, session.final_cents)
-        case TimePassed():
+        case NoteOn() | NoteOff() | PitchMoved() | TimePassed():
             return session
 
 
-def _settle(session: SessionState, at_s: float) -> SessionState:
-    """Let time pass: grow the sounding note, or write a long silence down."""
-    at_s = max(at_s, session.now_s)
-    line, note = session.line, session.line.last_note
-    if note is not None and note.beats is None:
-        if session.sounding is not None:
-            line = _last_replaced(session.model, line, replace(note, duration_s=at_s - note.onset_s))
-        elif session.played_last:
-            line = _silence_marked(session.model, line, at_s - note.onset_s - note.duration_s)
-    return replace(session, line=line, now_s=at_s)
+def replay(session: SessionState, events: Iterable[Event]) -> SessionState:
+    """Give the session after many events, as `apply` does one by one; only the last line is scored.
+
+    Raises
+    ------
+    UnknownModeError
+        As for `apply`.
+    """
+    session = replace(session, line=_unscored(session.line.items))
+    for event in events:
+        session = apply(session, event)
+    line = rewrite(session.model, empty_line(session.model), session.line.items)
+    return replace(session, line=line)
+
+
+def _played(session: SessionState, event: Event) -> SessionState:
+    """Let the rules of the line say what playing, and time alone, make of its tail."""
+    taking, changes = take(session.taking, event)
+    session = replace(session, taking=taking)
+    for step, item in changes:
+        if step is Step.BEGUN:
+            line = extend(session.model, session.line, item)
+            session = replace(session, line=line, past=_with_present(session), future=())
+        elif isinstance(item, Note):
+            session = replace(session, line=_last_replaced(session.model, session.line, item))
+        elif isinstance(item, Mark):
+            session = replace(session, line=_silence_marked(session.model, session.line, item))
+    return session
 
 
 def _last_replaced(model: ScoringModel, line: Line, note: Note) -> Line:
@@ -237,33 +284,12 @@ def _last_replaced(model: ScoringModel, line: Line, note: Note) -> Line:
     return _with_tail(model, line, (*line.items[:at], note, *line.items[at + 1 :]))
 
 
-def _silence_marked(model: ScoringModel, line: Line, silence_s: float) -> Line:
-    """Write a played silence down as a breath or a phrase end, once it is long enough."""
-    mark = mark_of_silence(silence_s)
+def _silence_marked(model: ScoringModel, line: Line, mark: Mark) -> Line:
+    """Write down what a played silence has become."""
     after = line.items[line.last_note_at + 1 :]
-    if mark is None or after == (mark,) or after not in ((), (Mark.BREATH,)):
-        return line  # too short, written already, or the player has written something else
+    if after == (mark,) or after not in ((), (Mark.BREATH,)):
+        return line  # written already, or the player has written something else
     return _with_tail(model, line, (*line.items[: line.last_note_at + 1], mark))
-
-
-def _note_on(session: SessionState, event: NoteOn) -> SessionState:
-    note, last = Note(event.pitch_cents, session.now_s, 0.0, event.kind), session.line.last_note
-    if session.sounding is not None and last is not None and is_struck_with(last, session.now_s):
-        if note.pitch_cents <= last.pitch_cents:
-            return session
-        top = replace(last, pitch_cents=note.pitch_cents, kind=note.kind)
-        line = _last_replaced(session.model, session.line, top)
-        return replace(session, line=line, sounding=event.voice)
-    line = extend(session.model, session.line, note)
-    return replace(_changed(session, line), sounding=event.voice, played_last=True)
-
-
-def _pitch_moved(session: SessionState, event: PitchMoved) -> SessionState:
-    note = session.line.last_note
-    if event.voice != session.sounding or note is None:
-        return session
-    moved = replace(note, pitch_cents=event.pitch_cents, kind=event.kind)
-    return replace(session, line=_last_replaced(session.model, session.line, moved))
 
 
 def _edited(session: SessionState, event: LineEdited) -> SessionState:
@@ -272,14 +298,20 @@ def _edited(session: SessionState, event: LineEdited) -> SessionState:
         return session
     edited = (*items[: event.start], *event.items, *items[event.stop :])
     line = rewrite(session.model, session.line, edited)
-    sounding = session.sounding if line.last_note is session.line.last_note else None
-    return replace(_changed(session, line), sounding=sounding, played_last=sounding is not None)
+    edited_session = _changed(session, line)
+    if session.sounding is not None and line.last_note is session.line.last_note:
+        return replace(edited_session, taking=session.taking)  # it plays on
+    return edited_session
 
 
 def _changed(session: SessionState, line: Line) -> SessionState:
     """Take the line as a change that undo can take back; any sounding note is left to itself."""
-    past = (*session.past[-(UNDO_LIMIT - 1) :], session.line.items)
-    return replace(session, line=line, past=past, future=(), sounding=None, played_last=False)
+    return replace(session, line=line, past=_with_present(session), future=(), taking=let_go(session.taking))
+
+
+def _with_present(session: SessionState) -> tuple[tuple[Item, ...], ...]:
+    """Give the lines that undo goes to, with the present one as the nearest."""
+    return (*session.past[-(UNDO_LIMIT - 1) :], session.line.items)
 
 
 def _undone(session: SessionState) -> SessionState:
@@ -298,7 +330,7 @@ def _redone(session: SessionState) -> SessionState:
 
 def _went_to(session: SessionState, items: tuple[Item, ...]) -> SessionState:
     line = rewrite(session.model, session.line, items)
-    return replace(session, line=line, sounding=None, played_last=False)
+    return replace(session, line=line, taking=let_go(session.taking))
 
 
 def _rebuilt(
@@ -307,5 +339,5 @@ def _rebuilt(
     """Score the line again with other hypotheses."""
     modes = session.pack.restrict(only)
     model = build_model(session.pack, modes, reading, final_cents, session.model.parameters)
-    line = rewrite(model, empty_line(model), session.line.items)
+    line = rewrite(model, empty_line(model), session.line.items) if session.line.states else session.line
     return replace(session, model=model, only=only, final_cents=final_cents, line=line)

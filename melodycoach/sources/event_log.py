@@ -3,11 +3,15 @@
 Each line is handed to the system whole, so a program that is killed leaves all lines but perhaps
 the last one complete. A write that fails never raises: what could not be written is kept and
 tried again with the next event, in order, so a disk that has room again gets the whole log.
+
+A log is locked while it is written, where the system has such locks: so a session that is running is
+told from one that was cut short. The system lets the lock go with the program, however that ends.
 """
 
 from __future__ import annotations
 
 import os
+import sys
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -22,6 +26,7 @@ from melodycoach.sources.event_json import (
 from melodycoach.sources.near_files import near_files
 
 if TYPE_CHECKING:
+    from collections.abc import Iterable
     from datetime import datetime
     from io import FileIO
     from pathlib import Path
@@ -60,6 +65,54 @@ def log_path(folder: Path, started: datetime) -> Path:
     return path
 
 
+def logs_in(folder: Path) -> tuple[Path, ...]:
+    """Give the logs in a folder, as `log_path` names them, the newest first.
+
+    A folder that is not there or cannot be read has none.
+    """
+    try:
+        found = [path for path in folder.iterdir() if path.name.endswith(SUFFIX)]
+    except OSError:
+        return ()
+    n_of_time = len("2026-05-01-180409")
+    return tuple(
+        sorted(found, key=lambda path: (path.name[:n_of_time], len(path.name), path.name), reverse=True)
+    )
+
+
+def has_line(path: Path) -> bool:
+    """Say whether anything was played or typed in the session of this log; not if it cannot be read."""
+    try:
+        with path.open("rb") as file:
+            return any(b'"note-on"' in line or b'"line-edited"' in line for line in file)
+    except OSError:
+        return False
+
+
+def is_being_written(path: Path) -> bool:
+    """Say whether a running session writes this log."""
+    try:
+        with path.open("rb", buffering=0) as file:
+            return not _lock(file, for_writing=False)
+    except OSError:
+        return False
+
+
+def _lock(file: FileIO, for_writing: bool) -> bool:
+    """Lock a file until it is closed; False: another program holds it."""
+    if sys.platform == "win32":  # nothing to be had there: every log counts as free
+        return True
+    import fcntl
+
+    try:
+        fcntl.flock(file, (fcntl.LOCK_EX if for_writing else fcntl.LOCK_SH) | fcntl.LOCK_NB)
+    except BlockingIOError:
+        return False
+    except OSError:  # a disk without locks
+        return True
+    return True
+
+
 class EventLog:
     """Writes a log as things happen. It never raises; `fault` says what went wrong first.
 
@@ -91,6 +144,7 @@ class EventLog:
             path.parent.mkdir(parents=True, exist_ok=True)
             self._file = path.open("ab", buffering=0)
             taken = os.fstat(self._file.fileno()).st_size > 0
+            _lock(self._file, for_writing=True)
         except OSError as error:
             self._give_up(f"{path}: {system_reason(error)}")
         else:
@@ -106,13 +160,18 @@ class EventLog:
         str or None
             The fault, the first time that there is one; the same text stays in `fault`.
         """
+        return self.append_all((event,))
+
+    def append_all(self, events: Iterable[Event]) -> str | None:
+        """Write several events at once; as `append`."""
         before = self.fault
-        try:
-            line = event_to_json(event)
-        except (TypeError, ValueError) as error:  # not a value that JSON has
-            self.fault = self.fault or f"{self.path}: event {event!r} cannot be written: {error}"
-        else:
-            self._write(line)
+        lines = []
+        for event in events:
+            try:
+                lines.append(event_to_json(event))
+            except (TypeError, ValueError) as error:  # not a value that JSON has
+                self.fault = self.fault or f"{self.path}: event {event!r} cannot be written: {error}"
+        self._write(*lines)
         return self.fault if before is None else None
 
     def close(self) -> str | None:
@@ -137,10 +196,10 @@ class EventLog:
         """Close the log."""
         self.close()
 
-    def _write(self, line: str) -> None:
+    def _write(self, *lines: str) -> None:
         if self._file is None:
             return
-        self._waiting += line.encode("utf-8", "surrogatepass") + b"\n"
+        self._waiting += b"".join(line.encode("utf-8", "surrogatepass") + b"\n" for line in lines)
         self._flush()
         if len(self._waiting) > WAITING_LIMIT_BYTES:
             self._give_up("")

@@ -7,11 +7,9 @@ channels, wherever in the file these stand. A pedal does not prolong a note.
 
 from __future__ import annotations
 
-from itertools import pairwise
 from math import floor
 from typing import TYPE_CHECKING
 
-from melodycoach.core.event import NoteOff, NoteOn
 from melodycoach.core.melody import take_melody_indexed
 from melodycoach.core.note import InputKind, Mark, Note
 from melodycoach.core.pitch import COMMAS_53, KEY_CENTS, KEY_NAMES, fold_name
@@ -100,8 +98,8 @@ def read_midi(
     messages = [*ranges, *messages]
     times = midi.tempo_map(part.track)
     events, ticks = _play(part, messages, tracker, times)
-    line, heard = take_melody_indexed(events)
-    spans = _spans(events, ticks, heard)
+    line, events_of_notes = take_melody_indexed(events)
+    spans = [(ticks[first], ticks[last]) for first, last in events_of_notes]
     signatures = midi.signatures(part.track)
     bars = None if midi.division.is_seconds else BarMap(int(midi.division.ticks), signatures)
     places = tuple(_place(bars, start, times.seconds(start)) for start, _ in spans)
@@ -141,24 +139,6 @@ def _play(
     end = part.track.end_tick
     ended = tracker.silence(times.seconds(end))
     return [*events, *ended], [*ticks, *([end] * len(ended))]
-
-
-def _spans(events: Sequence[Event], ticks: Sequence[int], heard: Sequence[int]) -> list[Span]:
-    """Give the ticks at which the notes of a line start and end, from the places of their note-ons.
-
-    As in the line, a note ends when its key comes up, and at the latest when the next one starts.
-    """
-    spans = []
-    for place, following in pairwise((*heard, len(events))):
-        started = events[place]
-        assert isinstance(started, NoteOn)
-        own_end = (
-            at
-            for at in range(place + 1, following)
-            if isinstance(ended := events[at], NoteOff) and ended.voice == started.voice
-        )
-        spans.append((ticks[place], ticks[next(own_end, min(following, len(events) - 1))]))
-    return spans
 
 
 def _written(

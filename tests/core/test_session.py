@@ -22,10 +22,11 @@ from melodycoach.core.event import (
     TimePassed,
     Undone,
 )
+from melodycoach.core.line_rules import LineRules
 from melodycoach.core.melody import BREATH_GAP_S, PHRASE_GAP_S
 from melodycoach.core.note import InputKind, Mark, Note, hear
 from melodycoach.core.scorer import advance, mode_posterior, start
-from melodycoach.core.session import UNDO_LIMIT, SessionState, apply, begin
+from melodycoach.core.session import UNDO_LIMIT, SessionState, apply, begin, replay
 from melodycoach.errors import UnknownModeError
 from melodycoach.sources.pack_file import load_pack
 
@@ -65,6 +66,42 @@ def test_a_held_drone_does_not_come_back_when_the_newer_note_ends() -> None:
     )
     assert len(session.line.heard) == 2
     assert session.sounding is None
+
+
+def test_a_key_that_waited_is_heard_as_time_passes_and_can_be_taken_back() -> None:
+    grace = NoteOn(0.0, 71, 7100.0, KEYS), NoteOn(0.02, 69, 6900.0, KEYS), NoteOff(0.06, 71)
+    session = played(*grace)
+    assert (len(session.line.heard), session.sounding) == (1, None)
+    session = played(TimePassed(0.2), session=session)
+    assert [note.pitch_cents for note in session.line.items] == [7100.0, 6900.0]
+    assert session.sounding == 69
+    assert len(played(Undone(0.3), session=session).line.items) == 1
+
+
+def test_a_note_changed_by_hand_while_a_key_waits_keeps_the_line_as_it_was_written() -> None:
+    session = played(NoteOn(0.0, 71, 7100.0, KEYS), NoteOn(0.02, 69, 6900.0, KEYS), NoteOff(0.06, 71))
+    session = played(LineEdited(0.07, 0, 1, (typed(7200.0),)), TimePassed(5.0), session=session)
+    assert session.line.items == (typed(7200.0),)
+
+
+def test_a_session_can_have_a_split_key() -> None:
+    session = begin(PACK, ONLY, rules=LineRules(split_key=60))
+    session = played(NoteOn(0.0, 69, 6900.0, KEYS), NoteOn(0.5, 59, 5900.0, KEYS), session=session)
+    assert (len(session.line.items), session.sounding) == (1, 69)
+
+
+def test_an_edit_elsewhere_lets_the_sounding_note_play_on() -> None:
+    before = LineEdited(0.0, 0, 0, (typed(6900.0), typed(7100.0)))
+    session = played(before, NoteOn(1.0, 72, 7200.0, KEYS), LineEdited(1.5, 0, 1, ()), TimePassed(2.0))
+    assert session.sounding == 72
+    assert session.line.items == (typed(7100.0), Note(7200.0, 1.0, 1.0, KEYS))
+
+
+def test_a_bend_that_changes_nothing_costs_no_scoring() -> None:
+    session = played(NoteOn(0.0, 71, 7100.0, KEYS), TimePassed(0.5))
+    bent = played(PitchMoved(0.6, 71, 7101.0, InputKind.TUNED), session=session)
+    assert bent.line is session.line
+    assert played(TimePassed(0.7), session=bent).line.items == (Note(7100.0, 0.0, 0.7, KEYS),)
 
 
 def test_a_bend_that_moves_changes_the_sounding_note_and_makes_no_new_one() -> None:
@@ -226,6 +263,17 @@ def test_the_line_is_scored_as_if_it_had_been_heard_at_once(events: list[Event])
     assert np.allclose(
         mode_posterior(session.model, session.line.states[-1]), mode_posterior(session.model, state)
     )
+
+
+@settings(max_examples=60, deadline=None)
+@given(performances(), st.integers(0, 12), st.integers(0, 12))
+def test_a_replay_is_the_session_that_was_played(events: list[Event], cut: int, fresh: int) -> None:
+    at_s = events[min(fresh, len(events) - 1)].at_s
+    chosen = FreshStart(at_s), ReadingChosen(at_s, PitchReading.ANY), ModesRestricted(at_s, ONLY[:2])
+    whole = [*events[:fresh], *chosen, *events[fresh:]]
+    replayed = replay(played(*whole[:cut]), whole[cut:])
+    assert same(replayed, played(*whole))
+    assert (replayed.model.reading, replayed.taking) == (PitchReading.ANY, played(*whole).taking)
 
 
 @settings(max_examples=60, deadline=None)

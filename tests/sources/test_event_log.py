@@ -18,7 +18,15 @@ from melodycoach.core.note import InputKind
 from melodycoach.errors import EventLogError, StorageError
 from melodycoach.sources import event_log
 from melodycoach.sources.event_json import LogHeader
-from melodycoach.sources.event_log import EventLog, RecordedLog, log_path, read_event_log
+from melodycoach.sources.event_log import (
+    EventLog,
+    RecordedLog,
+    has_line,
+    is_being_written,
+    log_path,
+    logs_in,
+    read_event_log,
+)
 
 STARTED = datetime(2026, 5, 1, 18, 4, 9)
 HEADER = LogHeader("0.1.0", STARTED, "makam", {"pitch": "written", "only": ["rast", "mahur"]})
@@ -176,6 +184,59 @@ def test_an_event_that_cannot_be_written_is_said_and_the_rest_goes_on(tmp_path: 
         )
         assert log.append(PHRASE[0]) is None
     assert read_event_log(path).events == PHRASE[:1]
+
+
+def test_of_several_events_those_that_can_be_written_are(tmp_path: Path) -> None:
+    path = tmp_path / "take.events.jsonl"
+    with EventLog(path, HEADER) as log:
+        fault = log.append_all((PHRASE[0], FreshStart(float("inf")), PHRASE[1]))
+        assert fault is not None
+        assert "event FreshStart(at_s=inf) cannot be written" in fault
+    assert read_event_log(path).events == PHRASE[:2]
+
+
+def test_a_folder_that_is_not_there_has_no_logs_and_other_files_are_none(tmp_path: Path) -> None:
+    assert logs_in(tmp_path / "nowhere") == ()
+    (tmp_path / "notes.txt").write_text("A4", encoding="utf-8")
+    assert logs_in(tmp_path) == ()
+
+
+def test_a_log_has_a_line_once_something_was_played_or_typed(tmp_path: Path) -> None:
+    path = tmp_path / "take.events.jsonl"
+    assert not has_line(path)
+    write(path, PHRASE[1:])
+    assert not has_line(path)
+    path.unlink()
+    write(path, PHRASE)
+    assert has_line(path)
+
+
+@pytest.mark.skipif(sys.platform == "win32", reason="no such locks there")
+def test_a_log_is_being_written_until_it_is_closed(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    import fcntl
+
+    path = tmp_path / "take.events.jsonl"
+    assert not is_being_written(path)
+    with EventLog(path, HEADER):
+        assert is_being_written(path)
+        monkeypatch.setattr(fcntl, "flock", no_locks)
+        assert not is_being_written(path)  # nothing is known: it counts as free
+        monkeypatch.undo()
+    assert not is_being_written(path)
+
+
+def no_locks(*_: object) -> None:
+    raise OSError(95, "Operation not supported")
+
+
+@pytest.mark.skipif(sys.platform == "win32", reason="no such locks there")
+def test_a_disk_without_locks_gets_its_log_all_the_same(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("fcntl.flock", no_locks)
+    path = tmp_path / "take.events.jsonl"
+    write(path)
+    assert read_event_log(path).events == PHRASE
 
 
 def test_a_last_line_cut_short_is_left_out_and_said_at_every_place(tmp_path: Path) -> None:
