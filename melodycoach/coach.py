@@ -77,6 +77,8 @@ TICK_S = 0.1
 TURN_S = 0.001
 """How long the owner sleeps between two turns."""
 
+LET_GO = "the line had grown long: its first {} notes and marks are in the log now, and undo brings them back"
+
 REFUSALS_KEPT = 8
 
 COMMENT_REFUSED = (
@@ -173,10 +175,12 @@ class Coach:
         after = apply(before, event)
         if self._log is not None and (fault := self._log.append(event)):
             self._warning = fault
-        begins = after.line.last_note_at > before.line.last_note_at
+        begins = after.past is not before.past
         if isinstance(event, NoteOn) and begins and before.sounding is not None:
             self.session = before
             self._tell(event)  # the note that this one ends, before the new one is heard
+        if isinstance(event, NoteOn) and len(after.line.items) < len(before.line.items):
+            self._notice = LET_GO.format(len(before.line.items) - len(after.line.items) + 1)
         self.session = after
         ends_a_note = isinstance(event, NoteOff) and event.voice == before.sounding
         if ends_a_note or isinstance(event, LineEdited):

@@ -242,6 +242,23 @@ def test_a_saved_line_opens_again_as_it_was(coach: Coach, tmp_path: Path) -> Non
     assert view.in_view == "Rast"
 
 
+def test_what_is_let_go_of_a_long_line_is_said(
+    coach: Coach, hands: Hands, clock: StillClock, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("melodycoach.core.session.LONGEST_LINE", 8)
+    monkeypatch.setattr("melodycoach.core.session.SHORTEST_LIMIT", 8)
+    monkeypatch.setattr("melodycoach.core.session.KEPT_OF_LINE", 3)
+    for number in range(9):
+        hands.events = [NoteOn(number / 4, 69 + number % 3, 6900.0 + 100 * (number % 3), InputKind.KEYS)]
+        clock.now_s = number / 4
+        coach.turn()
+    assert len(coach.view.tokens) == 4
+    assert coach.view.status.notice == (
+        "the line had grown long: its first 5 notes and marks are in the log now, and undo brings them back"
+    )
+    assert len(asked(coach, Undo()).tokens) == 8
+
+
 def test_the_place_to_save_is_that_of_the_line_until_another_is_begun(coach: Coach, tmp_path: Path) -> None:
     path = tmp_path / "line.txt"
     assert coach.save_path().name.startswith("line-20")

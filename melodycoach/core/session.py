@@ -44,6 +44,14 @@ if TYPE_CHECKING:
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.parameters import ScoringParameters
 
+LONGEST_LINE, KEPT_OF_LINE = 4000, 1000
+"""A played line that grows beyond so many notes, silences and marks begins anew with the newest of them;
+what is let go is in the log, and undo brings it back."""
+
+SHORTEST_LIMIT = 600
+"""However many hypotheses there are, a line may grow so long; with many of them each note takes more
+memory, and `LONGEST_LINE` holds for one hypothesis of each mode."""
+
 UNDO_LIMIT = 200
 """How many changes of the line can be taken back."""
 
@@ -270,13 +278,24 @@ def _played(session: SessionState, event: Event) -> SessionState:
     session = replace(session, taking=taking)
     for step, item in changes:
         if step is Step.BEGUN:
-            line = extend(session.model, session.line, item)
+            line = extend(session.model, _not_too_long(session.model, session.line), item)
             session = replace(session, line=line, past=_with_present(session), future=())
         elif isinstance(item, Note):
             session = replace(session, line=_last_replaced(session.model, session.line, item))
         elif isinstance(item, Mark):
             session = replace(session, line=_silence_marked(session.model, session.line, item))
     return session
+
+
+def _not_too_long(model: ScoringModel, line: Line) -> Line:
+    """Let go of the beginning of a line that has grown too long; it then begins with a note."""
+    finals = len(model.mode_index) // model.n_modes
+    longest = max(LONGEST_LINE // finals, SHORTEST_LIMIT)
+    if len(line.items) < longest:
+        return line
+    first = len(line.items) - min(KEPT_OF_LINE, longest // 2)
+    first = next((at for at in range(first, len(line.items)) if isinstance(line.items[at], Note)), first)
+    return rewrite(model, empty_line(model) if line.states else line, line.items[first:])
 
 
 def _last_replaced(model: ScoringModel, line: Line, note: Note) -> Line:

@@ -295,3 +295,40 @@ def test_apply_leaves_the_session_it_was_given_alone(events: list[Event]) -> Non
     assert session.line.items is items
     assert session.line is before.line
     assert all(np.array_equal(a, b.loglik) for a, b in zip(logliks, session.line.states, strict=True))
+
+
+def played_notes(n_notes: int, session: SessionState = EMPTY) -> SessionState:
+    for number in range(n_notes):
+        key = (69, 71, 72, 74)[number % 4]
+        session = apply(session, NoteOn(number * 0.5, key, 100.0 * key, KEYS))
+        session = apply(session, NoteOff(number * 0.5 + 0.4, key))
+    return session
+
+
+def test_a_line_that_has_grown_too_long_begins_anew_with_its_newest_notes(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    monkeypatch.setattr("melodycoach.core.session.LONGEST_LINE", 30)
+    monkeypatch.setattr("melodycoach.core.session.SHORTEST_LIMIT", 20)
+    monkeypatch.setattr("melodycoach.core.session.KEPT_OF_LINE", 10)
+    full = played_notes(30)
+    assert len(full.line.items) == 30
+    one_more = played_notes(31)
+    assert one_more.line.items == (*full.line.items[20:], one_more.line.last_note)
+    assert one_more.line.heard == hear(one_more.line.items)
+    assert apply(one_more, Undone(99.0)).line.items == full.line.items
+    anywhere = begin(PACK, ONLY, PitchReading.ANY)  # 53 finals of each mode
+    assert len(played_notes(21, anywhere).line.items) == 11
+
+
+def test_a_line_with_a_long_past_is_replayed_as_it_was_played(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("melodycoach.core.session.LONGEST_LINE", 30)
+    monkeypatch.setattr("melodycoach.core.session.SHORTEST_LIMIT", 20)
+    monkeypatch.setattr("melodycoach.core.session.KEPT_OF_LINE", 10)
+    events: list[Event] = []
+    for number in range(75):
+        events += [
+            NoteOn(number * 0.5, 60 + number % 5, 6000.0 + 100 * (number % 5), KEYS),
+            NoteOff(number * 0.5 + 0.4, 60 + number % 5),
+        ]
+    assert replay(EMPTY, events).line.items == played(*events).line.items
