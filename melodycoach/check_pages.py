@@ -7,10 +7,11 @@ from pathlib import Path, PurePath
 from typing import TYPE_CHECKING, Any
 
 from melodycoach import __version__
-from melodycoach.report.check_data import check_json
-from melodycoach.report.check_page import check_page
+from melodycoach.report.check_data import FORMAT, check_json
+from melodycoach.report.check_page import check_page, whole_page
+from melodycoach.report.page_html import Html
 from melodycoach.report.page_index import IndexEntry, index_entry, index_page
-from melodycoach.storing import write_whole
+from melodycoach.storing import refuse_to_lose, write_whole
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator, Sequence
@@ -18,6 +19,12 @@ if TYPE_CHECKING:
 INDEX, DATA = "index.html", "answers.json"
 LONGEST_NAME = 80
 """The name of a page is cut after so many characters."""
+
+PAGE_SIGN = whole_page("", Html("")).partition("sha256-")[0]
+"""Every page of ours begins so, up to the name of its script: by this one of an older version is known."""
+
+DATA_SIGN = json.dumps({"format": FORMAT})[:-1]
+"""The data begin so."""
 
 
 def page_names(files: Sequence[str]) -> tuple[str, ...]:
@@ -44,6 +51,39 @@ def _plain(stem: str) -> str:
     return kept[:LONGEST_NAME] or "line"
 
 
+def refuse_to_lose_a_file(page: Path, files: Sequence[str]) -> None:
+    """Refuse to write a page onto one of the files that are checked, or onto what is no page of ours.
+
+    Raises
+    ------
+    StorageError
+        The file would be lost.
+    """
+    refuse_to_lose(page, [Path(name) for name in files], PAGE_SIGN)
+
+
+def refuse_to_lose_files(folder: Path, names: Sequence[str], files: Sequence[str]) -> None:
+    """Refuse the same of a folder of pages.
+
+    Parameters
+    ----------
+    folder
+        Where the pages are to be written.
+    names
+        The name of the page of each file.
+    files
+        The files that are checked.
+
+    Raises
+    ------
+    StorageError
+        A file would be lost.
+    """
+    for name in (*names, INDEX):
+        refuse_to_lose_a_file(folder / name, files)
+    refuse_to_lose(folder / DATA, [Path(name) for name in files], DATA_SIGN)
+
+
 def write_pages(folder: Path, names: Sequence[str], answers: Iterable[dict[str, Any]]) -> None:
     """Write the pages, the index and the data into a folder.
 
@@ -53,7 +93,7 @@ def write_pages(folder: Path, names: Sequence[str], answers: Iterable[dict[str, 
     Parameters
     ----------
     folder
-        It is made if it is not there; files of the same names are replaced.
+        It is made if it is not there; files of the same names are replaced (see `refuse_to_lose_files`).
     names
         The name of the page of each answer.
     answers

@@ -26,6 +26,9 @@ if TYPE_CHECKING:
     from melodycoach.core.model import ScoringModel
     from melodycoach.core.sheet import Sheet
 
+MOST_NOTES = 20_000
+"""A line of more notes is not checked: a song has hundreds, and each takes time and memory."""
+
 _MODELS_KEPT = 16  # files with finals of their own would otherwise fill the memory
 
 
@@ -166,13 +169,19 @@ def aim_of(question: Question, sheet: Sheet, where: str) -> tuple[Sheet, Mode | 
     Raises
     ------
     NoteTextError, MusicFileError
-        There are no notes in it.
+        There are no notes in it, or more than `MOST_NOTES`.
     UnknownModeError
         Note text names a mode that the pack does not have.
     """
-    if not any(isinstance(item, Note) for item in sheet.items):
-        wrong = NoteTextError if sheet.kind is SheetKind.NOTE_TEXT else MusicFileError
+    n_notes = sum(isinstance(item, Note) for item in sheet.items)
+    wrong = NoteTextError if sheet.kind is SheetKind.NOTE_TEXT else MusicFileError
+    if not n_notes:
         raise wrong(f"{where}: no notes in it, expected at least one")
+    if n_notes > MOST_NOTES:
+        raise wrong(
+            f"{where}: a line of {n_notes:,} notes, expected at most {MOST_NOTES:,}; "
+            "cut it into parts and check each of them"
+        )
     asked = question.stay_in or question.target
     if asked is not None or not sheet.mode:
         return sheet, asked

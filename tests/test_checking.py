@@ -4,14 +4,16 @@ from __future__ import annotations
 
 import io
 import sys
+from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
 import pytest
 
 from melodycoach import checking
-from melodycoach.checking import Question, aim_of, answer, answers
+from melodycoach.checking import MOST_NOTES, Question, aim_of, answer, answers
 from melodycoach.core.event import PitchReading
-from melodycoach.core.sheet import Sheet, SheetKind
+from melodycoach.core.note import Note, Silence
+from melodycoach.core.sheet import Place, Sheet, SheetKind
 from melodycoach.errors import MelodycoachError, MusicFileError, NoteTextError, StorageError, UsageError
 from melodycoach.sources.pack_file import load_pack
 from melodycoach.sources.sheet_file import ReadOptions, read_note_sheet
@@ -132,6 +134,29 @@ def test_a_score_without_notes_is_refused_as_a_file_of_music() -> None:
     for kind, wrong in ((SheetKind.MUSIC_XML, MusicFileError), (SheetKind.NOTE_TEXT, NoteTextError)):
         with pytest.raises(wrong, match=r"^a: no notes in it"):
             aim_of(Question(PACK, ONLY), Sheet(kind, (), ()), "a")
+
+
+@pytest.mark.parametrize("kind", [SheetKind.NOTE_TEXT, SheetKind.MIDI])
+def test_a_line_of_too_many_notes_is_refused_before_it_is_checked(kind: SheetKind) -> None:
+    note = Note(6900.0, 0.0, 1.0, beats=1.0)
+    longest = Sheet(kind, (*(note,) * MOST_NOTES, Silence(1.0, beats=1.0)), (Place(),) * MOST_NOTES)
+    assert aim_of(Question(PACK, ONLY), longest, "a")[0] is longest
+    wrong = NoteTextError if kind is SheetKind.NOTE_TEXT else MusicFileError
+    with pytest.raises(wrong) as error:
+        aim_of(Question(PACK, ONLY), replace(longest, items=(*longest.items, note)), "a")
+    assert str(error.value) == (
+        "a: a line of 20,001 notes, expected at most 20,000; cut it into parts and check each of them"
+    )
+
+
+def test_the_cap_holds_for_a_file(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(checking, "MOST_NOTES", 18)
+    path = saved(tmp_path, LINE)
+    assert answer(Question(PACK, ONLY), path)["error"] == (
+        f"{path}: a line of 19 notes, expected at most 18; cut it into parts and check each of them"
+    )
+    monkeypatch.setattr(checking, "MOST_NOTES", 19)
+    assert "error" not in answer(Question(PACK, ONLY), path)
 
 
 @pytest.mark.parametrize(

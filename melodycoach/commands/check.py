@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
-from melodycoach.commands.check_answers import print_answers, print_pages
+from melodycoach.commands.check_answers import print_answers, print_pages, refuse_to_lose_files
 from melodycoach.commands.check_watch import watch
 from melodycoach.commands.options import (
     add_aim,
@@ -75,6 +75,7 @@ def _run(options: argparse.Namespace) -> int:
     files = tuple(dict.fromkeys(options.files))
     _refuse_what_does_not_go_together(options, files)
     question = _question(options, strict=len(files) == 1)
+    refuse_to_lose_files(options, files)
     if options.watch:
         return watch(options, question, files)
     from melodycoach.checking import answers

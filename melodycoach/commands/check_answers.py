@@ -84,6 +84,24 @@ def _in_colour(asked: str) -> bool:
     return sys.stdout.isatty() and not plain
 
 
+def refuse_to_lose_files(options: argparse.Namespace, files: Sequence[str]) -> None:
+    """Refuse to write pages where something would be lost: before anything is answered.
+
+    Raises
+    ------
+    StorageError
+        A file that is checked, or that is no page of ours, stands there.
+    """
+    if options.out is not None:
+        from melodycoach import check_pages
+
+        check_pages.refuse_to_lose_files(Path(options.out), check_pages.page_names(files), files)
+    elif options.html not in (None, "-"):
+        from melodycoach import check_pages
+
+        check_pages.refuse_to_lose_a_file(Path(options.html), files)
+
+
 def write_page(name: str, answer: dict[str, Any]) -> None:
     """Write the page of an answer into a file, or print it where that is asked for."""
     from melodycoach.report.check_page import check_page

@@ -11,6 +11,7 @@ Notes are counted from 1. A *stretch* is what lies between two changes of mode.
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -157,7 +158,7 @@ class Checked:
 
     def stretch_at(self, number: int) -> Stretch:
         """Give the stretch that a note lies in."""
-        return next(one for one in self.stretches if one.span.first <= number <= one.span.last)
+        return self.stretches[bisect_right(self.stretches, number, key=lambda one: one.span.first) - 1]
 
 
 def check_sheet(model: ScoringModel, sheet: Sheet, target: Mode | None = None) -> Checked:

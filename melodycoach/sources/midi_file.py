@@ -125,9 +125,8 @@ class _Reader:
         start, file_format, n_said, division = self._header(where)
         self._chunks(start)
         if len(self._tracks) < n_said:
-            self._losses.append(
-                f"the file says that it holds {n_said} tracks, and {len(self._tracks)} were found"
-            )
+            said = "1 track" if n_said == 1 else f"{n_said} tracks"
+            self._losses.append(f"the file says that it holds {said}, and {len(self._tracks)} were found")
         return MidiFile(
             division,
             tuple(self._tracks),

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import re
 import unicodedata
-from difflib import get_close_matches
+from difflib import SequenceMatcher, get_close_matches
 from typing import TYPE_CHECKING
 
 from melodycoach.core.note import Note
@@ -162,10 +162,27 @@ def _names(body: str, names: PitchNames) -> Iterator[str]:
         found = read_token(tokens[wanted], names)
         if isinstance(found, Note):
             yield f"{SEMITONES_12.spell(round(found.pitch_cents / 100) - 69)}~"
-    for close in (*complete(match[1], names)[:1], *_closest(wanted, tokens)):
+    for close in _closest(wanted, tokens, complete(match[1], names)):
         yield close + (match[2] or "")
         yield close
 
 
-def _closest(wanted: str, tokens: dict[str, str]) -> list[str]:
-    return [tokens[close] for close in get_close_matches(wanted, tokens, n=1, cutoff=0.6)]
+def _closest(wanted: str, tokens: dict[str, str], completed: Sequence[str]) -> list[str]:
+    """Give the names that a word may be: one letter away, then those that begin so, the closest first."""
+    like = [tokens[close] for close in get_close_matches(wanted, tokens, n=1, cutoff=0.6)]
+
+    def order(token: str) -> tuple[bool, bool, int, str]:
+        apart = _letters_apart(wanted, fold_name(token))
+        return apart > 1, token not in completed, apart, token
+
+    return sorted({*completed, *like}, key=order)
+
+
+def _letters_apart(one: str, other: str) -> int:
+    """Tell how many letters are in one of two words and not in the other, in their order.
+
+    >>> _letters_apart("acema", "acem"), _letters_apart("huseyn", "huseyni"), _letters_apart("rast", "ras")
+    (1, 1, 1)
+    """
+    blocks = SequenceMatcher(None, one, other).get_matching_blocks()
+    return len(one) + len(other) - 2 * sum(block.size for block in blocks)

@@ -15,7 +15,7 @@ from io import BytesIO
 from typing import TYPE_CHECKING
 
 from melodycoach.errors import MusicFileError, shorten
-from melodycoach.sources.xml_safe import Handlers, check_size, parse_xml
+from melodycoach.sources.xml_safe import Handlers, check_size, parse_xml, plain_text
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -91,19 +91,25 @@ def _named_score(
     packed: zipfile.ZipFile, entries: dict[str, zipfile.ZipInfo], where: str
 ) -> tuple[str, tuple[str, ...]]:
     """Find the score: what the container names, else the only one that there is."""
+    named = ""
     if CONTAINER in entries:
         container = _read_entry(packed, entries[CONTAINER], where)
-        name = _root_file(container, f"{where}: {CONTAINER}")
-        if name in entries:
-            return name, ()
+        named = _root_file(container, f"{where}: {CONTAINER}")
+        if named in entries:
+            return named, ()
     scores = [name for name in entries if _looks_like_a_score(name)]
-    if len(scores) != 1:
-        raise MusicFileError(
-            f"{where}: nothing in the compressed file says which file is the score, and {_found(scores)}; "
-            "unpack it and open the score itself"
-        )
-    only = f"the compressed file does not say which file is the score: {shorten(scores[0])!r} is the only one"
-    return scores[0], (only,)
+    if len(scores) == 1:
+        return scores[0], (f"{_missing(named)}: {plain_text(scores[0], 40)!r} is the only one",)
+    raise MusicFileError(
+        f"{where}: {_missing(named)}, and {_found(scores)}; unpack it and open the score itself"
+    )
+
+
+def _missing(named: str) -> str:
+    """Say why the score is not where it should be."""
+    if named:
+        return f"the compressed file names {plain_text(named, 40)!r} as the score, which is not in it"
+    return "the compressed file does not say which file is the score"
 
 
 def _looks_like_a_score(name: str) -> bool:

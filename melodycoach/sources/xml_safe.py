@@ -25,7 +25,7 @@ from xml.parsers import expat
 from melodycoach.errors import MusicFileError, shorten
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Mapping, MutableMapping
+    from collections.abc import Callable, Mapping, MutableMapping, Sequence
 
 MAX_FILE_BYTES = 20 * 1024 * 1024
 """A longer file is no score of one melody; the same holds for what comes out of a zip."""
@@ -245,22 +245,33 @@ def _encoding_of(data: bytes) -> tuple[str, tuple[str, ...]]:
 
     What can be read as UTF-8 is UTF-8: text in another encoding hardly ever can.
     """
-    for start, encoding in _UTF_16_STARTS.items():
-        if data.startswith(start):
-            return encoding, ()
+    start = data[:_FIRST_BYTES]
+    for sign, encoding in _UTF_16_STARTS.items():
+        if data.startswith(sign):
+            declared = _declared(start.replace(b"\0", b""), "UTF-16")
+            order = "LE" if sign[0] > sign[1] else "BE"  # of a sign in front or of the first letter
+            return encoding, _told(declared, "UTF-16", ("UTF-16", f"UTF-16{order}"))
+    declared = _declared(start, "UTF-8")
     if data.isascii():
-        return "UTF-8", ()
-    found = _DECLARED.search(data[:_FIRST_BYTES])
-    declared = found[1].decode("ascii") if found else "UTF-8"
+        return "UTF-8", _told(declared, "UTF-8", (declared if _keeps_plain_letters(declared) else "",))
     if _is_utf_8(data):
-        used = "UTF-8"
-    elif _has_one_byte_a_letter(declared):
+        return "UTF-8", _told(declared, "UTF-8", ("UTF-8", "utf8"))
+    if _has_one_byte_a_letter(declared):
         return declared, ()
-    else:
-        used = OTHER_ENCODING
-    if declared.lower().replace("-", "") == used.lower().replace("-", ""):
-        return used, ()
-    return used, (f"the file says that its letters are in {declared}, which they are not: read as {used}",)
+    return OTHER_ENCODING, _told(declared, OTHER_ENCODING, ())
+
+
+def _declared(start: bytes, otherwise: str) -> str:
+    """Give the encoding that a document declares."""
+    found = _DECLARED.search(start)
+    return found[1].decode("ascii") if found else otherwise
+
+
+def _told(declared: str, used: str, right: Sequence[str]) -> tuple[str, ...]:
+    """Say that the declaration is wrong, unless it is one of those that are right."""
+    if declared.lower() in (one.lower() for one in right):
+        return ()
+    return (f"the file says that its letters are in {declared}, which they are not: read as {used}",)
 
 
 def _is_utf_8(data: bytes) -> bool:
@@ -281,11 +292,22 @@ def _has_one_byte_a_letter(encoding: str) -> bool:
     >>> [_has_one_byte_a_letter(name) for name in ("iso-8859-9", "utf-8", "shift_jis", "klingon", "cp037")]
     [True, False, False, False, False]
     """
-    plain = bytes(range(32, 127))
     try:
         letters = bytes(range(256)).decode(encoding, "replace")
-        same = plain.decode(encoding) == plain.decode("ascii")
     except (LookupError, ValueError):
         return False
     # some code pages leave a few bytes open; in UTF-8 no byte above 127 is a letter by itself
-    return same and len(letters) == 256 and len(set(letters)) > 200
+    return _keeps_plain_letters(encoding) and len(letters) == 256 and len(set(letters)) > 200
+
+
+def _keeps_plain_letters(encoding: str) -> bool:
+    """Tell if plain letters, without accents, are written in an encoding as in UTF-8.
+
+    >>> [_keeps_plain_letters(name) for name in ("iso-8859-9", "UTF-8", "cp037", "UTF-16", "klingon")]
+    [True, True, False, False, False]
+    """
+    plain = bytes(range(32, 127))
+    try:
+        return plain.decode(encoding) == plain.decode("ascii")
+    except (LookupError, ValueError):
+        return False

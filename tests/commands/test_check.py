@@ -45,6 +45,7 @@ def midi(tmp_path: Path) -> Path:
 
 
 def saved(path: Path, text: str) -> Path:
+    path.parent.mkdir(exist_ok=True)
     path.write_text(text, encoding="utf-8")
     return path
 
@@ -308,6 +309,48 @@ def test_a_page_and_json_go_together(draft: Path, tmp_path: Path, capsys: pytest
 def test_a_page_that_cannot_be_written_is_said(draft: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert check(draft, "--html", draft / "page.html") == 2
     assert "choose another place" in capsys.readouterr().err
+
+
+@pytest.mark.parametrize("option", ["--html", "--out"])
+def test_a_draft_is_not_lost_to_a_page_of_it(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], option: str
+) -> None:
+    """A slip of the hand: the draft is named twice; or it has the name that its page will have."""
+    draft = saved(tmp_path / "index.html", LINE)
+    assert check(draft, option, draft if option == "--html" else tmp_path) == 2
+    printed = capsys.readouterr()
+    assert printed.err == (
+        f"melodycoach: {draft}: is itself one of the files that are read, expected a file of its own "
+        "to write into; name another place\n"
+    )
+    assert printed.out == ""
+    assert draft.read_text(encoding="utf-8") == LINE
+    assert list(tmp_path.iterdir()) == [draft]
+
+
+@pytest.mark.parametrize("name", ["draft.html", "index.html", "answers.json"])
+def test_a_file_of_someone_else_is_not_lost_to_a_page(
+    draft: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str], name: str
+) -> None:
+    mine = saved(tmp_path / "out" / name, "<!DOCTYPE html>\n<html lang='tr'><p>mine</p></html>")
+    assert check(draft, "--out", mine.parent) == 2
+    assert check(draft, "--html", mine) == 2
+    assert check(draft, "--html", mine, "--watch") == 2  # before it begins to watch
+    printed = capsys.readouterr()
+    assert printed.out == ""
+    assert printed.err.count(f"melodycoach: {mine}: holds something else, expected no file yet or ") == 3
+    assert "mine" in mine.read_text(encoding="utf-8")
+    assert list(mine.parent.iterdir()) == [mine]
+
+
+def test_a_page_takes_the_place_of_its_older_self(draft: Path, tmp_path: Path) -> None:
+    page, folder = tmp_path / "page.html", tmp_path / "out"
+    for line in (LINE, WRONG):
+        saved(draft, f"title: {line[-9:]}\n{line}")
+        assert check(draft, "--html", page) == 0
+        assert check(draft, "--out", folder) == 0
+    assert "dik kürdî" in page.read_text(encoding="utf-8")
+    assert "dik kürdî" in (folder / "draft.html").read_text(encoding="utf-8")
 
 
 def test_a_bad_file_has_no_page(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:

@@ -11,9 +11,13 @@ from sheets import sheet_of
 
 from melodycoach.core.check import Checked, check_sheet, leaving
 from melodycoach.core.event import PitchReading
+from melodycoach.core.mode import Need, StepKind
 from melodycoach.core.model import build_model
-from melodycoach.core.scorer import leading
+from melodycoach.core.note import InputKind
+from melodycoach.core.ranking import CORE_NATS, step_note
+from melodycoach.core.scorer import advance_unwatched, leading, log_odds
 from melodycoach.core.session import empty_line, rewrite
+from melodycoach.core.span import before_closing
 from melodycoach.errors import UnknownModeError
 from melodycoach.sources.pack_file import load_pack
 
@@ -121,6 +125,59 @@ def test_steps_of_a_stretch_are_counted_from_its_own_first_note() -> None:
     alone = checked(HICAZ, "hicaz").steps.track
     assert later.first == checked(HUSEYNI).n_notes + 1
     assert later.track.heard == alone.heard
+
+
+def test_owed_steps_stand_in_the_order_of_what_they_would_do_with_colour_last() -> None:
+    """What a gain is worth is tried out in test_ranking; here all steps of the line are there, in order."""
+    found = checked(HUSEYNI[: HUSEYNI.index(" G5 F5 E5 D5")], "huseyni")
+    steps = found.steps
+    assert sorted(one.step.id for one in steps.owed) == sorted(step.id for step in steps.track.owed)
+    assert len(steps.owed) >= 4
+    colours = [one.step.need is Need.COLOUR for one in steps.owed]
+    assert colours == sorted(colours)
+    assert any(colours)
+    for colour in (False, True):  # once a phrase has ended, an opening comes too late
+        worths = [
+            one.gain_nats + (CORE_NATS if one.step.need is Need.CORE else 0.0)
+            for one in steps.owed
+            if (one.step.need is Need.COLOUR) is colour and one.step.kind is not StepKind.OPENING
+        ]
+        assert worths == sorted(worths, reverse=True)
+    assert len({round(one.gain_nats, 6) for one in steps.owed}) > 2
+
+
+def test_the_first_owed_step_gains_as_much_when_it_is_really_played() -> None:
+    found = checked(HUSEYNI[: HUSEYNI.index(" G5 F5 E5 D5")], "huseyni")
+    best, view, state = found.steps.owed[0], found.view, found.line.states[-1]
+    assert view.hypothesis is not None
+    assert view.rival is not None
+    pair = view.hypothesis, view.rival
+    before = log_odds(MODEL, before_closing(state), *pair)
+    for number, cents in enumerate(best.pitches_cents, 1):
+        state = advance_unwatched(
+            MODEL, state, step_note(cents, InputKind.TYPED, is_last=number == len(best.pitches_cents))
+        )
+    assert log_odds(MODEL, before_closing(state), *pair) - before == pytest.approx(best.gain_nats, abs=1e-6)
+
+
+def test_each_stretch_is_held_against_the_course_of_its_own_mode_from_its_own_first_note() -> None:
+    found = checked(f"{HUSEYNI} {HICAZ}")
+    ends = [[end.number for end in one.course.phrase_ends] for one in found.stretches]
+    first, last = len(ends[0]), found.n_notes
+    assert [number for part in ends for number in part] == [one.last for one in found.phrases]
+    assert ends[1][0] > found.stretches[1].span.first
+    assert (first, ends[1][-1]) == (2, last)
+    assert [one.course.cadence.agrees for one in found.stretches] == [True, True]
+    assert [one.course.opening.agrees for one in found.stretches] == [True, True]
+    assert "nevâ" in found.stretches[1].course.opening.says  # hicaz opens around its güçlü: common practice
+
+
+def test_the_stretch_of_a_note_is_found_from_either_end() -> None:
+    found = checked(f"{HUSEYNI} {HICAZ} {HUSEYNI}")
+    assert len(found.stretches) > 1
+    assert [found.stretch_at(n) for n in range(1, found.n_notes + 1)] == [
+        one for one in found.stretches for _ in range(one.span.n_notes)
+    ]
 
 
 def test_with_a_target_every_note_is_judged_by_it() -> None:

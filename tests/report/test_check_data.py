@@ -2,6 +2,7 @@
 
 import json
 import math
+from dataclasses import replace
 from itertools import pairwise
 from typing import Any
 
@@ -110,6 +111,37 @@ def test_steps_heard_say_where_and_steps_owed_say_what_they_would_do() -> None:
         assert len({step["id"] for step in (*steps["heard"], *steps["owed"])}) == len(
             (*steps["heard"], *steps["owed"])
         )
+
+
+def test_owed_steps_say_what_each_would_do_in_the_order_of_the_scorer() -> None:
+    half = sheet_of(TURNING[: TURNING.index("| D5 E5 D5 C#5")], PACK.names)
+    checked = check_sheet(MODEL, half, PACK.find("huseyni"))
+    steps = answer_json(checked, "draft.txt")["in_view"]["steps"]
+    ranked = {one.step.id: one for one in checked.steps.owed}
+    assert [step["id"] for step in steps["owed"]] == list(ranked)
+    assert len(ranked) >= 2
+    for step in steps["owed"]:
+        assert step["gain_nats"] == round(ranked[step["id"]].gain_nats, 3) != 0
+        assert [pitch["height"] for pitch in step["notes"]] == [
+            round(PACK.system.cents_to_units(cents)) for cents in ranked[step["id"]].pitches_cents
+        ]
+    assert all(step["gain_nats"] == 0 for step in steps["heard"])
+
+
+def test_what_was_read_and_what_was_lost_is_told_as_the_reader_says_it() -> None:
+    sheet = sheet_of(TURNING, PACK.names)
+    assert (TURNED["read"], TURNED["lost"]) == ([], [])
+    says, lost = ("took track 2 of 3", "one beat is an eighth"), ("track 1, byte 90: broke off",)
+    told = answer_json(check_sheet(MODEL, replace(sheet, says=says, lost=lost)), "draft.mid")
+    assert (told["read"], told["lost"]) == (list(says), list(lost))
+
+
+def test_every_note_lies_in_the_phrase_and_the_stretch_that_hold_it() -> None:
+    for key, parts in (("phrase", TURNED["phrases"]), ("stretch", TURNED["stretches"])):
+        assert len(parts) > 1
+        for note in TURNED["notes"]:
+            part = parts[note[key] - 1]
+            assert part["first"] <= note["number"] <= part["last"]
 
 
 def test_the_rival_gets_its_reasons_too() -> None:

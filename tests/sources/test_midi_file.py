@@ -152,6 +152,10 @@ def test_more_tracks_than_said_are_read(n_said: int) -> None:
     assert (counts(read), read.losses) == ([1, 2], ())
 
 
+def test_a_single_track_that_is_missing_is_told_in_the_singular() -> None:
+    assert read_midi_file(header(1)).losses == ("the file says that it holds 1 track, and 0 were found",)
+
+
 @pytest.mark.parametrize("n_said", [3, 0x8000])
 def test_fewer_tracks_than_said_are_told(n_said: int) -> None:
     read = read_midi_file(header(n_said) + ONE_NOTE + TWO_NOTES)

@@ -78,6 +78,10 @@ BARE = PitchNames(COMMAS_53)
         ("segh-1", "segâh-1"),
         ("tiz-segahh", "tiz-segâh"),
         ("gerd", "gerdâniye"),
+        ("hüseyn", "hüseynî"),  # and not hüseynî-aşîran, which begins so, too
+        ("hüseyn:2", "hüseynî:2"),
+        ("acema", "acem"),  # and not acem-aşîran
+        ("tiz-hü", "tiz-hüseynî"),  # it begins so; tiz mahur has the same letters, too
         ("segah:1,5", "segah:1.5"),
         ("segah~", "B4~"),
         ("segah+999", "segâh"),

@@ -49,8 +49,8 @@ def test_a_stored_score_is_read_as_a_deflated_one() -> None:
 
 @pytest.mark.parametrize(
     "container_says",
-    [[], [(CONTAINER, container("lost.xml"))], [(CONTAINER, "<container/>")]],
-    ids=["no container", "names another", "names none"],
+    [[], [(CONTAINER, "<container/>")]],
+    ids=["no container", "names none"],
 )
 def test_without_a_word_on_which_is_the_score_the_only_one_is_taken_and_it_is_said(
     container_says: list[tuple[str, str]],
@@ -62,8 +62,23 @@ def test_without_a_word_on_which_is_the_score_the_only_one_is_taken_and_it_is_sa
     )
 
 
+def test_a_container_that_names_a_missing_file_is_said_and_the_only_score_taken() -> None:
+    named = (CONTAINER, container("lost.xml"))
+    assert unpack_score(zipped([named, ("cover.png", b"x"), ("s.xml", PLAIN)]), "draft.mxl") == (
+        PLAIN,
+        ("the compressed file names 'lost.xml' as the score, which is not in it: 's.xml' is the only one",),
+    )
+    start = "draft.mxl: the compressed file names 'lost.xml' as the score, which is not in it, and "
+    assert refused(zipped([named, ("a.xml", PLAIN), ("b.xml", OTHER)])) == (
+        f"{start}2 look like one, 'a.xml' and 'b.xml' among them; unpack it and open the score itself"
+    )
+    assert refused(zipped([named])) == (
+        f"{start}none in it looks like one; unpack it and open the score itself"
+    )
+
+
 def test_without_a_word_several_scores_or_none_are_refused() -> None:
-    start = "draft.mxl: nothing in the compressed file says which file is the score, and "
+    start = "draft.mxl: the compressed file does not say which file is the score, and "
     assert refused(zipped([("a.xml", PLAIN), ("b.xml", OTHER), ("c.xml", OTHER)])) == (
         f"{start}3 look like one, 'a.xml' and 'b.xml' among them; unpack it and open the score itself"
     )

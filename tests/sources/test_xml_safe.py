@@ -275,8 +275,10 @@ def encoded(encoding: str, declared: str | None, title: str = "Şu dağlar") -> 
         ("utf-8-sig", "UTF-8"),
         ("utf-16", "UTF-16"),
         ("utf-16-le", "UTF-16"),
-        ("utf-16-be", "UTF-16LE"),
-        ("utf-16", "UTF-8"),
+        ("utf-16-le", "utf-16le"),
+        ("utf-16-be", "UTF-16BE"),
+        ("utf-16-be", None),
+        ("utf-16", "UTF-16LE" if sys.byteorder == "little" else "UTF-16BE"),
         ("utf-16", None),
         ("windows-1254", "windows-1254"),
         ("iso-8859-9", "ISO-8859-9"),
@@ -300,6 +302,10 @@ def test_a_score_reads_the_same_in_every_encoding(encoding: str, declared: str |
         ("windows-1254", "klingon", "windows-1254"),
         ("windows-1254", "utf-7", "windows-1254"),
         ("windows-1254", "shift_jis", "windows-1254"),
+        ("utf-16", "UTF-8", "UTF-16"),
+        ("utf-16", "klingon", "UTF-16"),
+        ("utf-16-be", "UTF-16LE", "UTF-16"),
+        ("utf-16-le", "UTF-16BE", "UTF-16"),
     ],
 )
 def test_a_wrong_declaration_is_put_right_and_said(encoding: str, declared: str | None, used: str) -> None:
@@ -310,8 +316,18 @@ def test_a_wrong_declaration_is_put_right_and_said(encoding: str, declared: str 
     )
 
 
-def test_a_wrong_declaration_of_plain_letters_is_nothing_to_speak_of() -> None:
-    assert not any("letters" in sentence for sentence in read(encoded("utf-8", "klingon", "Su")).says)
+@pytest.mark.parametrize("declared", ["klingon", "UTF-16", "cp037"])
+def test_a_wrong_declaration_is_said_where_all_letters_are_plain_too(declared: str) -> None:
+    sheet = read(encoded("ascii", declared, "Su"))
+    assert sheet.title == "Su"
+    assert sheet.says[0] == (
+        f"the file says that its letters are in {declared}, which they are not: read as UTF-8"
+    )
+
+
+@pytest.mark.parametrize("declared", [None, "UTF-8", "iso-8859-1", "shift_jis", "US-ASCII"])
+def test_plain_letters_are_the_same_in_most_encodings_and_nothing_is_said(declared: str | None) -> None:
+    assert not any("letters" in sentence for sentence in read(encoded("ascii", declared, "Su")).says)
 
 
 def test_bytes_that_are_letters_in_no_encoding_are_refused_with_their_place() -> None:
