@@ -39,13 +39,11 @@ def chart(answer: Mapping[str, Any]) -> Html:
     scale = scale_of(answer) if answer["notes"] else None
     if scale is None:
         return Html("")
-    labels = [*map(page_ladder.label, page_ladder.rungs_of(answer, scale)), *page_chances.mode_labels(answer)]
-    shared = Frame(
-        answer,
-        scale,
-        gutter_of(labels),
-        {change["note"]: change for change in answer["changes"]},
-    )
+    rungs = page_ladder.rungs_of(answer, scale)
+    stretches = map(_stretch_label, _stretch_names(answer))
+    labels = [*map(page_ladder.label, rungs), *page_chances.mode_labels(answer), *stretches]
+    seams_by_note = {change["note"]: change for change in answer["changes"]}
+    shared = Frame(answer, scale, gutter_of(labels), seams_by_note, rungs)
     seams = {note: len(_seam_label(change)) * BOLD_LETTER for note, change in shared.seams.items()}
     pieces = pieces_of(answer["notes"], seams, shared.gutter)
     drawn = (_piece(shared, piece, len(pieces) - at) for at, piece in enumerate(pieces))
@@ -97,13 +95,26 @@ def _gutter(shared: Frame, piece: Piece) -> Html:
 
 
 def _stretch_name(shared: Frame, piece: Piece) -> Iterator[Html]:
-    """Say which mode a row begins in, where there are several."""
-    stretches = shared.answer["stretches"]
-    if len(stretches) < 2:
+    """Say which mode a row begins in, where there are several and no seam at its beginning says it."""
+    names = _stretch_names(shared.answer)
+    if not names or piece.first in shared.seams:
         return
-    at = max((n for n, one in enumerate(stretches) if one["first"] <= piece.first), default=0)
-    name = _seam_name(shared.answer["changes"][at - 1]) if at else stretches[0]["name"]
-    yield element("text", shorten(f"in {name}", 20), x=2, y=SEAMS_Y, class_="seam")
+    at = max(
+        (n for n, one in enumerate(shared.answer["stretches"]) if one["first"] <= piece.first), default=0
+    )
+    fits = int(shared.gutter / BOLD_LETTER)
+    yield element("text", shorten(_stretch_label(names[at]), fits), x=2, y=SEAMS_Y, class_="seam")
+
+
+def _stretch_names(answer: Mapping[str, Any]) -> list[str]:
+    """Name the modes of the stretches, where there are several."""
+    if not answer["changes"]:
+        return []
+    return [answer["stretches"][0]["name"], *map(_seam_name, answer["changes"])]
+
+
+def _stretch_label(name: str) -> str:
+    return f"in {name}"
 
 
 def _bar_lines(shared: Frame, piece: Piece) -> Iterator[Html]:

@@ -25,12 +25,13 @@ LABEL_GAP = 12.5
 
 @dataclass(frozen=True, slots=True)
 class Frame:
-    """What all pieces share: the answer, the scale, the width of the ladder, seams by note."""
+    """What all pieces share: the answer, the scale, the ladder and its width, seams by note."""
 
     answer: Mapping[str, Any]
     scale: Scale
     gutter: float
     seams: Mapping[int, Mapping[str, Any]]
+    rungs: Sequence[Mapping[str, Any]]
 
     @property
     def notes(self) -> Sequence[Mapping[str, Any]]:

@@ -47,14 +47,14 @@ def label(rung: Mapping[str, Any]) -> str:
 
 def lines(shared: Frame, piece: Piece) -> Iterator[Html]:
     """Draw the steps as lines across a piece."""
-    for rung in rungs_of(shared.answer, shared.scale):
+    for rung in shared.rungs:
         y = shared.pitch_y(rung["height"])
         yield element("line", x2=piece.width, y1=y, y2=y, class_=f"rung {rung['role']}")
 
 
 def names(shared: Frame) -> Iterator[Html]:
     """Write the names of the steps in the gutter, moved apart where they stand close."""
-    rungs = rungs_of(shared.answer, shared.scale)
+    rungs = shared.rungs
     if len(rungs) * LABEL_GAP > shared.scale.height + 2 * LABEL_GAP:
         rungs = [rung for rung in rungs if rung["role"] in KEPT]
     wanted = [shared.pitch_y(rung["height"]) for rung in rungs]

@@ -394,12 +394,15 @@ def test_a_change_of_mode_is_a_line_with_the_name_of_the_mode_and_the_rows_say_t
     # the curves below it are of the whole line so far
     assert seam.one("title").text == "Karcığar 64 %: what the notes from here on say by themselves"
     assert "the notes behind it say by themselves" in root.one("ul", class_="key").text
-    stretches = [
-        piece.one("g", class_="gutter").one("text", class_="seam").text
+    named = {
+        piece.all("g", class_="note")[0]["data-note"]: [
+            text.text for text in piece.one("g", class_="gutter").all("text", class_="seam")
+        ]
         for piece in root.all("svg", class_="piece")
-    ]
-    assert stretches[0] == "in Hüseynî"
-    assert stretches[-1] == "in Karcığar"
+    }
+    assert named["1"] == ["in Hüseynî"]
+    assert named.get("9", []) == []  # the seam itself stands there
+    assert [says for at, says in named.items() if int(at) > 9] in ([], [["in Karcığar"]])
 
 
 @pytest.mark.parametrize(
