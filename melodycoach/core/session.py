@@ -45,8 +45,8 @@ if TYPE_CHECKING:
     from melodycoach.core.parameters import ScoringParameters
 
 LONGEST_LINE, KEPT_OF_LINE = 4000, 1000
-"""A played line that grows beyond so many notes, silences and marks begins anew with the newest of them;
-what is let go is in the log, and undo brings it back."""
+"""A line that begins with a played note and grows beyond so many notes, silences and marks begins anew
+with the newest of them; what is let go is in the log, and undo brings it back."""
 
 SHORTEST_LIMIT = 600
 """However many hypotheses there are, a line may grow so long; with many of them each note takes more
@@ -291,11 +291,15 @@ def _not_too_long(model: ScoringModel, line: Line) -> Line:
     """Let go of the beginning of a line that has grown too long; it then begins with a note."""
     finals = len(model.mode_index) // model.n_modes
     longest = max(LONGEST_LINE // finals, SHORTEST_LIMIT)
-    if len(line.items) < longest:
+    if len(line.items) < longest or not _is_played(line.items[0]):
         return line
     first = len(line.items) - min(KEPT_OF_LINE, longest // 2)
     first = next((at for at in range(first, len(line.items)) if isinstance(line.items[at], Note)), first)
     return rewrite(model, empty_line(model) if line.states else line, line.items[first:])
+
+
+def _is_played(item: Item) -> bool:
+    return isinstance(item, Note) and item.beats is None
 
 
 def _last_replaced(model: ScoringModel, line: Line, note: Note) -> Line:

@@ -26,7 +26,9 @@ pytestmark = pytest.mark.slow
 
 TIMES_FASTER, BARE_TIMES_FASTER = 20, 3
 MIDI_S, MIDI_MB = 5.0, 300.0
-CHECK_S = 1.0
+CHECK_S, PAGE_S = 1.0, 1.5
+"""An answer, and an answer with its page, on a machine that may have other work."""
+
 TRIES = 3  # of a whole measurement, since the machine may have other work
 
 
@@ -70,6 +72,7 @@ def test_a_line_of_a_thousand_notes_is_answered_within_a_second(
     path = tmp_path / f"line{ending}"
     path.write_bytes(long_lines(LINE_NOTES)[ending])
     options = {"": (), "--json": ("--json",), "--html": ("--html", str(tmp_path / "line.html"))}[option]
-    seconds = best(lambda: check_s(path, *options), CHECK_S)
+    most_s = PAGE_S if option == "--html" else CHECK_S
+    seconds = best(lambda: check_s(path, *options), most_s)
     sys.stdout.write(f"\ncheck {ending} {option}: {seconds:.2f} s, median of five\n")
-    assert seconds < CHECK_S
+    assert seconds < most_s

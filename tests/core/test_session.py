@@ -317,6 +317,8 @@ def test_a_line_that_has_grown_too_long_begins_anew_with_its_newest_notes(
     assert one_more.line.items == (*full.line.items[20:], one_more.line.last_note)
     assert one_more.line.heard == hear(one_more.line.items)
     assert apply(one_more, Undone(99.0)).line.items == full.line.items
+    written = apply(EMPTY, LineEdited(0.0, 0, 0, (typed(6900.0),) * 40))
+    assert len(played_notes(1, written).line.items) == 41
     anywhere = begin(PACK, ONLY, PitchReading.ANY)  # 53 finals of each mode
     assert len(played_notes(21, anywhere).line.items) == 11
 
