@@ -11,12 +11,9 @@ from typing import TYPE_CHECKING, BinaryIO
 from melodycoach.core.sheet import SheetKind
 from melodycoach.errors import StorageError, UnknownModeError, system_reason
 from melodycoach.sources.near_files import near_files
-from melodycoach.sources.sheet_file import ReadOptions, read_sheet
 
 if TYPE_CHECKING:
     from melodycoach.core.mode import Mode, ModePack
-    from melodycoach.core.pitch import PitchNames
-    from melodycoach.core.sheet import Sheet
 
 MAX_FILE_BYTES = 64 * 1024 * 1024
 """A larger file is not read: no melody takes so much."""
@@ -29,32 +26,6 @@ STDIN_NAME = "standard input"
 
 _READ_BYTES = 1024 * 1024  # at a time
 _WANTED = "name a file of note text, a MIDI file or MusicXML"
-
-
-def open_sheet(
-    name: str, names: PitchNames, options: ReadOptions | None = None, *, strict: bool = True
-) -> Sheet:
-    """Read the line of a file, whatever kind of file it is.
-
-    Parameters
-    ----------
-    name
-        Its path, or `STDIN`.
-    names
-        The names and the tone system of the pack.
-    options, strict
-        As for `read_sheet`.
-
-    Raises
-    ------
-    StorageError
-        The file cannot be read, or is no file.
-    NoteTextError, MusicFileError
-        It does not hold what it should.
-    UsageError
-        An option says nothing of this kind of file.
-    """
-    return read_sheet(read_bytes(name), called(name), names, options, strict=strict)
 
 
 def called(name: str) -> str:

@@ -12,8 +12,9 @@ import pytest
 from melodycoach import reading
 from melodycoach.core.sheet import SheetKind
 from melodycoach.errors import StorageError, UnknownModeError
-from melodycoach.reading import mode_named, open_sheet, read_bytes, read_file
+from melodycoach.reading import mode_named, read_bytes, read_file
 from melodycoach.sources.pack_file import load_pack
+from melodycoach.sources.sheet_file import read_sheet
 
 PACK = load_pack("makam")
 WANTED = "name a file of note text, a MIDI file or MusicXML"
@@ -28,7 +29,7 @@ def refusal(path: Path | str) -> str:
 def test_a_file_is_read_to_a_sheet(tmp_path: Path) -> None:
     path = tmp_path / "line.txt"
     path.write_text("mode: rast\nG4 A4 .", encoding="utf-8")
-    sheet = open_sheet(str(path), PACK.names)
+    sheet = read_sheet(read_bytes(str(path)), path.name, PACK.names)
     assert (sheet.kind, sheet.mode, len(sheet.places)) == (SheetKind.NOTE_TEXT, "rast", 2)
 
 
@@ -73,7 +74,7 @@ def test_a_dash_is_what_is_piped_in_as_bytes(monkeypatch: pytest.MonkeyPatch) ->
     monkeypatch.setattr(sys, "stdin", io.TextIOWrapper(io.BytesIO(b"A4 \xff")))
     assert read_bytes("-") == b"A4 \xff"
     monkeypatch.setattr(sys, "stdin", io.TextIOWrapper(io.BytesIO(b"G4 A4")))
-    assert len(open_sheet("-", PACK.names).items) == 2
+    assert len(read_sheet(read_bytes("-"), "standard input", PACK.names).items) == 2
 
 
 def test_without_a_standard_input_that_is_said(monkeypatch: pytest.MonkeyPatch) -> None:
