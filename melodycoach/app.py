@@ -7,6 +7,7 @@ thread does both. Either way the terminal is restored and the log complete, howe
 from __future__ import annotations
 
 import contextlib
+import gc
 import io
 import signal
 import sys
@@ -49,6 +50,9 @@ HURRIED = 400.0
 
 SWITCH_INTERVAL_S = 0.001
 """How soon Python hands the processor from the drawing thread to the coach."""
+
+COLLECT_AFTER = (20_000, 50, 1_000)
+"""New values after which the young ones are looked through, and how often before the older ones are."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -165,6 +169,7 @@ def _run_full_screen(coach: Coach, player: Player, clock: Clock) -> int:
 
     runner = _Runner(coach, player, clock)
     sys.setswitchinterval(SWITCH_INTERVAL_S)
+    _collect_seldom()
     with quiet_stderr(driver_log_path()):
         runner.start()
         try:
@@ -172,6 +177,17 @@ def _run_full_screen(coach: Coach, player: Player, clock: Clock) -> int:
         finally:
             runner.stop()
     return 0
+
+
+def _collect_seldom() -> None:
+    """Keep the collector of unreachable values from stopping a note on its way to the screen.
+
+    It goes through everything that is alive, which takes tens of milliseconds. What is there at the
+    start is never looked at again, and the rest seldom: views and states hold no cycles.
+    """
+    gc.collect()
+    gc.freeze()
+    gc.set_threshold(*COLLECT_AFTER)
 
 
 class _Runner(threading.Thread):

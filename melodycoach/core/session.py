@@ -14,6 +14,7 @@ down with the next event of another kind, or when the clock is looked at.
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from itertools import islice
 from typing import TYPE_CHECKING
 
 from melodycoach.core.event import (
@@ -102,7 +103,11 @@ def rewrite(model: ScoringModel, line: Line, items: Sequence[Item]) -> Line:
     """Give the line with other items; what stays the same from the start is not scored again."""
     if not line.states:
         return _unscored(items)
-    return _scored(model, line, tuple(items), hear(items), 0, _last_note_at(items))
+    items = tuple(items)
+    n_same = shared_start(line.items, items)
+    done = max(sum(isinstance(item, Note) for item in items[:n_same]) - 1, 0)  # the last hears what follows
+    first, n_known = _from_pace(items, _place_of_note(items, done))
+    return _scored(model, line, items, hear(items[first:], n_known), done, _last_note_at(items))
 
 
 def extend(model: ScoringModel, line: Line, *items: Item) -> Line:
@@ -114,14 +119,26 @@ def _with_tail(model: ScoringModel, line: Line, items: tuple[Item, ...]) -> Line
     """Hear again from the last note of ``line`` on; all items before it are unchanged."""
     if not line.states:
         return _unscored(items)
-    first, n_known = max(line.last_note_at, 0), 0
-    while first > 0 and n_known < PACE_NOTES:
-        first -= 1
-        n_known += isinstance(items[first], Note)
+    first, n_known = _from_pace(items, max(line.last_note_at, 0))
     done = max(len(line.heard) - 1, 0)
     return _scored(
         model, line, items, hear(items[first:], n_known), done, first + _last_note_at(items[first:])
     )
+
+
+def _from_pace(items: Sequence[Item], at: int) -> tuple[int, int]:
+    """Go back from a place to where the notes begin that set its pace; and say how many they are."""
+    n_known = 0
+    while at > 0 and n_known < PACE_NOTES:
+        at -= 1
+        n_known += isinstance(items[at], Note)
+    return at, n_known
+
+
+def _place_of_note(items: Sequence[Item], number: int) -> int:
+    """Give where the note of this number, from 0, stands; the end where there is none."""
+    places = (at for at, item in enumerate(items) if isinstance(item, Note))
+    return next(islice(places, number, None), len(items))
 
 
 def _scored(

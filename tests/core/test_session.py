@@ -24,9 +24,9 @@ from melodycoach.core.event import (
 )
 from melodycoach.core.line_rules import LineRules
 from melodycoach.core.melody import BREATH_GAP_S, PHRASE_GAP_S
-from melodycoach.core.note import InputKind, Mark, Note, hear
+from melodycoach.core.note import InputKind, Item, Mark, Note, Silence, hear
 from melodycoach.core.scorer import advance, mode_posterior, start
-from melodycoach.core.session import UNDO_LIMIT, SessionState, apply, begin, replay
+from melodycoach.core.session import UNDO_LIMIT, SessionState, apply, begin, empty_line, replay, rewrite
 from melodycoach.errors import UnknownModeError
 from melodycoach.sources.pack_file import load_pack
 
@@ -334,3 +334,29 @@ def test_a_line_with_a_long_past_is_replayed_as_it_was_played(monkeypatch: pytes
             NoteOff(number * 0.5 + 0.4, 60 + number % 5),
         ]
     assert replay(EMPTY, events).line.items == played(*events).line.items
+
+
+TYPED_ITEMS = st.lists(
+    st.one_of(
+        st.sampled_from([Mark.BREATH, Mark.PHRASE_END, Mark.BAR, Silence(0.8, 1.0)]),
+        st.builds(
+            lambda key, beats: Note(100.0 * key, 0.0, 0.8 * beats, InputKind.TYPED, beats=beats),
+            st.sampled_from([69, 71, 72, 74]),
+            st.sampled_from([0.5, 1.0, 2.0]),
+        ),
+    ),
+    max_size=24,
+).map(tuple)
+
+
+@given(TYPED_ITEMS, TYPED_ITEMS, st.integers(0, 24), st.integers(0, 24))
+@settings(max_examples=150)
+def test_a_line_that_is_edited_is_the_line_written_afresh(
+    before: tuple[Item, ...], put: tuple[Item, ...], start_at: int, stop_at: int
+) -> None:
+    old = rewrite(EMPTY.model, empty_line(EMPTY.model), before)
+    edited = (*before[:start_at], *put, *before[max(start_at, stop_at) :])
+    found, fresh = (rewrite(EMPTY.model, line, edited) for line in (old, empty_line(EMPTY.model)))
+    assert (found.items, found.heard, found.last_note_at) == (fresh.items, fresh.heard, fresh.last_note_at)
+    assert len(found.states) == len(fresh.states)
+    assert np.allclose(found.states[-1].loglik, fresh.states[-1].loglik)
