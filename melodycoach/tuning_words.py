@@ -5,6 +5,7 @@ from __future__ import annotations
 from functools import lru_cache
 from typing import TYPE_CHECKING
 
+from melodycoach.core.pitch import KEY_NAMES
 from melodycoach.sources.midi_mpe import CHANNELS
 from melodycoach.sources.midi_tuning import CLASSES, KEYS
 
@@ -21,8 +22,6 @@ _MOST_KEYS = 12
 
 _MOST_CHANNELS = 4
 """At most so many channels are named; more are counted."""
-
-_CLASS_NAMES = ("C", "C#", "D", "Eb", "E", "F", "F#", "G", "G#", "A", "Bb", "B")
 
 
 def tuning_sentence(tracker: PitchTracker, profile: KeyboardProfile | None = None) -> str:
@@ -112,7 +111,7 @@ def _key_words(key_cents: tuple[tuple[int, float], ...]) -> str:
     every_key = {key: round(cents_by_key.get(key, 0.0)) for key in range(KEYS)}
     names: dict[str, int] = {}
     for key, cents in every_key.items():
-        letter = _CLASS_NAMES[key % CLASSES]
+        letter = KEY_NAMES[key % CLASSES]
         is_everywhere = len({every_key[octave] for octave in range(key % CLASSES, KEYS, CLASSES)}) == 1
         if cents:
             names[letter if is_everywhere else f"{letter}{key // CLASSES - 1}"] = cents

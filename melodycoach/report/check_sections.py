@@ -50,12 +50,12 @@ _AGREES = {True: "agrees", False: "does not agree", None: "cannot be told"}
 
 def _changes(answer: Answer, width: int) -> list[Line]:
     notes, changes = answer["notes"], answer["changes"]
-    told = _turn if len(changes) > MANY_PARTS else _turn_in_full
-    return table([Row(place_words(one["place"], one["note"]), told(one, notes)) for one in changes], width)
-
-
-def _turn(change: Answer, notes: Sequence[Answer]) -> str:
-    return str(change["says"])
+    in_full = len(changes) <= MANY_PARTS
+    rows = []
+    for one in changes:
+        says = _turn_in_full(one, notes) if in_full else str(one["says"])
+        rows.append(Row(place_words(one["place"], one["note"]), says))
+    return table(rows, width)
 
 
 def _turn_in_full(change: Answer, notes: Sequence[Answer]) -> str:

@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Any
 
 from melodycoach.core.mode import Confidence, Need, Repertoire
 from melodycoach.report.mode_data import mode_json, modes_json
+from melodycoach.report.words import capital
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator, Sequence
@@ -77,7 +78,7 @@ def modes_text(pack: ModePack, columns: int = 80) -> str:
     for family, modes in _by_family(data["modes"]):
         lines += [
             "",
-            _capital(family) or "Other modes",
+            capital(family) or "Other modes",
             *(_row(rows[mode["id"]], sizes, width) for mode in modes),
         ]
     lines += _seldom_heard(data["modes"], width)
@@ -123,7 +124,7 @@ def _seldom_heard(modes: Sequence[dict[str, Any]], width: int) -> list[str]:
     for repertoire in (Repertoire.OCCASIONAL.value, Repertoire.RARE.value):
         names = [mode["name"] for mode in modes if mode["repertoire"] == repertoire]
         if names:
-            text = f"{_capital(_HEARD[repertoire])} in the repertoire: {', '.join(names)}."
+            text = f"{capital(_HEARD[repertoire])} in the repertoire: {', '.join(names)}."
             lines += ["", *_wrapped(text, width)]
     return lines
 
@@ -289,7 +290,3 @@ def _names(places: Iterable[dict[str, Any]], between: str = ", ") -> str:
 
 def _beside(term: str, words: dict[str, str]) -> str:
     return f" ({words[term]})" if term in words else ""
-
-
-def _capital(text: str) -> str:
-    return text[:1].upper() + text[1:]
